@@ -1,0 +1,40 @@
+package plan
+
+import "springbound/wells"
+
+// Aim is what the plan makes as large or as small as it can.
+type Aim string
+
+// The aims.
+const (
+	MostYield    Aim = "most-yield"
+	MostHeadroom Aim = "most-headroom"
+)
+
+// Quota bounds the sum of pumped rates over a group of wells.
+type Quota struct {
+	Name    string
+	Wells   []string
+	PerDay  *float64 // [m³/d]
+	PerYear *float64 // [m³] in a year of 365.25 days
+	Source  string
+}
+
+// Brief is what the plan is asked for.
+type Brief struct {
+	Aim       Aim
+	Demand    *float64 // required total of the decided wells' pumped rates [m³/d]; nil: none
+	Quotas    []Quota
+	Wells     []wells.Well
+	Receptors []wells.Receptor
+	Limits    []wells.Limit
+	Licences  []wells.Licence
+	States    []wells.OperatingState
+	WellTerms []WellTerm // one a well, in the order of Wells
+}
+
+// WellTerm is what turns a head at a well's node into a level in the bore without losses.
+type WellTerm struct {
+	OwnDrawdown float64 // ln(r0/rw)/(2 pi T*): drawdown of the casing below the node per rate [d/m²]
+	StaticLevel float64 // level without any pumping [m]
+}

@@ -1,0 +1,29 @@
+package plan
+
+import "context"
+
+// Response is what the planner knows of the aquifer: the receptors' changes and how they answer to the wells, linearised at At.
+type Response struct {
+	Wells []string  // ids, the columns
+	At    []float64 // rates at which values and slopes hold, one a well [m³/d]
+	Rows  []Row
+}
+
+// Row is one receptor quantity in one operating state. Change = base value - value; for a linear row the change at rates Q is
+// exactly Slope·Q, otherwise Change + Slope·(Q - At) is a tangent that never exceeds the true change.
+type Row struct {
+	Receptor    string
+	State       string
+	Realisation int
+	Base        float64   // value without any pumping, in Unit
+	Change      float64   // at At, in Unit
+	Slope       []float64 // d change/d rate, one a well, in Unit per m³/d
+	Linear      bool
+	Unit        string // m, m3/d or 1
+	Place       string // for a worst place: where it is
+}
+
+// Model gives a linearisation of the aquifer at any rates. The planner owns the loop that asks for new ones.
+type Model interface {
+	Linearise(ctx context.Context, rates []float64) (*Response, error)
+}
