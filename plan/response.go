@@ -7,12 +7,15 @@ type Response struct {
 	Wells []string  // ids, the columns
 	At    []float64 // rates at which values and slopes hold, one a well [m³/d]
 	Rows  []Row
+	// WellHeads is the head at each well's node at At, from a full solve [m]; nil when not known.
+	WellHeads []float64
 }
 
 // Row is one receptor quantity in one operating state. Change = base value - value; for a linear row the change at rates Q is
 // exactly Slope·Q, otherwise Change + Slope·(Q - At) is a tangent that never exceeds the true change.
 type Row struct {
-	Receptor    string
+	Receptor    string // id of the receptor; empty for a well's own row
+	Well        string // id of the well whose bore this row is about: change = drawdown in the bore with the linear loss, without the quadratic
 	State       string
 	Realisation int
 	Base        float64   // value without any pumping, in Unit
