@@ -41,6 +41,8 @@ type NodeRequest struct {
 	At     orb.Point // [m]
 	Radius float64   // radius of the bore; 0 when there is none [m]
 	Well   bool      // a well: no head may be prescribed and no exchange may be lumped here
+	// PresentRate is the present rate of a well, used only to turn a spring's measured flow into its conductance [m³/d].
+	PresentRate float64
 }
 
 // AreaRequest asks that a polygon's border be made of mesh lines.

@@ -1,0 +1,271 @@
+package aquifer
+
+import (
+	"math"
+
+	"github.com/paulmach/orb"
+
+	"springbound/aquifer/mesh"
+)
+
+// domainPlan is the mesher's domain and what its entries stand for.
+type domainPlan struct {
+	domain     mesh.Domain
+	outline    *outlineRings
+	stretches  []stretch
+	riverLine  []int // per river: its entry in domain.Lines
+	springAt   []int // per spring: its entry in domain.Points
+	requestAt  []int // per node request: its entry in domain.Points
+	finest     float64
+	growth     float64
+	nodes      int
+	areaOfSite float64
+}
+
+// plan turns a site into the mesher's domain.
+func (s *Site) plan(o Options, bad *problems) *domainPlan {
+	d := &domainPlan{outline: newOutlineRings(s.Extent)}
+	d.stretches = d.outline.match(s.Edges, bad)
+	d.domain.Outer = d.outline.rings[0]
+	d.areaOfSite = math.Abs(ringArea(d.outline.rings[0]))
+	for _, h := range d.outline.rings[1:] {
+		d.domain.Holes = append(d.domain.Holes, h)
+		d.areaOfSite -= math.Abs(ringArea(h))
+	}
+	d.addLines(s)
+	d.addPoints(s)
+	d.setSizes(s, o)
+	return d
+}
+
+func (d *domainPlan) addLines(s *Site) {
+	add := func(name string, path orb.LineString) int {
+		d.domain.Lines = append(d.domain.Lines, mesh.Line{Path: path, Name: name})
+		return len(d.domain.Lines) - 1
+	}
+	rings := func(name string, p orb.Polygon) {
+		for _, r := range p {
+			o := openRing(r)
+			path := append(orb.LineString(nil), o...)
+			add(name, append(path, o[0]))
+		}
+	}
+	for _, z := range s.Zones {
+		for _, p := range z.Area {
+			rings("zone "+z.Name, p)
+		}
+	}
+	for _, r := range s.Rivers {
+		d.riverLine = append(d.riverLine, add("river "+r.Name, r.Path))
+	}
+	for _, l := range s.Lakes {
+		rings("lake "+l.Name, l.Area)
+	}
+	for _, a := range s.Outlines {
+		rings(a.Name, a.Area)
+	}
+}
+
+// addPoints asks for one node a place; requests at exactly one place share it (a receptor on a well), but two wells or two
+// springs never do: the mesher then reports them.
+func (d *domainPlan) addPoints(s *Site) {
+	type holder struct {
+		index int
+		solid bool
+	}
+	seen := map[orb.Point]holder{}
+	place := func(name string, at orb.Point, solid bool) int {
+		if h, ok := seen[at]; ok && !(h.solid && solid) {
+			if solid {
+				seen[at] = holder{h.index, true}
+				d.domain.Points[h.index].Name = name
+			}
+			return h.index
+		}
+		d.domain.Points = append(d.domain.Points, mesh.Point{At: at, Name: name})
+		seen[at] = holder{len(d.domain.Points) - 1, solid}
+		return len(d.domain.Points) - 1
+	}
+	d.requestAt = make([]int, len(s.Nodes))
+	for i, n := range s.Nodes {
+		if n.Well {
+			d.requestAt[i] = place(n.Name, n.At, true)
+		}
+	}
+	for _, sp := range s.Springs {
+		d.springAt = append(d.springAt, place("spring "+sp.Name, sp.At, true))
+	}
+	for i, n := range s.Nodes {
+		if !n.Well {
+			d.requestAt[i] = place(n.Name, n.At, false)
+		}
+	}
+}
+
+// setSizes gives every place its edge length: the finest size, less where a neighbour or a line is near, never so small that
+// the equivalent radius falls below the bore's radius (wells) or twice the effective radius (springs).
+func (d *domainPlan) setSizes(s *Site, o Options) {
+	scale := orDefault(o.Scale, 1)
+	d.growth = orDefault(o.Growth, defaultGrowth) * scale
+	d.nodes = o.Nodes
+	if d.nodes == 0 {
+		d.nodes = defaultNodes
+	}
+	floor := make([]float64, len(d.domain.Points))
+	for i, n := range s.Nodes {
+		if n.Radius > 0 {
+			k := d.requestAt[i]
+			floor[k] = math.Max(floor[k], n.Radius/radiusPerEdge)
+		}
+	}
+	for i, sp := range s.Springs {
+		k := d.springAt[i]
+		floor[k] = math.Max(floor[k], 2*sp.EffectiveRadius/radiusPerEdge)
+	}
+	near := d.clearances()
+	finest := orDefault(o.Finest, finestShare*math.Sqrt(d.areaOfSite))
+	corners := d.corners()
+	set := func(f float64) {
+		d.finest = f
+		for k := range d.domain.Points {
+			size := math.Min(f, near[k]/ringsBetween) * scale
+			d.domain.Points[k].Size = math.Max(size, floor[k])
+		}
+		d.domain.Points = d.domain.Points[:len(near)]
+		for _, c := range corners {
+			d.domain.Points = append(d.domain.Points, mesh.Point{At: c.at, Size: math.Max(2*f, c.least) * scale, Name: "corner of the outline"})
+		}
+	}
+	set(finest)
+	if o.Finest > 0 {
+		return
+	}
+	allowed := float64(max(d.nodes, nodesPerPlace*(len(near)+len(corners))))
+	if o.Nodes > 0 {
+		allowed = float64(d.nodes)
+	}
+	if o.Scale > 0 {
+		return
+	}
+	huge := mesh.Options{Growth: d.growth, Coarsest: math.Sqrt(d.areaOfSite) / 10}
+	for try := 0; try < 40; try++ {
+		if mesh.EstimateNodes(d.domain, huge) <= 0.9*allowed {
+			return
+		}
+		finest *= 1.25
+		set(finest)
+	}
+}
+
+func orDefault(v, def float64) float64 {
+	if v > 0 {
+		return v
+	}
+	return def
+}
+
+// clearances returns for every place the distance to the nearest other place or line that it is not on [m].
+func (d *domainPlan) clearances() []float64 {
+	on := 1e-9 * d.outline.diag // a place this near a line is on it: rounding of projected coordinates
+	near := make([]float64, len(d.domain.Points))
+	for i, p := range d.domain.Points {
+		best := math.Inf(1)
+		for j, q := range d.domain.Points {
+			if i != j {
+				if dist := distance(p.At, q.At); dist > 0 {
+					best = math.Min(best, dist)
+				}
+			}
+		}
+		lines := func(path []orb.Point, closed bool) {
+			n := len(path)
+			last := n - 1
+			if closed {
+				last = n
+			}
+			for k := 0; k < last; k++ {
+				if _, dist := onSegment(p.At, path[k], path[(k+1)%n]); dist > on {
+					best = math.Min(best, dist)
+				}
+			}
+		}
+		for _, r := range d.outline.rings {
+			lines(r, true)
+		}
+		for _, l := range d.domain.Lines {
+			lines(l.Path, false)
+		}
+		near[i] = best
+	}
+	return near
+}
+
+// sharpCorner is the interior angle from which the head has a singular gradient at a corner [°]: 180 is a straight outline,
+// digitised curves bend by less than 20 a vertex.
+const sharpCorner = 200
+
+// corner is a place on the outline where the gradient of head may be singular.
+type corner struct {
+	at    orb.Point
+	least float64 // no finer edge length is useful here [m]
+}
+
+// cornerShare of the shorter adjoining segment is fine enough at a re-entrant corner of a digitised line: the singularity of
+// a corner does not reach beyond the segments that make it.
+const cornerShare = 1.0 / 16
+
+// corners lists the ends of conditions and the re-entrant corners.
+func (d *domainPlan) corners() []corner {
+	ends := map[orb.Point]bool{}
+	for _, s := range d.stretches {
+		cum := d.outline.cum[s.ring]
+		perimeter := cum[len(cum)-1]
+		if s.span >= perimeter {
+			continue
+		}
+		for _, arc := range []float64{s.start, math.Mod(s.start+s.span, perimeter)} {
+			for i, v := range d.outline.rings[s.ring] {
+				if math.Abs(cum[i]-arc) <= sameVertex*d.outline.diag {
+					ends[v] = true
+				}
+			}
+		}
+	}
+	taken := map[orb.Point]bool{}
+	for _, p := range d.domain.Points {
+		taken[p.At] = true
+	}
+	var out []corner
+	for k, r := range d.outline.rings {
+		ccw := ringArea(r) > 0
+		if k > 0 {
+			ccw = !ccw
+		}
+		for i, v := range r {
+			a, b := r[(i+len(r)-1)%len(r)], r[(i+1)%len(r)]
+			turn := math.Atan2(cross(a, v, b), dot(a, v, b)) * 180 / math.Pi
+			if !ccw {
+				turn = -turn
+			}
+			if taken[v] || !(ends[v] || 180-turn > sharpCorner) {
+				continue
+			}
+			taken[v] = true
+			least := 0.0
+			if !ends[v] {
+				least = cornerShare * math.Min(distance(a, v), distance(v, b))
+			}
+			out = append(out, corner{v, least})
+		}
+	}
+	return out
+}
+
+// cross and dot are of the vectors a->v and v->b.
+func cross(a, v, b orb.Point) float64 {
+	return (v[0]-a[0])*(b[1]-v[1]) - (v[1]-a[1])*(b[0]-v[0])
+}
+
+func dot(a, v, b orb.Point) float64 {
+	return (v[0]-a[0])*(b[0]-v[0]) + (v[1]-a[1])*(b[1]-v[1])
+}

@@ -1,0 +1,54 @@
+package aquifer
+
+import "fmt"
+
+// Options steer the mesh. The zero value is the documented default.
+type Options struct {
+	Nodes    int     // nodes wanted at least; 0 = 20,000
+	Finest   float64 // edge length wanted at wells, receptors and springs; 0 = by the size of the site and the node count [m]
+	Coarsest float64 // largest edge length; 0 = by the node count [m]
+	Growth   float64 // growth of edge length per distance; 0 = 0.15 [-]
+	Scale    float64 // multiplies finest size, coarsest size and growth together, for refinement studies; 0 = 1 [-]
+	MaxNodes int     // budget; 0 = the mesher's own
+	Workers  int     // processors to use; 0 = all; results do not depend on it
+
+	Progress func(stage string, done, total int) // optional; called from one goroutine
+}
+
+// Validate names the first option that is out of range.
+func (o Options) Validate() error {
+	for _, v := range []struct {
+		name  string
+		value float64
+		max   float64
+	}{{"finest", o.Finest, 1e6}, {"coarsest", o.Coarsest, 1e7}, {"growth", o.Growth, 1}, {"scale", o.Scale, 64}} {
+		if !(v.value >= 0 && v.value <= v.max) {
+			return fmt.Errorf("aquifer: option %s is %v; allowed: 0 (default) to %v", v.name, v.value, v.max)
+		}
+	}
+	if o.Nodes < 0 || o.MaxNodes < 0 {
+		return fmt.Errorf("aquifer: options nodes %d and max nodes %d must not be negative", o.Nodes, o.MaxNodes)
+	}
+	return nil
+}
+
+func (o Options) report(stage string, done, total int) {
+	if o.Progress != nil {
+		o.Progress(stage, done, total)
+	}
+}
+
+const (
+	// defaultNodes is the least number of nodes: on the benchmark problems it keeps heads away from wells within 0.2 %.
+	defaultNodes = 20000
+	// defaultGrowth keeps neighbouring edge lengths within 15 % of each other, so that second order is kept.
+	defaultGrowth = 0.15
+	// finestShare of the square root of the area is the default edge length at wells and receptors: 1 m a kilometre.
+	finestShare = 1e-3
+	// nodesPerPlace caps what the default spends around each well or receptor before the finest size is raised.
+	nodesPerPlace = 700
+	// ringsBetween is how many edge lengths lie between a place and its nearest neighbour or line.
+	ringsBetween = 6
+	// radiusPerEdge is r0 over the edge length of a regular triangulation, exp(-gamma)/sqrt(12): where the refinement stops.
+	radiusPerEdge = 0.1620793920
+)
