@@ -2,10 +2,148 @@ package convex
 
 import (
 	"context"
-	"errors"
+	"math"
 )
 
-// Solve is replaced below.
+// Solve finds the least or largest cost of p.
+//
+//	minimise or maximise c'x  subject to  rowLower <= A x <= rowUpper,  lower <= x <= upper
+//
+// How it ended is in Solution.Status, which is never more than the arithmetic supports: Certify checks it from the data alone. The
+// error is not nil only for bad options. On a cancelled context the status is Interrupted.
+//
+// Method: dual simplex with bound flipping and steepest-edge prices, primal simplex to finish where costs had to be shifted; see
+// the package comment for the sources.
 func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
-	return nil, errors.New("convex: not built")
+	if err := o.Validate(); err != nil {
+		return nil, err
+	}
+	s := scale(p)
+	e := newEngine(s.matrix, s.cost, s.lower, s.upper)
+	e.limit = o.iterationLimit(e.rows, e.n)
+	e.progress = o.Progress
+	e.start(o.Start)
+	status, q := e.optimise(ctx)
+	return report(p, s, e, status, q), nil
+}
+
+// start adopts a basis, or the rows when there is none or its number of columns differs.
+func (e *engine) start(b *Basis) {
+	if b == nil || len(b.columns) != e.n || len(b.rows) > e.rows {
+		e.startFromRows()
+		return
+	}
+	copy(e.place, b.columns)
+	copy(e.place[e.n:], b.rows)
+	e.adoptPlaces()
+	for v := range e.place {
+		if e.place[v] != Basic {
+			e.settle(v)
+		}
+	}
+}
+
+// basis returns the present places.
+func (e *engine) basis() *Basis {
+	return &Basis{
+		columns: append([]Place(nil), e.place[:e.n]...),
+		rows:    append([]Place(nil), e.place[e.n:]...),
+	}
+}
+
+// report takes the state back to the units of the problem; the factors are powers of two, so that nothing is rounded.
+func report(p *Problem, s *scaled, e *engine, status Status, q int) *Solution {
+	n, m := e.n, e.rows
+	sol := &Solution{
+		Status: status, X: make([]float64, n), RowValue: make([]float64, m), RowPrice: make([]float64, m),
+		ReducedCost: make([]float64, n), Basis: e.basis(), Iterations: e.iterations, Primal: e.primalIterations, Scaling: s.report,
+	}
+	var objective twofold
+	for j := range sol.X {
+		sol.X[j] = e.x[j] * s.col[j]
+		c := p.anyColumn(j)
+		if e.place[j] == AtLower && finite(c.Lower) {
+			sol.X[j] = c.Lower
+		}
+		if e.place[j] == AtUpper && finite(c.Upper) {
+			sol.X[j] = c.Upper
+		}
+		sol.ReducedCost[j] = e.d[j] / (s.col[j] * s.costFactor)
+		objective.addProduct(c.Cost, sol.X[j])
+	}
+	sol.Objective = objective.value()
+	for i := range sol.RowValue {
+		sol.RowValue[i] = e.x[n+i] / s.row[i]
+		sol.RowPrice[i] = e.d[n+i] * s.row[i] / s.costFactor
+	}
+	e.markDegenerate(sol)
+	switch status {
+	case Infeasible:
+		sol.Ray = proofRay(p, s, e.proof)
+	case Unbounded:
+		sol.Ray = directionRay(s, e, q)
+	}
+	return sol
+}
+
+// markDegenerate sets the two flags that warn of prices or values that are not the only ones.
+func (e *engine) markDegenerate(sol *Solution) {
+	for v := range e.place {
+		if e.place[v] == Basic {
+			sol.PrimalDegenerate = sol.PrimalDegenerate || e.onBound(v)
+			continue
+		}
+		if !e.fixed(v) && math.Abs(e.d[v]) <= optimalityTolerance {
+			sol.DualDegenerate = true
+		}
+	}
+}
+
+// onBound tells that the value of v equals one of its bounds within the tolerance.
+func (e *engine) onBound(v int) bool {
+	near := func(b float64) bool {
+		return finite(b) && math.Abs(e.x[v]-b) <= feasibilityTolerance*math.Max(1, math.Abs(b))
+	}
+	return near(e.lower[v]) || near(e.upper[v])
+}
+
+// proofRay takes the multipliers of the proof back to the units of the problem.
+func proofRay(p *Problem, s *scaled, proof []float64) *Ray {
+	r := &Ray{Rows: make([]float64, len(s.row)), Columns: make([]float64, len(s.col))}
+	for i, y := range proof {
+		r.Rows[i] = y * s.row[i]
+	}
+	for j := range p.columns {
+		var z twofold
+		for i, y := range r.Rows {
+			if y != 0 {
+				z.addProduct(-y, p.a[i*len(p.columns)+j])
+			}
+		}
+		r.Columns[j] = z.value()
+	}
+	for k, i := range p.unitRow {
+		r.Columns[len(p.columns)+k] = -r.Rows[i] * p.unitSign[k]
+	}
+	return r
+}
+
+// directionRay takes the direction along the pivot column of q back to the units of the problem.
+func directionRay(s *scaled, e *engine, q int) *Ray {
+	r := &Ray{Rows: make([]float64, e.rows), Columns: make([]float64, e.n)}
+	e.pivotColumn(q)
+	sign := 1.0
+	if e.d[q] > 0 {
+		sign = -1
+	}
+	step := make([]float64, e.n+e.rows)
+	e.eachBasic(func(v int, a float64) { step[v] = sign * a })
+	step[q] = sign
+	for j := range r.Columns {
+		r.Columns[j] = step[j] * s.col[j]
+	}
+	for i := range r.Rows {
+		r.Rows[i] = step[e.n+i] / s.row[i]
+	}
+	return r
 }

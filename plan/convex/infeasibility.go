@@ -1,0 +1,84 @@
+package convex
+
+import "math"
+
+// proves builds the multipliers of the row of basic variable p, whose violation is by, and tells whether they prove that no values
+// meet all bounds. The multipliers are kept in proof.
+func (e *engine) proves(p int, by float64) bool {
+	y := make([]float64, e.rows)
+	sign := 1.0
+	if by > 0 {
+		sign = -1
+	}
+	for t, i := range e.rList {
+		y[i] = sign * e.w[t]
+	}
+	if p >= e.n {
+		y[p-e.n] = -sign
+	}
+	e.proof = y
+	return e.proofOf(y) > proofMargin
+}
+
+// proofOf returns minus the largest value of y'r - (A'y)'x within all bounds, relative to the sum of the absolute terms: positive
+// when y is a proof (Farkas 1902). Multipliers that meet an infinite bound are set to zero when they are negligible.
+func (e *engine) proofOf(y []float64) float64 {
+	for i := range y {
+		if !finite(e.edge(e.n+i, y[i])) {
+			y[i] = 0
+		}
+	}
+	e.m.combineRows(e.byCol, e.everyRow(y), e.dr, e.byRow)
+	var top twofold
+	terms := 0.0
+	take := func(v int, z float64) {
+		if z == 0 {
+			return
+		}
+		b := e.edge(v, z)
+		top.addProduct(z, b)
+		terms += math.Abs(z * b)
+	}
+	for i, yi := range y {
+		take(e.n+i, yi)
+	}
+	for j := 0; j < e.n; j++ {
+		z := -e.byCol[j]
+		if !finite(e.edge(j, z)) {
+			if !(math.Abs(z) <= negligibleShare*e.columnTerms(j, y)) {
+				return math.Inf(-1)
+			}
+			continue
+		}
+		take(j, z)
+	}
+	if !(terms > 0) {
+		return 0
+	}
+	return -top.value() / terms
+}
+
+// edge returns the bound of v that makes z times v largest; zero when z is zero.
+func (e *engine) edge(v int, z float64) float64 {
+	switch {
+	case z > 0:
+		return e.upper[v]
+	case z < 0:
+		return e.lower[v]
+	}
+	return 0
+}
+
+// columnTerms returns the sum of |y_i a_ij| over the rows.
+func (e *engine) columnTerms(j int, y []float64) float64 {
+	if j >= e.m.dense {
+		return math.Abs(y[e.m.unitRow[j-e.m.dense]])
+	}
+	sum := 0.0
+	for i, yi := range y {
+		if yi != 0 {
+			sum += math.Abs(yi * e.m.a[i*e.m.dense+j])
+		}
+	}
+	return sum
+}
