@@ -1,0 +1,264 @@
+package sparse
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"sync/atomic"
+)
+
+// Factor is a Cholesky factor. Solve and SolveSelected may be called from several goroutines at once; Refactor may not
+// run beside them.
+type Factor struct {
+	symbolic *Symbolic
+	panels   []float64 // L, supernode by supernode
+	values   []float64 // the matrix, kept for refinement only
+	valid    bool
+}
+
+// Factor computes L for the given values, one for each entry of the pattern. It fails with [NotPositiveDefinite] where
+// a pivot is not positive (within rounding of the diagonal entry that it came from) or a value is not finite, and with
+// [Interrupted] when ctx ends. Of several bad rows the one eliminated first is named.
+func (s *Symbolic) Factor(ctx context.Context, values []float64) (*Factor, error) {
+	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1])}
+	if err := f.Refactor(ctx, values); err != nil {
+		return nil, err
+	}
+	return f, nil
+}
+
+// Refactor computes L anew for other values in the same memory. After an error the factor cannot be used until another
+// Refactor succeeds.
+func (f *Factor) Refactor(ctx context.Context, values []float64) error {
+	s := f.symbolic
+	if len(values) != len(s.pattern.Index) {
+		panic(fmt.Sprintf("sparse: %d values for a pattern of %d entries", len(values), len(s.pattern.Index)))
+	}
+	f.valid = false
+	if err := s.checkFinite(values); err != nil {
+		return err
+	}
+	r := &numeric{symbolic: s, panels: f.panels, values: values, ctx: ctx, updates: make([][]float64, len(s.plan.first))}
+	if err := r.run(); err != nil {
+		return err
+	}
+	if s.options.Refine {
+		f.values = append(f.values[:0], values...)
+	}
+	f.valid = true
+	return nil
+}
+
+func (s *Symbolic) checkFinite(values []float64) error {
+	p := s.pattern
+	for j := range p.N {
+		for _, v := range values[p.Ptr[j]:p.Ptr[j+1]] {
+			if !(math.Abs(v) <= math.MaxFloat64) {
+				return &NotPositiveDefinite{Row: j, Pivot: v}
+			}
+		}
+	}
+	return nil
+}
+
+// worker is the memory of one goroutine during a factorisation.
+type worker struct {
+	stack [2][]float64
+	used  [2]int
+	rows  []float64 // packed rows
+	scale []float64
+}
+
+// numeric is one run of the multifrontal method.
+type numeric struct {
+	symbolic *Symbolic
+	panels   []float64
+	values   []float64
+	updates  [][]float64 // task -> its update matrix until the parent takes it
+	ctx      context.Context
+	crew     crew
+	broken   []atomic.Bool // task -> it or one below it failed
+	failure  []failure     // task -> what failed
+	done     atomic.Int64  // tasks done
+}
+
+type failure struct {
+	position int32
+	pivot    float64
+}
+
+func (r *numeric) run() error {
+	s := r.symbolic
+	p := &s.plan
+	r.broken, r.failure = make([]atomic.Bool, len(p.first)), make([]failure, len(p.first))
+	r.crew = crew{parent: p.parent, pending: make([]int32, len(p.first)), workers: min(workerCount(s.options.Workers), max(1, len(p.first))), do: r.task}
+	for _, up := range p.parent {
+		if up >= 0 {
+			r.crew.pending[up]++
+		}
+	}
+	r.crew.run(p.starts, s.takeWorker, func(w *worker) { s.spare.Put(w) })
+	if err := r.ctx.Err(); err != nil && int(r.done.Load()) < len(p.first) {
+		return &Interrupted{Stage: "factor", Done: int(r.done.Load()), Total: len(p.first), Cause: err}
+	}
+	first := failure{position: -1}
+	for t := range r.failure {
+		if f := r.failure[t]; r.broken[t].Load() && f.position >= 0 && (first.position < 0 || f.position < first.position) {
+			first = f
+		}
+	}
+	if first.position >= 0 {
+		return &NotPositiveDefinite{Row: int(s.order[first.position]), Pivot: first.pivot}
+	}
+	return nil
+}
+
+func (s *Symbolic) takeWorker() *worker {
+	w := s.spare.Get().(*worker)
+	for side := range w.stack {
+		if len(w.stack[side]) < s.plan.stack[side] {
+			w.stack[side] = make([]float64, s.plan.stack[side])
+		}
+		w.used[side] = 0
+	}
+	if w.rows == nil {
+		w.rows = make([]float64, 4*blockColumns)
+	}
+	return w
+}
+
+// task eliminates the supernodes of one task.
+func (r *numeric) task(w *worker, t int32) {
+	p := &r.symbolic.plan
+	if r.ctx.Err() != nil {
+		r.broken[t].Store(true)
+		r.failure[t].position = -1
+	}
+	for k := p.first[t]; k <= p.last[t] && !r.broken[t].Load(); k++ {
+		if position, pivot := r.supernode(w, t, k); position >= 0 {
+			r.failure[t] = failure{position, pivot}
+			r.broken[t].Store(true)
+		}
+	}
+	w.used = [2]int{}
+	if !r.broken[t].Load() {
+		r.done.Add(1)
+		return
+	}
+	if up := p.parent[t]; up >= 0 {
+		r.failure[up].position = -1
+		r.broken[up].Store(true)
+	}
+}
+
+// supernode assembles the front of supernode k and eliminates its columns. It returns the position of a refused pivot
+// and its value, or -1.
+func (r *numeric) supernode(w *worker, t, k int32) (int32, float64) {
+	s := r.symbolic
+	p := &s.plan
+	nc, nr := s.shape(int(k))
+	m := nr - nc
+	front := r.panels[s.panelPtr[k]:s.panelPtr[k+1]]
+	clear(front)
+	first := int(s.nodes.first[k])
+	w.scale = w.scale[:0]
+	for j := range nc {
+		col := front[j*nr : (j+1)*nr]
+		a, b := s.entryPtr[first+j], s.entryPtr[first+j+1]
+		for q := a; q < b; q++ {
+			col[s.entryRow[q]] = r.values[s.entry[q]]
+		}
+		w.scale = append(w.scale, col[j])
+	}
+	side := 0
+	if p.odd[k] {
+		side = 1
+	}
+	var rest []float64
+	if k == p.last[t] {
+		rest = make([]float64, m*m)
+		r.updates[t] = rest
+	} else {
+		rest = w.stack[side][w.used[side] : w.used[side]+m*m]
+		clear(rest)
+		w.used[side] += m * m
+	}
+	r.gather(w, t, k, front, rest, 1-side)
+	if q, pivot := r.eliminateFront(w, front, nr, nc, rest); q >= 0 {
+		return int32(first + q), pivot
+	}
+	return -1, 0
+}
+
+// gather adds the update matrices of the children of supernode k, in order, and frees them.
+func (r *numeric) gather(w *worker, t, k int32, front, rest []float64, side int) {
+	s := r.symbolic
+	p := &s.plan
+	nc, nr := s.shape(int(k))
+	size := 0
+	for c := p.children[k]; c >= 0 && p.of[c] == t; c = p.sibling[c] {
+		size += s.updateSize(int(c))
+	}
+	at := w.used[side] - size
+	w.used[side] = at
+	for c := p.children[k]; c >= 0; c = p.sibling[c] {
+		up := s.rowUp[s.rowPtr[c]:s.rowPtr[c+1]]
+		if p.of[c] == t {
+			extendAdd(front, rest, nr, nc, w.stack[side][at:at+len(up)*len(up)], up)
+			at += len(up) * len(up)
+			continue
+		}
+		extendAdd(front, rest, nr, nc, r.updates[p.of[c]], up)
+		r.updates[p.of[c]] = nil
+	}
+}
+
+// extendAdd adds the lower triangle of an update matrix, whose rows are up in the rows of the front.
+func extendAdd(front, rest []float64, nr, nc int, u []float64, up []int32) {
+	n, m := len(up), nr-nc
+	for j, column := range up {
+		source := u[j*n+j : (j+1)*n]
+		rows := up[j:]
+		if int(column) < nc {
+			target := front[int(column)*nr : int(column+1)*nr]
+			for i, v := range source {
+				target[rows[i]] += v
+			}
+			continue
+		}
+		c := int(column) - nc
+		target := rest[c*m : (c+1)*m]
+		for i, v := range source {
+			target[int(rows[i])-nc] += v
+		}
+	}
+}
+
+// eliminateFront computes the first nc columns of the factor of a front and subtracts their products from the rest.
+func (r *numeric) eliminateFront(w *worker, front []float64, nr, nc int, rest []float64) (int, float64) {
+	m := nr - nc
+	for b := 0; b < nc; b += blockColumns {
+		e := min(b+blockColumns, nc)
+		for j := b; j < e; j += 4 {
+			width := min(4, e-j)
+			if j > b {
+				packRows(w.rows, front[b*nr:], nr, j, width, j-b)
+				update(front[j*nr+j:], nr, front[b*nr+j:], nr, w.rows, nr-j, j-b, width)
+			}
+			if q, pivot := eliminate(front[j*nr+j:], nr, nr-j, width, w.scale[j:]); q >= 0 {
+				return j + q, pivot
+			}
+		}
+		for j := e; j < nc; j += 4 {
+			width := min(4, nc-j)
+			packRows(w.rows, front[b*nr:], nr, j, width, e-b)
+			update(front[j*nr+j:], nr, front[b*nr+j:], nr, w.rows, nr-j, e-b, width)
+		}
+		for j := 0; j < m; j += 4 {
+			width := min(4, m-j)
+			packRows(w.rows, front[b*nr:], nr, nc+j, width, e-b)
+			update(rest[j*m+j:], m, front[b*nr+nc+j:], nr, w.rows, m-j, e-b, width)
+		}
+	}
+	return -1, 0
+}

@@ -1,0 +1,64 @@
+package sparse
+
+// graph is the adjacency of the matrix without its diagonal, both directions of every edge. The first active[v] entries
+// of a node's list lead to nodes of its own part; dissection moves edges that it cuts behind them.
+type graph struct {
+	n      int
+	start  []int32 // n+1
+	to     []int32 // neighbours
+	slot   []int32 // place of the entry in Values
+	active []int32
+}
+
+func newGraph(p *Pattern) *graph {
+	n := p.N
+	g := &graph{n: n, start: make([]int32, n+1), active: make([]int32, n)}
+	for j := range n {
+		g.active[j] += int32(p.Ptr[j+1] - p.Ptr[j] - 1)
+		for _, i := range p.Index[p.Ptr[j]+1 : p.Ptr[j+1]] {
+			g.active[i]++
+		}
+	}
+	for v := range n {
+		g.start[v+1] = g.start[v] + g.active[v]
+	}
+	g.to = make([]int32, g.start[n])
+	g.slot = make([]int32, g.start[n])
+	at := append([]int32(nil), g.start[:n]...)
+	for j := range n {
+		for k := p.Ptr[j] + 1; k < p.Ptr[j+1]; k++ {
+			i := p.Index[k]
+			g.to[at[i]], g.slot[at[i]] = int32(j), int32(k)
+			g.to[at[j]], g.slot[at[j]] = i, int32(k)
+			at[i]++
+			at[j]++
+		}
+	}
+	return g
+}
+
+// inside returns the neighbours of v in its own part.
+func (g *graph) inside(v int32) []int32 {
+	a := g.start[v]
+	return g.to[a : a+g.active[v]]
+}
+
+// all returns every neighbour of v.
+func (g *graph) all(v int32) []int32 { return g.to[g.start[v]:g.start[v+1]] }
+
+// detach removes v from the active lists of its neighbours and empties its own.
+func (g *graph) detach(v int32) {
+	for _, u := range g.inside(v) {
+		a := g.start[u]
+		last := a + g.active[u] - 1
+		for k := a; k <= last; k++ {
+			if g.to[k] == v {
+				g.to[k], g.to[last] = g.to[last], g.to[k]
+				g.slot[k], g.slot[last] = g.slot[last], g.slot[k]
+				g.active[u]--
+				break
+			}
+		}
+	}
+	g.active[v] = 0
+}
