@@ -1,0 +1,167 @@
+package plan
+
+import (
+	"fmt"
+	"math"
+
+	"springbound/plan/convex"
+)
+
+// build writes the linear programme over the rates of the decided wells:
+//
+//	most-yield      maximise  sum of pumped rates
+//	most-headroom   maximise  t                        with every limit of nonzero size kept with a share t of its size free
+//
+// subject to limits, levels, quotas, demand and the wells' ranges. withShare false leaves t and the aim out of most-headroom; the
+// limits are then those of a plan with no headroom at all, which is what a conflict is about.
+func (p *planner) build(withShare bool) (*programme, error) {
+	s := p.setup
+	g := &programme{share: -1}
+	var columns []convex.Column
+	for _, i := range s.decided {
+		c := convex.Column{Name: s.Wells[i].ID, Lower: s.Wells[i].Min, Upper: s.Wells[i].Max}
+		if s.Aim == MostYield && s.isYield(i) {
+			c.Cost = 1
+		}
+		columns = append(columns, c)
+	}
+	if s.Aim == MostHeadroom && withShare {
+		g.share = len(columns)
+		columns = append(columns, convex.Column{Name: "share of every limit kept free", Cost: 1, Lower: 0, Upper: math.Inf(1)})
+	}
+	var err error
+	if g.problem, err = convex.NewProblem(convex.Maximise, columns); err != nil {
+		return nil, fmt.Errorf("plan: the programme's columns: %w", err)
+	}
+	for k := range s.quotas {
+		q := &s.quotas[k]
+		a, standing := g.coefficients(), 0.0
+		for m, i := range q.wells {
+			switch {
+			case s.isYield(i):
+				a[s.column[i]] = q.weight[m]
+			case s.column[i] < 0 && s.standing[i] > 0:
+				standing += q.weight[m] * s.standing[i]
+			}
+		}
+		if err := g.add(owner{ofQuota, k}, s.quotaWords(q), a, math.Inf(-1), q.limit-standing); err != nil {
+			return nil, err
+		}
+	}
+	if s.demand != nil {
+		a := g.coefficients()
+		for _, i := range s.decided {
+			if s.isYield(i) {
+				a[s.column[i]] = 1
+			}
+		}
+		upper := math.Inf(1)
+		if s.Aim == MostHeadroom {
+			upper = *s.demand
+		}
+		if err := g.add(owner{kind: ofDemand}, "required total", a, *s.demand, upper); err != nil {
+			return nil, err
+		}
+	}
+	for k, b := range p.bounds {
+		if b.linear {
+			if err := p.addBound(g, k, tangent{slope: p.oracle.known[0].row(b.target).Slope}); err != nil {
+				return nil, err
+			}
+		}
+	}
+	for _, c := range p.cuts {
+		if err := p.addBound(g, p.indexOf(c.bound), c.tangent); err != nil {
+			return nil, err
+		}
+	}
+	return g, nil
+}
+
+func (p *planner) indexOf(b *bound) int {
+	if b.limit >= 0 {
+		return p.boundOfLimit[b.limit]
+	}
+	return p.boundOfWell[b.target.well]
+}
+
+// addBound adds one row: side (constant + slope·Q - edge) + (reserve + t) size <= 0 over the counted wells.
+func (p *planner) addBound(g *programme, k int, tan tangent) error {
+	s := p.setup
+	b := p.bounds[k]
+	a := g.coefficients()
+	standing := tan.constant
+	for i, slope := range tan.slope {
+		switch {
+		case !b.counted[i]:
+		case s.column[i] >= 0:
+			a[s.column[i]] = b.side * slope
+		default:
+			standing += slope * s.standing[i]
+		}
+	}
+	if g.share >= 0 {
+		a[g.share] = b.size
+	}
+	return g.add(owner{ofBound, k}, s.boundWords(b), a, math.Inf(-1), b.slack(standing, 0))
+}
+
+func (g *programme) coefficients() []float64 { return make([]float64, g.problem.Columns()) }
+
+func (g *programme) add(o owner, name string, a []float64, lower, upper float64) error {
+	if _, err := g.problem.AddRow(convex.Row{Name: name, Coefficients: a, Lower: lower, Upper: upper}); err != nil {
+		return fmt.Errorf("plan: the programme's rows: %w", err)
+	}
+	g.owners = append(g.owners, o)
+	return nil
+}
+
+// rates writes the programme's columns into a list of one rate a well. A rate within rateTolerance of an end of its range is put
+// on it: the difference is rounding.
+func (p *planner) rates(x []float64) []float64 {
+	s := p.setup
+	rates := append([]float64(nil), s.standing...)
+	for k, i := range s.decided {
+		w, near := s.Wells[i], rateTolerance*s.rateScale(i)
+		rates[i] = tidy(x[k])
+		switch {
+		case math.Abs(x[k]-w.Min) <= near:
+			rates[i] = tidy(w.Min)
+		case math.Abs(x[k]-w.Max) <= near:
+			rates[i] = tidy(w.Max)
+		}
+	}
+	return rates
+}
+
+// readPrices turns the programme's prices into the user's: the change of the aim per unit by which a limit is loosened.
+func (p *planner) readPrices(g *programme, sol *convex.Solution) {
+	s := p.setup
+	p.priced = true
+	p.share = 0
+	if g.share >= 0 {
+		p.share = sol.X[g.share]
+	}
+	p.wellPrice = make([]float64, len(s.Wells))
+	p.minHolds = make([]bool, len(s.Wells))
+	for k, i := range s.decided {
+		p.wellPrice[i] = math.Abs(sol.ReducedCost[k])
+		p.minHolds[i] = sol.ReducedCost[k] < 0
+	}
+	for _, b := range p.bounds {
+		b.price = 0
+	}
+	for r, o := range g.owners {
+		price := sol.RowPrice[r]
+		switch o.kind {
+		case ofQuota:
+			s.quotas[o.index].price = price
+		case ofDemand:
+			price = tidy(price)
+			p.demandPrice = &price
+		default:
+			b := p.bounds[o.index]
+			b.price += price * b.unit * (1 - (b.reserve+p.share)*b.grow)
+		}
+	}
+}
