@@ -1,0 +1,117 @@
+package gisio
+
+import (
+	"fmt"
+	"slices"
+
+	"github.com/paulmach/orb"
+)
+
+// rings reads the rings of one polygon: closed, cleaned, of some area. parts and part name it in findings.
+func (r *layerReader) rings(v *jsonValue, parts, part int) ([]path, bool) {
+	if len(v.items) == 0 {
+		r.add(Error, int(v.offset), fmt.Sprintf("part %d", part+1), "without rings: it is empty", "an array of rings", "")
+		return nil, false
+	}
+	out := make([]path, len(v.items))
+	good := true
+	for i := range v.items {
+		p, ok := r.ring(&v.items[i], ringName(parts, part, i))
+		out[i] = p
+		good = good && ok
+	}
+	return out, good
+}
+
+func (r *layerReader) ring(v *jsonValue, name string) (path, bool) {
+	n := len(v.items)
+	if n < 4 {
+		r.add(Error, int(v.offset), name, fmt.Sprintf("of %d positions", n), "at least 4 positions, the last of which repeats the first", "")
+		return path{}, false
+	}
+	p, ok := r.path(v)
+	if !ok {
+		return path{}, false
+	}
+	first, last := r.json.elements(&v.items[0]), r.json.elements(&v.items[n-1])
+	if !slices.Equal(first, last) {
+		r.add(Error, int(v.items[n-1].offset), name, fmt.Sprintf("not closed: it starts at %v and ends at %v", first, last),
+			"a ring whose last position repeats the first", "repeat the first position at the end")
+		return path{}, false
+	}
+	if p, ok = r.unwrap(p, true, name); !ok {
+		return path{}, false
+	}
+	p = r.closeRing(r.dropRepeated(p, name))
+	switch {
+	case len(p.points) < 4:
+		r.add(Error, int(v.offset), name, "smaller than 0.1 mm, or a line out and back", "at least 3 different positions", "remove it, or draw it anew")
+		return path{}, false
+	case onOneLine(p.points):
+		r.add(Error, int(v.offset), name, "of zero area: all its positions lie on one line", "a ring around an area", "remove it, or draw it anew")
+		return path{}, false
+	}
+	return p, true
+}
+
+// closeRing makes the last position the first one again after near positions were dropped, whether the last
+// position itself was dropped or is now nearer than allowed to the one before it.
+func (r *layerReader) closeRing(p path) path {
+	n := len(p.points)
+	if p.points[0] != p.points[n-1] {
+		p.points, p.at = p.points[:n:n], p.at[:n:n]
+		p.points[n-1], p.at[n-1] = p.points[0], p.at[0]
+	}
+	return p
+}
+
+// polygons joins what was cut at the antimeridian, checks the shape and turns its rings the right way round.
+func (r *layerReader) polygons(parts [][]path) orb.Geometry {
+	m := make(orb.MultiPolygon, len(parts))
+	for i, part := range parts {
+		for j, p := range part {
+			ring := orb.Ring(p.points)
+			if !r.projected && j > 0 {
+				ring = besideRing(ring, m[i][0])
+			}
+			m[i] = append(m[i], turned(ring, j == 0))
+		}
+	}
+	if !r.projected {
+		m = joinParts(m)
+	}
+	s := newShape(m)
+	for _, f := range s.check() {
+		severity := Error
+		if f.warning {
+			severity = Warning
+		}
+		r.add(severity, r.ringOffset(parts, m, s, f.ring), s.ringName(f.ring), f.found, f.allowed, f.hint)
+	}
+	if r.faulty {
+		return nil
+	}
+	if len(m) == 1 {
+		return m[0]
+	}
+	return m
+}
+
+// ringOffset gives the place of a ring in the text, as far as it is still the ring of the text.
+func (r *layerReader) ringOffset(parts [][]path, m orb.MultiPolygon, s *shape, ring int) int {
+	part, number := s.part[ring], s.number[ring]
+	if len(m) != len(parts) || len(m[part]) != len(parts[part]) {
+		part, number = 0, 0
+	}
+	return int(parts[part][number].at[0])
+}
+
+// turned gives a ring that runs counterclockwise, or clockwise for holes (RFC 7946, section 3.1.6), from the same first point.
+func turned(ring orb.Ring, counterclockwise bool) orb.Ring {
+	if leftTurning(ring) == counterclockwise {
+		return ring
+	}
+	out := slices.Clone(ring)
+	slices.Reverse(out)
+	return out
+}
