@@ -21,7 +21,8 @@ func (e *engine) proves(p int, by float64) bool {
 }
 
 // proofOf returns minus the largest value of y'r - (A'y)'x within all bounds, relative to the sum of the absolute terms: positive
-// when y is a proof (Farkas 1902). Multipliers that meet an infinite bound are set to zero when they are negligible.
+// when y is a proof (Farkas 1902). Multipliers of rows that meet an infinite bound are rounding and are set to zero; what meets an
+// infinite bound of a column must be negligible against the largest multiplier, entries being near one.
 func (e *engine) proofOf(y []float64) float64 {
 	for i := range y {
 		if !finite(e.edge(e.n+i, y[i])) {
@@ -29,6 +30,10 @@ func (e *engine) proofOf(y []float64) float64 {
 		}
 	}
 	e.m.combineRows(e.byCol, e.everyRow(y), e.dr, e.byRow)
+	size := 0.0
+	for _, yi := range y {
+		size = math.Max(size, math.Abs(yi))
+	}
 	var top twofold
 	terms := 0.0
 	take := func(v int, z float64) {
@@ -45,7 +50,7 @@ func (e *engine) proofOf(y []float64) float64 {
 	for j := 0; j < e.n; j++ {
 		z := -e.byCol[j]
 		if !finite(e.edge(j, z)) {
-			if !(math.Abs(z) <= negligibleShare*e.columnTerms(j, y)) {
+			if !(math.Abs(z) <= negligibleShare*size) {
 				return math.Inf(-1)
 			}
 			continue
@@ -67,18 +72,4 @@ func (e *engine) edge(v int, z float64) float64 {
 		return e.lower[v]
 	}
 	return 0
-}
-
-// columnTerms returns the sum of |y_i a_ij| over the rows.
-func (e *engine) columnTerms(j int, y []float64) float64 {
-	if j >= e.m.dense {
-		return math.Abs(y[e.m.unitRow[j-e.m.dense]])
-	}
-	sum := 0.0
-	for i, yi := range y {
-		if yi != 0 {
-			sum += math.Abs(yi * e.m.a[i*e.m.dense+j])
-		}
-	}
-	return sum
 }

@@ -29,7 +29,7 @@ const (
 	// show: a thousand times the rounding of a twofold sum over single-precision-clean data would be far smaller, so that
 	// this is a statement about the data, not about the arithmetic.
 	proofMargin = 1e-10
-	// negligibleShare is the multiplier of an unbounded value, relative to the terms it is the sum of, that counts as zero.
+	// negligibleShare is the multiplier of an unbounded value, relative to the largest multiplier, that counts as zero.
 	negligibleShare = 1e-9
 	// maxRounds bounds how often the dual and the primal method hand over to each other.
 	maxRounds = 12

@@ -1,0 +1,322 @@
+package convex
+
+import (
+	"fmt"
+	"math"
+)
+
+// Tolerances of Certify. Each is a share of the sum of the absolute terms that the checked number is made of, or of the natural
+// unit of the row or column where that is larger (see yardstick), so that none depends on units of measurement. The solver ends at
+// violations of 1e-9 in its scaled problem; ten times that leaves room for the difference between the two scales.
+const (
+	CertifiedPrimal          = 1e-8 // violation of a row or a bound
+	CertifiedDual            = 1e-8 // price with a sign that no bound supports
+	CertifiedStationarity    = 1e-9 // cost less the prices of the rows less the reduced cost
+	CertifiedComplementarity = 1e-9 // price times distance from its bound, per objective
+	CertifiedGap             = 1e-9 // primal less dual objective
+	CertifiedProof           = 1e-10
+	CertifiedNegligible      = 1e-9 // part of a proof or direction that meets an infinite bound
+)
+
+// Certificate is what the data say about a solution. Every number is computed from the problem and the values and prices of the
+// solution, in twofold precision where terms cancel, by code that shares nothing with the solver.
+type Certificate struct {
+	Status   Status // the claim that was checked
+	Accepted bool
+	Reason   string // why it was not accepted, empty otherwise
+
+	PrimalViolation       float64 // largest violation of a row or bound, in the units of the row or column [-]
+	PrimalViolationScaled float64 // largest violation relative to its terms [-]
+	DualViolation         float64 // largest price, or reduced cost, of unsupported sign [-]
+	DualViolationScaled   float64 // the same relative to the terms of the columns concerned [-]
+	Stationarity          float64 // largest |cost - prices'column - reduced cost| relative to its terms [-]
+	Complementarity       float64 // largest price times distance from its bound, relative to the objective's terms [-]
+	PrimalObjective       float64 // [-]
+	DualObjective         float64 // [-]
+	Gap                   float64 // |primal - dual objective| relative to the objective's terms [-]
+	ProofMargin           float64 // Infeasible: distance of the combined rows and bounds from what they can reach, relative to its terms [-]
+	DirectionGain         float64 // Unbounded: gain along the direction relative to its terms [-]
+	DirectionViolation    float64 // Unbounded: largest move towards a bound along the direction, relative to its terms [-]
+}
+
+// Certify checks a solution against the data of the problem: an optimum by its violations, the signs of its prices, stationarity,
+// complementary slackness and the gap; infeasibility by its proof (Farkas 1902); unboundedness by a feasible point and a direction.
+// Other statuses are never accepted. It panics when the sizes do not belong together.
+func Certify(p *Problem, s *Solution) Certificate {
+	if len(s.X) != p.allColumns() || len(s.RowPrice) != p.Rows() || len(s.ReducedCost) != p.allColumns() {
+		panic("convex: Certify: solution of another problem")
+	}
+	c := Certificate{Status: s.Status}
+	switch s.Status {
+	case Optimal:
+		u := measure(p)
+		terms := c.checkPrimal(p, s.X, u)
+		c.checkDual(p, s, terms, u)
+		c.judgeOptimal()
+	case Infeasible:
+		c.checkProof(p, s.Ray, measure(p))
+	case Unbounded:
+		u := measure(p)
+		c.checkPrimal(p, s.X, u)
+		c.require("the relative violation of a limit", c.PrimalViolationScaled, CertifiedPrimal)
+		c.checkDirection(p, s.Ray, u)
+	default:
+		c.Reason = "nothing is claimed by the status " + s.Status.String()
+	}
+	c.Accepted = c.Reason == ""
+	return c
+}
+
+// require notes a failed condition; NaN fails.
+func (c *Certificate) require(what string, value, most float64) {
+	if !(value <= most) && c.Reason == "" {
+		c.Reason = fmt.Sprintf("%s %.3g is above %.3g", what, value, most)
+	}
+}
+
+func (c *Certificate) judgeOptimal() {
+	c.require("the relative violation of a limit", c.PrimalViolationScaled, CertifiedPrimal)
+	c.require("the relative size of a price with a wrong sign", c.DualViolationScaled, CertifiedDual)
+	c.require("the relative error of a reduced cost", c.Stationarity, CertifiedStationarity)
+	c.require("the complementary slackness", c.Complementarity, CertifiedComplementarity)
+	c.require("the relative gap", c.Gap, CertifiedGap)
+}
+
+func (p *Problem) allColumns() int { return len(p.columns) + len(p.unit) }
+
+// eachEntry calls f with the entries of row i that are not zero.
+func (p *Problem) eachEntry(i int, f func(j int, a float64)) {
+	for j, a := range p.row(i) {
+		if a != 0 {
+			f(j, a)
+		}
+	}
+	for k, r := range p.unitRow {
+		if r == i {
+			f(len(p.columns)+k, p.unitSign[k])
+		}
+	}
+}
+
+// outside returns by how much v lies outside its bounds, and the bound.
+func outside(v, lower, upper float64) (by, bound float64) {
+	switch {
+	case v < lower:
+		return lower - v, lower
+	case v > upper:
+		return v - upper, upper
+	case math.IsNaN(v):
+		return v, 0
+	}
+	return 0, 0
+}
+
+// largest keeps the larger of two numbers, and NaN when there is one.
+func largest(a, b float64) float64 { return math.Max(a, b) }
+
+// share returns part / whole, zero when part is zero and infinite when only whole is.
+func share(part, whole float64) float64 {
+	if part == 0 {
+		return 0
+	}
+	return part / whole
+}
+
+// primalTerms is what the dual checks need of the primal ones.
+type primalTerms struct {
+	objective float64   // sum of absolute terms
+	activity  []float64 // by row
+}
+
+// checkPrimal computes the violations and the objective.
+func (c *Certificate) checkPrimal(p *Problem, x []float64, u yardstick) primalTerms {
+	t := primalTerms{activity: make([]float64, p.Rows())}
+	for i := range t.activity {
+		var sum twofold
+		terms := 0.0
+		p.eachEntry(i, func(j int, a float64) {
+			sum.addProduct(a, x[j])
+			terms += math.Abs(a * x[j])
+		})
+		by, bound := outside(sum.value(), p.rowLower[i], p.rowUpper[i])
+		t.activity[i] = sum.value()
+		c.PrimalViolation = largest(c.PrimalViolation, by)
+		c.PrimalViolationScaled = largest(c.PrimalViolationScaled, share(by, math.Max(u.value/u.row[i], terms+math.Abs(bound))))
+	}
+	var objective twofold
+	for j, v := range x {
+		column := p.anyColumn(j)
+		objective.addProduct(column.Cost, v)
+		t.objective += math.Abs(column.Cost * v)
+		by, bound := outside(v, column.Lower, column.Upper)
+		c.PrimalViolation = largest(c.PrimalViolation, by)
+		c.PrimalViolationScaled = largest(c.PrimalViolationScaled, share(by, math.Max(u.value*u.col[j], math.Abs(bound))))
+	}
+	c.PrimalObjective = objective.value()
+	return t
+}
+
+// checkDual computes signs, stationarity, slackness and the gap. Prices are turned to those of a minimisation.
+func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardstick) {
+	sign := 1.0
+	if p.sense == Maximise {
+		sign = -1
+	}
+	residual, terms := make([]twofold, len(s.X)), make([]float64, len(s.X))
+	for j := range residual {
+		cost := sign * p.anyColumn(j).Cost
+		residual[j].add(cost)
+		residual[j].add(-sign * s.ReducedCost[j])
+		terms[j] = math.Abs(cost)
+	}
+	for i, price := range s.RowPrice {
+		if price == 0 {
+			continue
+		}
+		p.eachEntry(i, func(j int, a float64) {
+			residual[j].addProduct(-sign*price, a)
+			terms[j] += math.Abs(price * a)
+		})
+	}
+	for j := range residual {
+		terms[j] = math.Max(terms[j]+math.Abs(s.ReducedCost[j]), u.cost/u.col[j])
+		c.Stationarity = largest(c.Stationarity, share(math.Abs(residual[j].value()), terms[j]))
+	}
+	d := dualSum{}
+	for i, price := range s.RowPrice {
+		if d.take(sign*price, t.activity[i], p.rowLower[i], p.rowUpper[i]) {
+			continue
+		}
+		c.DualViolation = largest(c.DualViolation, math.Abs(price))
+		c.DualViolationScaled = largest(c.DualViolationScaled, share(math.Abs(price), u.cost*u.row[i]))
+	}
+	for j, price := range s.ReducedCost {
+		column := p.anyColumn(j)
+		if !d.take(sign*price, s.X[j], column.Lower, column.Upper) {
+			c.DualViolation = largest(c.DualViolation, math.Abs(price))
+			c.DualViolationScaled = largest(c.DualViolationScaled, share(math.Abs(price), terms[j]))
+		}
+	}
+	scale := math.Max(t.objective, d.terms)
+	c.DualObjective = sign * d.sum.value()
+	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective), scale)
+	c.Complementarity = share(d.slackness, scale)
+}
+
+// dualSum collects the dual objective.
+type dualSum struct {
+	sum              twofold
+	terms, slackness float64
+}
+
+// take adds the term of one price; false when no finite bound supports its sign.
+func (d *dualSum) take(price, value, lower, upper float64) bool {
+	if price == 0 {
+		return true
+	}
+	bound := lower
+	if price < 0 {
+		bound = upper
+	}
+	if !finite(bound) {
+		return false
+	}
+	d.sum.addProduct(price, bound)
+	d.terms += math.Abs(price * bound)
+	d.slackness = largest(d.slackness, math.Abs(price*(value-bound)))
+	return true
+}
+
+// checkProof computes the margin of a proof of infeasibility: with z = -A'y, y'r + z'x is zero for r = A x, so that a largest
+// value below zero within all bounds excludes every x.
+func (c *Certificate) checkProof(p *Problem, ray *Ray, u yardstick) {
+	if ray == nil || len(ray.Rows) != p.Rows() {
+		c.Reason = "there is no proof"
+		return
+	}
+	var top twofold
+	terms, stray := 0.0, 0.0
+	take := func(price, lower, upper, own float64) {
+		bound := upper
+		if price < 0 {
+			bound = lower
+		}
+		if price == 0 {
+			return
+		}
+		if !finite(bound) {
+			stray = largest(stray, share(math.Abs(price), own))
+			return
+		}
+		top.addProduct(price, bound)
+		terms += math.Abs(price * bound)
+	}
+	z, own := make([]twofold, p.allColumns()), make([]float64, p.allColumns())
+	size := 0.0
+	for i, y := range ray.Rows {
+		size = largest(size, math.Abs(y)/u.row[i])
+	}
+	for i, y := range ray.Rows {
+		take(y, p.rowLower[i], p.rowUpper[i], size*u.row[i])
+		if y == 0 {
+			continue
+		}
+		p.eachEntry(i, func(j int, a float64) {
+			z[j].addProduct(-a, y)
+			own[j] += math.Abs(a * y)
+		})
+	}
+	for j := range z {
+		column := p.anyColumn(j)
+		take(z[j].value(), column.Lower, column.Upper, math.Max(own[j], size/u.col[j]))
+	}
+	c.ProofMargin = -share(top.value(), terms)
+	c.require("the part of the proof that meets an infinite bound", stray, CertifiedNegligible)
+	if !(c.ProofMargin >= CertifiedProof) && c.Reason == "" {
+		c.Reason = fmt.Sprintf("the margin of the proof %.3g is below %.3g", c.ProofMargin, CertifiedProof)
+	}
+}
+
+// checkDirection checks that the cost improves along the direction and that no bound is approached.
+func (c *Certificate) checkDirection(p *Problem, ray *Ray, u yardstick) {
+	if ray == nil || len(ray.Columns) != p.allColumns() {
+		c.Reason = "there is no direction"
+		return
+	}
+	var gain twofold
+	terms := 0.0
+	scale := 0.0
+	for j, v := range ray.Columns {
+		column := p.anyColumn(j)
+		gain.addProduct(column.Cost, v)
+		terms += math.Abs(column.Cost * v)
+		scale = math.Max(scale, math.Abs(v)/u.col[j])
+	}
+	c.DirectionGain = share(gain.value(), terms)
+	if p.sense == Minimise {
+		c.DirectionGain = -c.DirectionGain
+	}
+	for j, v := range ray.Columns {
+		column := p.anyColumn(j)
+		c.approach(v, column.Lower, column.Upper, scale*u.col[j])
+	}
+	for i := 0; i < p.Rows(); i++ {
+		var sum twofold
+		own := 0.0
+		p.eachEntry(i, func(j int, a float64) {
+			sum.addProduct(a, ray.Columns[j])
+			own += math.Abs(a * ray.Columns[j])
+		})
+		c.approach(sum.value(), p.rowLower[i], p.rowUpper[i], math.Max(own, scale/u.row[i]))
+	}
+	c.require("the move towards a bound along the direction", c.DirectionViolation, CertifiedNegligible)
+	if !(c.DirectionGain > CertifiedNegligible) && c.Reason == "" {
+		c.Reason = fmt.Sprintf("the gain along the direction %.3g is not above %.3g", c.DirectionGain, CertifiedNegligible)
+	}
+}
+
+func (c *Certificate) approach(v, lower, upper, scale float64) {
+	if (v < 0 && finite(lower)) || (v > 0 && finite(upper)) || math.IsNaN(v) {
+		c.DirectionViolation = largest(c.DirectionViolation, share(math.Abs(v), scale))
+	}
+}
