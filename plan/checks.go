@@ -107,7 +107,9 @@ func (p *planner) negativeSensitivities() []string {
 func (p *planner) check(r *Report, rates []float64, resolved *lines) {
 	s := p.setup
 	planned := r.Status == StatusOptimal
-	add := func(name, result, detail string) { r.Checks = append(r.Checks, Check{Name: name, Result: result, Detail: detail}) }
+	add := func(name, result, detail string) {
+		r.Checks = append(r.Checks, Check{Name: name, Result: result, Detail: detail})
+	}
 	verdict := func(name string, faults []string, good string) {
 		if len(faults) == 0 {
 			add(name, pass, good)

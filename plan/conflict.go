@@ -251,7 +251,7 @@ func (p *planner) opened(k int, ends []member, holds func(int) bool) (lower, upp
 	for m, end := range ends {
 		switch {
 		case end.column != k || holds(m):
-		case end.upper && end.effect > 0 && w.Max > 0:
+		case end.upper && w.Max > 0:
 			upper = math.Inf(1)
 		case end.upper:
 			upper = 0

@@ -223,4 +223,3 @@ func (p *planner) aimScale() float64 {
 	}
 	return sum
 }
-

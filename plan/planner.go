@@ -23,7 +23,7 @@ type planner struct {
 	notUnique   bool
 	iterations  int
 	certificate *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
-	local       bool // a limit on a row that is not linear bounds it from below: the plan is locally best
+	local       bool                // a limit on a row that is not linear bounds it from below: the plan is locally best
 }
 
 // cut is one tangent of one bound's row.
@@ -54,4 +54,3 @@ type programme struct {
 	owners  []owner
 	share   int // column of t; -1: none
 }
-
