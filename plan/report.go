@@ -98,6 +98,7 @@ type ReceptorResult struct {
 	ID             string        `json:"id"`
 	Name           string        `json:"name"`
 	Kind           string        `json:"kind"`
+	Feature        string        `json:"feature"`     // spring, river or edge that it is about; for a pumping level the id of the well
 	Unit           string        `json:"unit"`        // m, m3/d or 1
 	ValueWord      string        `json:"value_word"`  // what the value is: 'level', 'spring flow', ...
 	ChangeWord     string        `json:"change_word"` // what the change is: 'drawdown', 'loss of spring flow', ...
