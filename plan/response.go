@@ -26,7 +26,8 @@ type Row struct {
 	Place       string // for a worst place: where it is
 }
 
-// Model gives a linearisation of the aquifer at any rates. The planner owns the loop that asks for new ones.
+// Model gives a linearisation of the aquifer at any rates. The planner owns the loop that asks for new ones: rates hold one rate for
+// each of Brief.Wells, in their order [m³/d], and the response must be At these rates. Where every row is linear it is asked twice.
 type Model interface {
 	Linearise(ctx context.Context, rates []float64) (*Response, error)
 }
