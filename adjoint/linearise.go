@@ -202,3 +202,39 @@ func (f *Field) Changes(ctx context.Context, rates []float64) (*State, error) {
 	}
 	return s, nil
 }
+
+// Tangents fills the slopes of the rows that are not linear, each at its own worst place; places solved before are remembered.
+func (f *Field) Tangents(ctx context.Context, rows []Row) error {
+	var fs []Functional
+	var missing []int32
+	if f.placeSlope == nil {
+		f.placeSlope = map[int32][]float64{}
+	}
+	for _, r := range rows {
+		if r.Linear {
+			continue
+		}
+		if _, ok := f.placeSlope[r.Place]; !ok {
+			f.placeSlope[r.Place] = nil
+			missing = append(missing, r.Place)
+			fs = append(fs, Functional{Name: "worst place", Quantity: f.Model.HeadAt(r.Place), Direct: f.casing(r.Place)})
+		}
+	}
+	solved, err := Solve(ctx, f.Model, fs, f.node, nil, nil)
+	if err != nil {
+		return err
+	}
+	for i, n := range missing {
+		slope := append([]float64(nil), solved.At[i]...)
+		for w := range fs[i].Direct {
+			slope[w] -= fs[i].Direct[w]
+		}
+		f.placeSlope[n] = slope
+	}
+	for i := range rows {
+		if !rows[i].Linear {
+			rows[i].Slope = f.placeSlope[rows[i].Place]
+		}
+	}
+	return nil
+}

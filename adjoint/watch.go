@@ -57,6 +57,8 @@ type Field struct {
 	watched []watched
 	outlets []aquifer.Outlet
 	base    []float64
+
+	placeSlope map[int32][]float64 // slopes of worst places solved before
 }
 
 // NewField places wells and receptors in a model built with their Requests. Errors name each receptor that cannot be watched.
@@ -175,3 +177,11 @@ func (f *Field) flow(x *watched, r wells.Receptor) error {
 }
 
 func distance(a, b orb.Point) float64 { return math.Hypot(a[0]-b[0], a[1]-b[1]) }
+
+// Receptor returns the receptor that a row is about; false for a well's own level.
+func (f *Field) Receptor(row int) (wells.Receptor, bool) {
+	if i := f.watched[row].receptor; i >= 0 {
+		return f.Receptors[i], true
+	}
+	return wells.Receptor{}, false
+}

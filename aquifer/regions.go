@@ -34,7 +34,7 @@ type Overlap struct {
 
 // String is a sentence for the findings.
 func (o Overlap) String() string {
-	return fmt.Sprintf("zone %s overlaps zone %s over %.4g m² and sets its %s there", o.Later, o.Earlier, o.Property, o.Area)
+	return fmt.Sprintf("zone %s overlaps zone %s over %.4g m² and sets its %s there", o.Later, o.Earlier, o.Area, o.Property)
 }
 
 // tensorOf turns a mean transmissivity and a zone's anisotropy into a tensor in plane coordinates.

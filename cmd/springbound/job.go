@@ -1,0 +1,205 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"os"
+	"path/filepath"
+
+	"springbound/adjoint"
+	"springbound/aquifer"
+	"springbound/gisio"
+	"springbound/plan"
+)
+
+// job is a project with its model: what every solving command starts from.
+type job struct {
+	project  *gisio.Project
+	findings gisio.Findings
+	field    *adjoint.Field
+	linear   *adjoint.Linear // sensitivities and capture, solved once
+	progress *progress
+	onField  func(row int, influence []float64) error
+}
+
+// projectFile resolves what the user named.
+func projectFile(name string) (string, error) {
+	info, err := os.Stat(name)
+	if err != nil {
+		return "", usagef("cannot find the project %q: %v", name, err)
+	}
+	if info.IsDir() {
+		name = filepath.Join(name, "project.toml")
+		if _, err := os.Stat(name); err != nil {
+			return "", usagef("the folder holds no project.toml: %v", err)
+		}
+	}
+	return name, nil
+}
+
+// readProject reads a project and prints its findings.
+func readProject(ctx context.Context, c common, s streams) (*gisio.Project, gisio.Findings, error) {
+	name, err := projectFile(c.Project)
+	if err != nil {
+		return nil, nil, err
+	}
+	p, findings := gisio.ReadProject(ctx, name)
+	if err := ctx.Err(); err != nil {
+		return nil, findings, err
+	}
+	if err := findings.Err(); err != nil {
+		return nil, findings, err
+	}
+	return p, findings, nil
+}
+
+func printWarnings(findings gisio.Findings, s streams) {
+	for _, f := range findings.Warnings() {
+		fmt.Fprintln(s.err, "warning:", f)
+	}
+}
+
+// newJob reads, meshes, assembles and factors.
+func newJob(ctx context.Context, c solving, s streams) (*job, error) {
+	j := &job{progress: newProgress(s, c.Quiet)}
+	j.progress.report("reading", 0, 1)
+	p, findings, err := readProject(ctx, c.common, s)
+	if err != nil {
+		j.progress.clear()
+		return nil, err
+	}
+	j.project, j.findings = p, findings
+	if !c.Quiet {
+		j.progress.clear()
+		printWarnings(findings, s)
+	}
+	p.Site.Nodes, p.Site.Outlines = adjoint.Requests(p.Wells, p.Receptors)
+	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
+		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: c.Workers, Progress: j.progress.report,
+	})
+	if err != nil {
+		return nil, err
+	}
+	j.field, err = adjoint.NewField(model, p.Wells, p.Receptors)
+	if err != nil {
+		return nil, err
+	}
+	base, err := j.field.Base(ctx)
+	if err != nil {
+		return nil, err
+	}
+	return j, switched(model, base, "without pumping")
+}
+
+// switched names the features that a state takes past the level where their exchange would change: the linear model does not hold.
+func switched(m *aquifer.Model, heads []float64, state string) error {
+	var e aquifer.SiteError
+	for _, t := range switchTexts(m, heads, state) {
+		e.Problems = append(e.Problems, t)
+	}
+	if len(e.Problems) == 0 {
+		return nil
+	}
+	return &e
+}
+
+func switchTexts(m *aquifer.Model, heads []float64, state string) []aquifer.Problem {
+	what := map[aquifer.FeatureKind]string{
+		aquifer.SpringFeature:  "its outlet: the spring would be dry",
+		aquifer.RiverFeature:   "its bed: the river would lose contact",
+		aquifer.LakeFeature:    "its bed: the lake would lose contact",
+		aquifer.LeakageFeature: "the confining layer's base: leakage would no longer grow",
+	}
+	var out []aquifer.Problem
+	for _, sw := range m.Switches(heads) {
+		out = append(out, aquifer.Problem{Feature: string(sw.Kind) + " " + sw.Name, At: sw.At,
+			Text: fmt.Sprintf("%s the head at (%.0f, %.0f) is %.3f m, below %.3f m, %s; this model holds only above it: check levels and properties, or limit the drawdown there",
+				state, sw.At[0], sw.At[1], sw.Head, sw.Lowest, what[sw.Kind])})
+	}
+	return out
+}
+
+// Linearise makes the job a plan.Model: the aquifer as the planner sees it.
+func (j *job) Linearise(ctx context.Context, rates []float64) (*plan.Response, error) {
+	if j.linear == nil {
+		state, err := j.field.Changes(ctx, rates)
+		if err != nil {
+			return nil, err
+		}
+		drawdown := make([]float64, len(state.Heads))
+		for n := range drawdown {
+			drawdown[n] = state.Base[n] - state.Heads[n]
+		}
+		j.linear, err = j.field.Sensitivities(ctx, drawdown, adjoint.Options{Capture: true, Field: j.onField,
+			Progress: func(done, total int) { j.progress.report("adjoint solves", done, total) }})
+		if err != nil {
+			return nil, err
+		}
+		return j.response(state, rates), nil
+	}
+	state, err := j.field.Changes(ctx, rates)
+	if err != nil {
+		return nil, err
+	}
+	if err := j.field.Tangents(ctx, state.Rows); err != nil {
+		return nil, err
+	}
+	return j.response(state, rates), nil
+}
+
+func (j *job) response(state *adjoint.State, rates []float64) *plan.Response {
+	r := &plan.Response{At: append([]float64(nil), rates...)}
+	for w, well := range j.field.Wells {
+		r.Wells = append(r.Wells, well.ID)
+		r.WellHeads = append(r.WellHeads, state.Heads[j.field.Node(w)])
+	}
+	for i, row := range state.Rows {
+		out := plan.Row{Base: row.Base, Change: row.Change, Slope: row.Slope, Linear: row.Linear, Unit: "m"}
+		if out.Slope == nil {
+			out.Slope = j.linear.Rows[i].Slope
+		}
+		if row.Receptor >= 0 {
+			out.Receptor, out.Unit = j.field.Receptors[row.Receptor].ID, j.field.Receptors[row.Receptor].Kind.Unit()
+		} else {
+			out.Well = j.field.Wells[row.Well].ID
+		}
+		if row.Place >= 0 {
+			at := j.field.Model.At(row.Place)
+			out.Place = j.placeText(at)
+		}
+		r.Rows = append(r.Rows, out)
+	}
+	return r
+}
+
+// placeText names a place in the working plane and on the globe.
+func (j *job) placeText(at [2]float64) string {
+	text := fmt.Sprintf("x %.0f m, y %.0f m", at[0], at[1])
+	if lon, lat, err := j.project.Plane.Inverse(at[0], at[1]); err == nil {
+		text += fmt.Sprintf(" (%.5f, %.5f)", lon, lat)
+	}
+	return text
+}
+
+// brief is what the planner is asked for.
+func (j *job) brief(ctx context.Context) (plan.Brief, error) {
+	p := j.project
+	b := plan.Brief{Aim: p.Brief.Aim, Demand: p.Brief.Demand, Quotas: p.Brief.Quotas, Wells: p.Wells, Receptors: p.Receptors,
+		Limits: p.Limits, Licences: p.Licences, States: p.States}
+	base, err := j.field.Base(ctx)
+	if err != nil {
+		return b, err
+	}
+	for w := range p.Wells {
+		b.WellTerms = append(b.WellTerms, plan.WellTerm{OwnDrawdown: j.field.Below(w), StaticLevel: base[j.field.Node(w)]})
+	}
+	return b, nil
+}
+
+func finiteOrNil(v float64) *float64 {
+	if math.IsNaN(v) || math.IsInf(v, 0) {
+		return nil
+	}
+	return &v
+}

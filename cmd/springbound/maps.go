@@ -1,0 +1,67 @@
+package main
+
+import (
+	"math"
+
+	"springbound/adjoint"
+	"springbound/gisio"
+)
+
+// contourCount is about how many lines a map gets: enough to read a gradient, few enough to label.
+const contourCount = 10
+
+// maps gathers the contour files of a run.
+type maps struct {
+	job   *job
+	files []outputFile
+}
+
+func newMaps(j *job) *maps { return &maps{job: j} }
+
+// add contours a nodal field and writes it in longitude and latitude. unitKey is the property that holds the level, with its unit.
+func (m *maps) add(name, unitKey string, field []float64) error {
+	mesh := m.job.field.Model.Mesh
+	low, high := math.Inf(1), math.Inf(-1)
+	for _, v := range field {
+		low, high = math.Min(low, v), math.Max(high, v)
+	}
+	levels := gisio.NiceLevels(low, high, contourCount)
+	contours := gisio.Contours(mesh.X, mesh.Y, mesh.Triangles, field, levels)
+	data, err := gisio.WriteContours(contours, unitKey, m.job.project.Plane)
+	if err != nil {
+		return err
+	}
+	m.files = append(m.files, outputFile{name, data})
+	return nil
+}
+
+// influence contours a receptor's sensitivity to a unit rate pumped anywhere.
+func (m *maps) influence(row int, z []float64) error {
+	r, ok := m.job.field.Receptor(row)
+	if !ok {
+		return nil
+	}
+	unit := map[string]string{"m": "influence_m_per_1000_m3_per_d", "m3/d": "influence_m3_per_d_per_1000_m3_per_d", "1": "influence_per_1000_m3_per_d"}[r.Kind.Unit()]
+	scaled := make([]float64, len(z))
+	for n, v := range z {
+		scaled[n] = 1000 * v
+	}
+	return m.add("influence/"+r.ID+".geojson", unit, scaled)
+}
+
+// heads contours the head without pumping, at the plan, and the drawdown between them.
+func (m *maps) heads(s *adjoint.State) error {
+	drawdown := make([]float64, len(s.Heads))
+	for n := range drawdown {
+		drawdown[n] = s.Base[n] - s.Heads[n]
+	}
+	for _, f := range []struct {
+		name, unit string
+		field      []float64
+	}{{"head_without_pumping.geojson", "head_m", s.Base}, {"head_at_plan.geojson", "head_m", s.Heads}, {"drawdown_at_plan.geojson", "drawdown_m", drawdown}} {
+		if err := m.add(f.name, f.unit, f.field); err != nil {
+			return err
+		}
+	}
+	return nil
+}

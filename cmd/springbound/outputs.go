@@ -1,0 +1,51 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"os"
+	"path/filepath"
+)
+
+// outputFile is a result that is ready to be written.
+type outputFile struct {
+	name string // with forward slashes, below the output folder
+	data []byte
+}
+
+// writeOutputs writes all files or none: first under other names beside their places, then, when every one is on disk, each takes its
+// name. A failure before that leaves the folder as it was.
+func writeOutputs(dir string, files []outputFile) (err error) {
+	var staged []string
+	defer func() {
+		if err != nil {
+			for _, s := range staged {
+				err = errors.Join(err, ignoreMissing(os.Remove(s)))
+			}
+		}
+	}()
+	for _, f := range files {
+		path := filepath.Join(dir, filepath.FromSlash(f.name))
+		if err := os.MkdirAll(filepath.Dir(path), 0o755); err != nil {
+			return fmt.Errorf("cannot make the output folder: %w", err)
+		}
+		temporary := path + ".part"
+		staged = append(staged, temporary)
+		if err := os.WriteFile(temporary, f.data, 0o644); err != nil {
+			return fmt.Errorf("cannot write results: %w", err)
+		}
+	}
+	for i, f := range files {
+		if err := os.Rename(staged[i], filepath.Join(dir, filepath.FromSlash(f.name))); err != nil {
+			return fmt.Errorf("cannot put results in place: %w", err)
+		}
+	}
+	return nil
+}
+
+func ignoreMissing(err error) error {
+	if errors.Is(err, os.ErrNotExist) {
+		return nil
+	}
+	return err
+}

@@ -1,0 +1,133 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"io"
+	"path/filepath"
+	"strings"
+	"text/tabwriter"
+
+	"springbound/plan"
+	"springbound/plan/workbook"
+)
+
+// runPlan is the main job.
+func runPlan(ctx context.Context, c solving, s streams) error {
+	j, err := newJob(ctx, c, s)
+	if err != nil {
+		return err
+	}
+	defer j.progress.clear()
+	maps := newMaps(j)
+	j.onField = maps.influence
+	r, err := j.makePlan(ctx)
+	if err != nil {
+		return err
+	}
+	state, err := j.complete(ctx, r)
+	if err != nil {
+		return err
+	}
+	if err := maps.heads(state); err != nil {
+		return err
+	}
+	j.progress.report("writing", 0, 1)
+	data, err := plan.Marshal(r)
+	if err != nil {
+		return err
+	}
+	book, err := workbook.Write(r)
+	if err != nil {
+		return err
+	}
+	if err := ctx.Err(); err != nil {
+		return err
+	}
+	dir := c.outDir(j)
+	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}}, maps.files...)
+	if err := writeOutputs(dir, files); err != nil {
+		return err
+	}
+	j.progress.clear()
+	if c.JSON {
+		if _, err := s.out.Write(data); err != nil {
+			return fmt.Errorf("cannot print the result: %w", err)
+		}
+	} else {
+		printPlan(s.out, r, dir)
+	}
+	return verdict(r)
+}
+
+// makePlan asks the planner; a report that ends in numerical trouble is an error.
+func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
+	b, err := j.brief(ctx)
+	if err != nil {
+		return nil, err
+	}
+	return plan.Make(ctx, b, j, plan.Options{Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
+}
+
+// verdict is the error that a written report ends with, if it holds no valid plan.
+func verdict(r *plan.Report) error {
+	switch {
+	case r.Status == plan.StatusInfeasible:
+		return &noPlanError{"no plan can meet the limits; the files explain which limits are in conflict and by how much"}
+	case r.Status != plan.StatusOptimal:
+		return &noPlanError{"the plan did not settle (" + r.Status + "); the files hold the last rates"}
+	case !r.ModelValid:
+		return &noPlanError{"the plan is not valid: " + strings.Join(r.Invalid, "; ")}
+	}
+	return nil
+}
+
+func (c solving) outDir(j *job) string {
+	if c.Out != "" {
+		return c.Out
+	}
+	return filepath.Join(j.project.Dir, "out")
+}
+
+// printPlan is the short result on standard output.
+func printPlan(w io.Writer, r *plan.Report, dir string) {
+	fmt.Fprintf(w, "%s\n%s\n\n", r.Title, r.Headline)
+	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
+	fmt.Fprintln(t, "well\trate, m³/d\tfrom\tto\tholds at\twho")
+	for _, x := range r.Wells {
+		fmt.Fprintf(t, "%s\t%.1f\t%.0f\t%.0f\t%s\t%s\n", x.ID, x.Rate, x.Min, x.Max, x.AtBound, who(x))
+	}
+	t.Flush()
+	fmt.Fprintln(w)
+	for _, rec := range r.Receptors {
+		for _, l := range rec.Limits {
+			fmt.Fprintf(w, "%s, %s: %s\n", rec.ID, l.ID, l.Sentence)
+		}
+	}
+	if r.Conflict != nil {
+		fmt.Fprintf(w, "\n%s\n", r.Conflict.Sentence)
+		for _, m := range r.Conflict.Members {
+			fmt.Fprintf(w, "  in conflict: %s\n", m.Limit)
+		}
+	}
+	bad := 0
+	for _, c := range r.Checks {
+		if c.Result == "fail" {
+			bad++
+			fmt.Fprintf(w, "check failed: %s: %s\n", c.Name, c.Detail)
+		}
+	}
+	fmt.Fprintf(w, "\nchecks: %d, of which %d failed; not assessed: %d points, listed in the workbook\n", len(r.Checks), bad, len(r.NotAssessed))
+	fmt.Fprintf(w, "written to %s: plan.xlsx, plan.json, contours\n", dir)
+	fmt.Fprintln(w, "A planning aid (steady, confined, single layer): to be reviewed and signed by a qualified person under local rules.")
+}
+
+func who(w plan.WellResult) string {
+	switch {
+	case w.Others:
+		return "existing user, " + w.Mode
+	case w.Mode == "decided":
+		return "own"
+	}
+	return "own, " + w.Mode
+}

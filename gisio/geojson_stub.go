@@ -1,6 +1,0 @@
-package gisio
-
-// ReadLayer: see geojson.go.
-func ReadLayer(file string, data []byte, opt LayerOptions) (Layer, Findings) {
-	panic("not written yet")
-}
