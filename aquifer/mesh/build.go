@@ -2,29 +2,171 @@ package mesh
 
 import (
 	"context"
-	"errors"
-
-	"github.com/paulmach/orb"
+	"fmt"
 )
 
-type locateGrid struct{}
+const (
+	defaultNodes     = 20000
+	defaultGrowth    = 0.15
+	defaultAngleDeg  = 25
+	largestAngleDeg  = 33   // refinement beyond this is not known to end
+	extraAngleDeg    = 3    // refined to so much more than asked, which costs a few per cent of nodes
+	defaultTolerance = 1e-8 // of the diagonal: 0.1 mm in 10 km, and far above the rounding of such coordinates
+	budgetFactor     = 4    // default budget over the nodes estimated
+	budgetExtra      = 50000
+)
 
-// Build meshes a domain.
-func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
-	return nil, errors.New("mesh: Build is being written")
+// resolved fills in the defaults.
+func (o Options) resolved(d Domain) Options {
+	if o.Nodes == 0 {
+		o.Nodes = defaultNodes
+	}
+	if o.Growth == 0 {
+		o.Growth = defaultGrowth
+	}
+	if o.MinAngleDeg == 0 {
+		o.MinAngleDeg = defaultAngleDeg
+	}
+	o.Tolerance = resolvedTolerance(d, o.Tolerance)
+	return o
 }
 
-// EstimateNodes integrates the size field: about how many nodes Build will make.
-func EstimateNodes(d Domain, o Options) float64 { return 0 }
+// Build meshes a domain. It fails with a *DomainError when the domain or the options are at fault, and with the context's error
+// when stopped. A budget that was hit and angles that the input forced are told in Mesh.Quality, not as errors. Method and
+// sources: package documentation (Ruppert 1995; Shewchuk 2002; Ungor 2004).
+func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
+	problems := append(checkOptions(o), check(d, o.Tolerance)...)
+	if len(problems) > 0 {
+		return nil, &DomainError{problems}
+	}
+	o = o.resolved(d)
+	r, g, err := prepare(ctx, d, o)
+	if err != nil {
+		return nil, err
+	}
+	field := r.makeField(d, o)
+	expected := r.integrate(field).nodes(field.coarsest)
+	r.maxNodes = o.MaxNodes
+	if r.maxNodes == 0 {
+		r.maxNodes = int(budgetFactor*expected) + budgetExtra
+	}
+	r.start(field)
+	if err := r.run(ctx); err != nil {
+		return nil, err
+	}
+	return r.finish(d, o, g), nil
+}
 
-// Validate checks a domain; the error is a *DomainError with every problem found. tol 0 = the default of Options.Tolerance.
-func Validate(d Domain, tol float64) error { return nil }
+// EstimateNodes is about the number of nodes that Build will make: the integral of the size field after the segments have been
+// cut for nearness, without refining triangles. It is 0 for a domain that Build refuses.
+func EstimateNodes(d Domain, o Options) float64 {
+	if len(checkOptions(o)) > 0 || len(check(d, o.Tolerance)) > 0 {
+		return 0
+	}
+	o = o.resolved(d)
+	r, _, err := prepare(context.Background(), d, o)
+	if err != nil {
+		return 0
+	}
+	field := r.makeField(d, o)
+	return r.integrate(field).nodes(field.coarsest)
+}
 
-// Locate finds the triangle that holds p; ok is false outside the domain. Safe for concurrent use.
-func (m *Mesh) Locate(p orb.Point) (triangle int32, ok bool) { return -1, false }
+// prepare makes the planar graph, carves the domain and cuts the segments so that none is encroached.
+func prepare(ctx context.Context, d Domain, o Options) (*refiner, *planar, error) {
+	g, err := newPlanar(ctx, d, o.Tolerance)
+	if err != nil {
+		return nil, nil, err
+	}
+	c := g.carve()
+	for i, v := range c.point {
+		if v < 0 {
+			p := d.Points[i]
+			return nil, nil, &DomainError{[]Problem{{PointOutside, []string{pointName(p)}, p.At,
+				fmt.Sprintf("%s lies where the outline is narrower than the tolerance of %.3g m", pointName(p), o.Tolerance)}}}
+		}
+	}
+	if len(c.t) == 0 {
+		return nil, nil, &DomainError{[]Problem{{ZeroArea, []string{"outline"}, d.Outer[0],
+			fmt.Sprintf("the outline is nowhere wider than the tolerance of %.3g m", o.Tolerance)}}}
+	}
+	if err := c.setMetrics(o); err != nil {
+		return nil, nil, err
+	}
+	c.sizeBases(d)
+	c.markSharp()
+	limit := o.MaxNodes
+	if limit == 0 {
+		limit = budgetFactor*max(o.Nodes, len(c.p)) + budgetExtra
+	}
+	r := newRefiner(c, min(o.MinAngleDeg+extraAngleDeg, largestAngleDeg), o.Tolerance, limit)
+	r.queueSegments()
+	// Half of the budget at most goes into narrow places, so that the rest of the domain is meshed too.
+	return r, g, r.relax(ctx, max(limit/2, len(c.p)))
+}
 
-// NodeTriangles lists the triangles around a node. The slice is shared; do not change it.
-func (m *Mesh) NodeTriangles(node int32) []int32 { return m.nodeTris[m.nodeStart[node]:m.nodeStart[node+1]] }
+// setMetrics asks for the tensor of every region and makes the regions Delaunay in their own metrics.
+func (c *carved) setMetrics(o Options) error {
+	n := c.numberRegions()
+	if o.Metric == nil {
+		return nil
+	}
+	metrics := make([]metric, n)
+	places := c.regionPlaces(n)
+	var problems []Problem
+	plain := true
+	for i := range metrics {
+		m, ok := metricOf(o.Metric(places[i]))
+		if !ok {
+			problems = append(problems, Problem{BadOption, []string{"Metric"}, places[i],
+				fmt.Sprintf("the transmissivity tensor at (%.10g, %.10g) is not finite and positive", places[i][0], places[i][1])})
+		}
+		metrics[i] = m
+		plain = plain && m.plain
+	}
+	if len(problems) > 0 {
+		return &DomainError{problems}
+	}
+	if plain {
+		return nil
+	}
+	c.metrics = metrics
+	for t := range c.t {
+		c.flips = append(c.flips, 4*int32(t), 4*int32(t)+1, 4*int32(t)+2)
+	}
+	c.legalise(nil)
+	return nil
+}
 
-// Bisect cuts every triangle into four at its edge midpoints and carries all provenance over.
-func (m *Mesh) Bisect() *Mesh { return nil }
+// sizeBases gives each segment the smallest size that its lines ask for.
+func (c *carved) sizeBases(d Domain) {
+	for i := range c.bases {
+		for _, o := range c.sets[c.bases[i].set] {
+			if l := int(o.owner) - c.rings; l >= 0 && d.Lines[l].Size > 0 {
+				c.bases[i].size = min(c.bases[i].size, d.Lines[l].Size)
+			}
+		}
+	}
+}
+
+// makeField makes the size field and finds its coarsest size.
+func (r *refiner) makeField(d Domain, o Options) *sizeField {
+	x0, y0, x1, y1 := bounds(r.p)
+	f := newSizeField(r.sources(d.Points), o.Growth, x0, y0, x1, y1)
+	f.coarsest = o.Coarsest
+	if !(o.Coarsest > 0) {
+		f.coarsest = r.integrate(f).coarsestFor(float64(o.Nodes))
+	}
+	return f
+}
+
+// start enters the second stage: sizes at all vertices, segments cut to size, rings around points, all triangles queued.
+func (r *refiner) start(f *sizeField) {
+	r.field = f
+	for i := range r.p {
+		r.p[i].h = f.at(r.p[i].x, r.p[i].y)
+	}
+	r.ringPoints()
+	r.queueSegments()
+	r.queueTriangles()
+}

@@ -1,0 +1,68 @@
+package mesh
+
+import (
+	"cmp"
+	"slices"
+)
+
+// hilbertBits is the resolution of the curve in each direction: 65,536 cells a side, finer than a million nodes need.
+const hilbertBits = 16
+
+// hilbertKey is the place of the cell (x, y) on the curve.
+func hilbertKey(x, y uint32) uint32 {
+	var d uint32
+	for s := uint32(1) << (hilbertBits - 1); s > 0; s >>= 1 {
+		var rx, ry uint32
+		if x&s != 0 {
+			rx = 1
+		}
+		if y&s != 0 {
+			ry = 1
+		}
+		d += s * s * ((3 * rx) ^ ry)
+		if ry == 0 {
+			if rx == 1 {
+				x = s - 1 - (x & (s - 1))
+				y = s - 1 - (y & (s - 1))
+			} else {
+				x &= s - 1
+				y &= s - 1
+			}
+			x, y = y, x
+		} else {
+			x &= s - 1
+			y &= s - 1
+		}
+	}
+	return d
+}
+
+// hilbertOrder sorts the indices of n points along a Hilbert curve; equal cells keep their order.
+func hilbertOrder(n int, at func(i int) (x, y float64)) []int32 {
+	if n == 0 {
+		return nil
+	}
+	x0, y0 := at(0)
+	x1, y1 := x0, y0
+	for i := 1; i < n; i++ {
+		x, y := at(i)
+		x0, x1 = min(x0, x), max(x1, x)
+		y0, y1 = min(y0, y), max(y1, y)
+	}
+	side := max(x1-x0, y1-y0)
+	scale := 0.0
+	if side > 0 {
+		scale = float64(1<<hilbertBits-1) / side
+	}
+	keys := make([]uint64, n)
+	for i := range keys {
+		x, y := at(i)
+		keys[i] = uint64(hilbertKey(uint32((x-x0)*scale), uint32((y-y0)*scale)))<<32 | uint64(i)
+	}
+	slices.SortFunc(keys, cmp.Compare[uint64])
+	order := make([]int32, n)
+	for i, k := range keys {
+		order[i] = int32(uint32(k))
+	}
+	return order
+}

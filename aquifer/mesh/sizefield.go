@@ -1,0 +1,107 @@
+package mesh
+
+import "math"
+
+// source is a place that wants small triangles.
+type source struct {
+	x, y float64
+	size float64 // wanted edge length there [m]
+}
+
+const (
+	leafSources   = 10   // sources that a quadtree leaf evaluates one by one
+	leafVariation = 0.08 // a leaf across which the size varies by less than this share keeps its best source only
+	fieldDepth    = 40   // levels of the quadtree: 10,000 km down to 10 µm
+)
+
+// sizeField is h(x) = min(coarsest, min over sources of size + growth dist). A quadtree holds in each leaf the sources that can
+// be the smallest somewhere in it.
+type sizeField struct {
+	coarsest, growth float64
+	x, y, side       float64 // lower left corner and side of the root
+	cells            []fieldCell
+	lists            []source
+}
+
+// fieldCell is a quadtree cell: an inner one with four children in a row, or a leaf with a list.
+type fieldCell struct {
+	child    int32 // first child; -1 for a leaf
+	from, to int32 // list of a leaf
+}
+
+// newSizeField builds the quadtree over a box.
+func newSizeField(sources []source, growth, x0, y0, x1, y1 float64) *sizeField {
+	side := max(x1-x0, y1-y0) * 1.001
+	f := &sizeField{coarsest: math.Inf(1), growth: growth, x: x0, y: y0, side: side}
+	f.cells = append(f.cells, fieldCell{child: -1})
+	f.split(0, sources, x0+side/2, y0+side/2, side/2, 0)
+	return f
+}
+
+// split fills cell c, whose centre and half side are given, from the sources of its parent.
+func (f *sizeField) split(c int32, sources []source, cx, cy, half float64, depth int) {
+	r := half * math.Sqrt2
+	upper, best := math.Inf(1), source{}
+	for _, s := range sources {
+		if u := s.size + f.growth*math.Hypot(s.x-cx, s.y-cy); u < upper {
+			upper, best = u, s
+		}
+	}
+	var keep []source
+	for _, s := range sources {
+		if s.size+f.growth*(math.Hypot(s.x-cx, s.y-cy)-r) <= upper+f.growth*r {
+			keep = append(keep, s)
+		}
+	}
+	if 2*f.growth*r < leafVariation*upper && len(keep) > 1 {
+		keep = append(keep[:0], best)
+	}
+	if len(keep) <= leafSources || depth == fieldDepth {
+		f.cells[c].from = int32(len(f.lists))
+		f.lists = append(f.lists, keep...)
+		f.cells[c].to = int32(len(f.lists))
+		return
+	}
+	child := int32(len(f.cells))
+	f.cells[c].child = child
+	f.cells = append(f.cells, fieldCell{child: -1}, fieldCell{child: -1}, fieldCell{child: -1}, fieldCell{child: -1})
+	q := half / 2
+	f.split(child, keep, cx-q, cy-q, q, depth+1)
+	f.split(child+1, keep, cx+q, cy-q, q, depth+1)
+	f.split(child+2, keep, cx-q, cy+q, q, depth+1)
+	f.split(child+3, keep, cx+q, cy+q, q, depth+1)
+}
+
+// free is the size at (x, y) without the cap.
+func (f *sizeField) free(x, y float64) float64 {
+	c := int32(0)
+	half := f.side / 2
+	cx, cy := f.x+half, f.y+half
+	for f.cells[c].child >= 0 {
+		c = f.cells[c].child
+		half /= 2
+		if x > cx {
+			c++
+			cx += half
+		} else {
+			cx -= half
+		}
+		if y > cy {
+			c += 2
+			cy += half
+		} else {
+			cy -= half
+		}
+	}
+	h := math.Inf(1)
+	cell := &f.cells[c]
+	for i := cell.from; i < cell.to; i++ {
+		s := &f.lists[i]
+		dx, dy := s.x-x, s.y-y
+		h = min(h, s.size+f.growth*math.Sqrt(dx*dx+dy*dy))
+	}
+	return h
+}
+
+// at is the size wanted at (x, y) [m].
+func (f *sizeField) at(x, y float64) float64 { return min(f.coarsest, f.free(x, y)) }
