@@ -32,7 +32,7 @@ func (p *planner) audit(r *Report, resolved *lines) {
 	if resolved != nil {
 		r.Audit.SuperpositionError = p.superpositionError(r, resolved)
 	}
-	r.Audit.NegativeSensitivities = p.negativeSensitivities()
+	r.Audit.NegativeSensitivities, _ = p.negativeSensitivities()
 }
 
 // superpositionError compares superposed with re-solved changes of the linear rows, and heads with the wells' rows, unit by unit.
@@ -70,10 +70,10 @@ func (p *planner) superpositionError(r *Report, resolved *lines) float64 {
 	return worst
 }
 
-// negativeSensitivities names every well that would make a receptor's change smaller by pumping.
-func (p *planner) negativeSensitivities() []string {
+// negativeSensitivities names every well that would make a receptor's change smaller by pumping, and counts those that a confined
+// aquifer with the right signs excludes: all but a gradient's.
+func (p *planner) negativeSensitivities() (out []string, wrong int) {
 	s := p.setup
-	var out []string
 	name := func(row *Row, what, unit, note string) {
 		largest := 0.0
 		for _, v := range row.Slope {
@@ -81,6 +81,9 @@ func (p *planner) negativeSensitivities() []string {
 		}
 		for i, v := range row.Slope {
 			if v < -negativeShare*largest {
+				if note == "" {
+					wrong++
+				}
 				out = append(out, fmt.Sprintf("%s from well %s: %.3g %s per m³/d%s", what, s.Wells[i].ID, v, unit, note))
 			}
 		}
@@ -100,7 +103,7 @@ func (p *planner) negativeSensitivities() []string {
 			name(row, "level in well "+s.Wells[i].ID, "m", "")
 		}
 	}
-	return out
+	return out, wrong
 }
 
 // check writes the lines of the checks that the planner can judge, and the reasons why a plan is not valid.
@@ -140,10 +143,10 @@ func (p *planner) check(r *Report, rates []float64, resolved *lines) {
 	p.checkQuotas(r, verdict)
 	p.checkRanges(r, rates, verdict)
 	p.checkResolve(r, resolved, add, verdict)
-	if n := len(r.Audit.NegativeSensitivities); n > 0 {
-		add("Pumping lowers every receptor", failed, fmt.Sprintf("%d sensitivities are negative; the audit names them", n))
+	if _, wrong := p.negativeSensitivities(); wrong > 0 {
+		add("Pumping lowers every receptor", failed, fmt.Sprintf("%d sensitivities are negative; the audit names them", wrong))
 	} else {
-		add("Pumping lowers every receptor", pass, "no sensitivity is negative")
+		add("Pumping lowers every receptor", pass, "no sensitivity is negative, gradients aside")
 	}
 	for k, l := range s.Limits {
 		if p.boundOfLimit[k] < 0 {

@@ -381,8 +381,7 @@ func (p *planner) passedAlone(ctx context.Context, existing bool) ([]string, err
 	}
 	var out []string
 	for _, b := range p.bounds {
-		counted := restrict(rates, b.counted)
-		tan, err := p.oracle.tangent(ctx, b.target, counted)
+		tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
 		if err != nil {
 			return nil, err
 		}

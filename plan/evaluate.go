@@ -71,7 +71,6 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 	r.Headline = p.headline(r)
 	r.Invalid, r.Cautions, r.Findings, r.NotAssessed = s.invalid, s.cautions, s.findings, s.notAssessed
 	r.ModelValid = len(r.Invalid) == 0
-	fillEmpty(r)
 	return r, nil
 }
 
@@ -154,29 +153,4 @@ func (p *planner) shownRates() string {
 		return "present pumping"
 	}
 	return "the state with the wells up for decision at rest"
-}
-
-// fillEmpty replaces missing lists by empty ones, so that a list is never written as null.
-func fillEmpty(r *Report) {
-	for _, l := range []*[]string{&r.Invalid, &r.NotAssessed, &r.Cautions, &r.Findings, &r.CaptureWells, &r.Audit.NegativeSensitivities, &r.Mesh.Notes} {
-		if *l == nil {
-			*l = []string{}
-		}
-	}
-	fill(&r.Wells)
-	fill(&r.Receptors)
-	fill(&r.Quotas)
-	fill(&r.Capture)
-	fill(&r.Balances)
-	fill(&r.NoFlow)
-	fill(&r.Checks)
-	fill(&r.Assumptions)
-	fill(&r.Observations)
-	fill(&r.Inputs)
-}
-
-func fill[T any](l *[]T) {
-	if *l == nil {
-		*l = []T{}
-	}
 }

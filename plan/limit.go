@@ -25,6 +25,7 @@ type bound struct {
 	target   target
 	counted  []bool
 	linear   bool
+	value    bool    // a bound on the value, not on its change
 	side     float64 // +1: the change may not be larger than edge; -1: not smaller
 	edge     float64
 	size     float64 // the limit's own size, in the unit of the change; 0: a hard limit
@@ -118,6 +119,7 @@ func (p *planner) limitBound(ctx context.Context, index int, l wells.Limit) (b *
 		if l.Sense == wells.AtMost {
 			b.side = -1
 		}
+		b.value = true
 		b.edge = row.Base - l.Value
 		b.size = math.Abs(b.edge)
 		b.grow = sign(b.side * b.edge)
@@ -158,7 +160,11 @@ func (p *planner) baselineChange(ctx context.Context, l wells.Limit, b *bound) (
 		}
 	}
 	b.boreBase = s.boreLoss(s.Receptors[b.target.receptor], rates, b.counted)
-	return p.oracle.change(ctx, b.target, restrict(rates, b.counted))
+	tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
+	if err != nil {
+		return 0, err
+	}
+	return tan.at(counted), nil
 }
 
 // levelBound makes the bound on the level in a well, without the turbulent part of its loss; nil when the well has none.
@@ -174,7 +180,7 @@ func (p *planner) levelBound(i int) *bound {
 		s.notAssessed.addf("level in well %s: the response has no row for it", w.ID)
 		return nil
 	}
-	b := &bound{limit: -1, target: target{receptor: -1, well: i}, linear: row.Linear, side: 1, unit: 1, counted: make([]bool, len(s.Wells))}
+	b := &bound{limit: -1, target: target{receptor: -1, well: i}, linear: row.Linear, value: true, side: 1, unit: 1, counted: make([]bool, len(s.Wells))}
 	for k := range b.counted {
 		b.counted[k] = true
 	}

@@ -172,7 +172,9 @@ func TestQuotasAndLicences(t *testing.T) {
 		price float64
 	}{
 		{"per day", func(b *Brief) { b.Quotas = []Quota{{Name: "G", Wells: []string{"A", "F"}, PerDay: number(700)}} }, 500, 1},
-		{"per year", func(b *Brief) { b.Quotas = []Quota{{Name: "G", Wells: []string{"A", "F"}, PerYear: number(700 * 365.25)}} }, 500, 1},
+		{"per year", func(b *Brief) {
+			b.Quotas = []Quota{{Name: "G", Wells: []string{"A", "F"}, PerYear: number(700 * 365.25)}}
+		}, 500, 1},
 		{"licence per hour at half-day duty", func(b *Brief) {
 			b.Wells[0].DutyHours = 12
 			b.Licences = []wells.Licence{{ID: "G", Wells: []string{"A"}, PerHour: number(30)}} // 30 m³/h for 12 h is 360 m³/d

@@ -173,8 +173,7 @@ func (p *planner) addCuts(ctx context.Context, rates []float64, start bool) (int
 		if b.linear || (b.side < 0 && !start) {
 			continue
 		}
-		counted := restrict(rates, b.counted)
-		tan, err := p.oracle.tangent(ctx, b.target, counted)
+		tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
 		if err != nil {
 			return 0, err
 		}
@@ -201,7 +200,7 @@ func (p *planner) moveTangents(ctx context.Context, rates []float64, gain float6
 		if c.bound.side > 0 {
 			continue
 		}
-		if c.tangent, err = p.oracle.tangent(ctx, c.bound.target, restrict(rates, c.bound.counted)); err != nil {
+		if c.tangent, _, err = p.oracle.tangentOf(ctx, c.bound, rates); err != nil {
 			return 0, err
 		}
 		moved++

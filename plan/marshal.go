@@ -15,13 +15,11 @@ func Marshal(r *Report) ([]byte, error) {
 	if bad := nonFinite(reflect.ValueOf(r), ""); len(bad) > 0 {
 		return nil, fmt.Errorf("plan: not finite, so not written: %s", strings.Join(bad, ", "))
 	}
-	copied := *r
-	fillEmpty(&copied)
 	var out bytes.Buffer
 	encoder := json.NewEncoder(&out)
 	encoder.SetEscapeHTML(false)
 	encoder.SetIndent("", "  ")
-	if err := encoder.Encode(&copied); err != nil {
+	if err := encoder.Encode(withLists(reflect.ValueOf(*r)).Interface()); err != nil {
 		return nil, fmt.Errorf("plan: the report cannot be written: %w", err)
 	}
 	return out.Bytes(), nil
@@ -52,6 +50,30 @@ func nonFinite(v reflect.Value, key string) []string {
 		return bad
 	}
 	return nil
+}
+
+// withLists returns a copy in which a missing list is an empty one, so that lists are never written as null.
+func withLists(v reflect.Value) reflect.Value {
+	out := reflect.New(v.Type()).Elem()
+	switch v.Kind() {
+	case reflect.Pointer:
+		if !v.IsNil() {
+			out.Set(reflect.New(v.Type().Elem()))
+			out.Elem().Set(withLists(v.Elem()))
+		}
+	case reflect.Slice:
+		out.Set(reflect.MakeSlice(v.Type(), v.Len(), v.Len()))
+		for i := 0; i < v.Len(); i++ {
+			out.Index(i).Set(withLists(v.Index(i)))
+		}
+	case reflect.Struct:
+		for i := 0; i < v.NumField(); i++ {
+			out.Field(i).Set(withLists(v.Field(i)))
+		}
+	default:
+		out.Set(v)
+	}
+	return out
 }
 
 // keyOf is the JSON key of a field.

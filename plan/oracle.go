@@ -119,6 +119,7 @@ func (l *lines) row(t target) *Row {
 type tangent struct {
 	constant float64
 	slope    []float64
+	base     float64 // the row's value without pumping: it moves with the worst place
 }
 
 func (t tangent) at(rates []float64) float64 { return t.constant + dot(t.slope, rates) }
@@ -160,7 +161,7 @@ func (o *oracle) linearise(ctx context.Context, rates []float64) (*lines, error)
 func (o *oracle) tangent(ctx context.Context, t target, rates []float64) (tangent, error) {
 	first := o.known[0].row(t)
 	if first.Linear {
-		return tangent{slope: first.Slope}, nil
+		return tangent{slope: first.Slope, base: first.Base}, nil
 	}
 	l, err := o.linearise(ctx, rates)
 	if err != nil {
@@ -170,16 +171,20 @@ func (o *oracle) tangent(ctx context.Context, t target, rates []float64) (tangen
 	if row == nil {
 		return tangent{}, &DataError{Problems: []string{"a later response lacks a row that the first one had"}}
 	}
-	return tangent{constant: row.Change - dot(row.Slope, l.at), slope: row.Slope}, nil
+	return tangent{constant: row.Change - dot(row.Slope, l.at), slope: row.Slope, base: row.Base}, nil
 }
 
-// change returns the row's change at the given rates.
-func (o *oracle) change(ctx context.Context, t target, rates []float64) (float64, error) {
-	tan, err := o.tangent(ctx, t, rates)
-	if err != nil {
-		return 0, err
+// tangentOf returns the tangent of the change that a bound is about, at the rates of its counted wells. For a bound on a value the
+// change is counted against the first response's value without pumping, so that edge - change is the room at any place.
+func (o *oracle) tangentOf(ctx context.Context, b *bound, rates []float64) (tan tangent, counted []float64, err error) {
+	counted = restrict(rates, b.counted)
+	if tan, err = o.tangent(ctx, b.target, counted); err != nil {
+		return tan, nil, err
 	}
-	return tan.at(rates), nil
+	if b.value {
+		tan.constant += o.known[0].row(b.target).Base - tan.base
+	}
+	return tan, counted, nil
 }
 
 func sameRates(a, b []float64) bool {

@@ -59,7 +59,7 @@ func (p *planner) receptorResults(ctx context.Context, rates []float64, resolved
 // describe copies what does not depend on rates.
 func describe(r wells.Receptor) ReceptorResult {
 	words := wordsOfKind[r.Kind]
-	out := ReceptorResult{ID: r.ID, Name: r.Name, Kind: r.Kind.String(), Unit: r.Kind.Unit(), ValueWord: words.value,
+	out := ReceptorResult{ID: r.ID, Name: r.Name, Kind: r.Kind.String(), Feature: r.Feature, Unit: r.Kind.Unit(), ValueWord: words.value,
 		ChangeWord: words.change, Owner: r.Owner, Use: r.Use, Source: r.Source, Date: r.Date, FieldChecked: r.FieldChecked,
 		Outside: r.Outside, X: r.At[0], Y: r.At[1], Limits: []LimitResult{}}
 	switch {
@@ -78,7 +78,7 @@ func (p *planner) fillReceptor(ctx context.Context, i int, tan tangent, rates []
 	s := p.setup
 	t := target{receptor: i, well: -1}
 	row := p.oracle.known[0].receptor[i]
-	r.NoPumping, r.Place = row.Base, row.Place
+	r.NoPumping, r.Place = tan.base, row.Place
 	r.Change = tidy(tan.at(rates))
 	r.ChangeResolved = r.Change
 	if resolved != nil && resolved.receptor[i] != nil {
@@ -95,22 +95,22 @@ func (p *planner) fillReceptor(ctx context.Context, i int, tan tangent, rates []
 			r.ChangeOwn += parts[k]
 		}
 	}
-	for _, state := range []struct {
+	for _, known := range []struct {
 		get  func(wells.Well) *float64
 		name string
 		into **float64
 	}{{recentRate, "recent", &r.OthersRecent}, {licensedRate, "licensed", &r.OthersLicensed}} {
-		others, blank := s.ratesOf(state.get, existingUser)
+		others, blank := s.ratesOf(known.get, existingUser)
 		if len(blank) > 0 {
-			s.notAssessed.addf("the state with existing users at %s rates: that rate of %s is blank", state.name, list(blank))
+			s.notAssessed.addf("the state with existing users at %s rates: that rate of %s is blank", known.name, list(blank))
 			continue
 		}
-		change, err := p.oracle.change(ctx, t, others)
+		state, err := p.oracle.tangent(ctx, t, others)
 		if err != nil {
 			return nil, err
 		}
-		value := r.NoPumping - change
-		*state.into = &value
+		value := state.base - state.at(others)
+		*known.into = &value
 	}
 	return parts, nil
 }
@@ -135,8 +135,7 @@ func (p *planner) limitResult(ctx context.Context, k int, rates []float64) (Limi
 		return r, nil
 	}
 	b := p.bounds[p.boundOfLimit[k]]
-	counted := restrict(rates, b.counted)
-	tan, err := p.oracle.tangent(ctx, b.target, counted)
+	tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
 	if err != nil {
 		return r, err
 	}
@@ -186,7 +185,7 @@ func (p *planner) heldByRecharge(ctx context.Context, b *bound, rates []float64)
 	if len(names) == 0 {
 		return nil, nil
 	}
-	tan, err := p.oracle.tangent(ctx, b.target, without)
+	tan, _, err := p.oracle.tangentOf(ctx, b, without)
 	if err != nil {
 		return nil, err
 	}
