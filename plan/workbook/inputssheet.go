@@ -196,7 +196,7 @@ func (b *book) meshTable(row int) int {
 		row++
 	}
 	s.across(row, 1, 2, "Was the number of nodes at its limit", line)
-	s.text(row, 3, hit, with(line, func(l *look) { l.across = "right" }))
+	s.text(row, 3, hit, rightWords)
 	row++
 	for _, n := range m.Notes {
 		row = s.paragraph(row, inputsEnd, n, wrapped)

@@ -45,11 +45,15 @@ func (b *book) limitFormulas(row, i, k int, unit string, format look) {
 	} else {
 		s.formula(row, recOwn, left.over(size), figures(shareFormat))
 	}
-	near := size.times(number(limitNearShare))
+	near := number(limitNearShare * size.value)
 	if size.value == 0 {
 		near = number(limitNearShare * b.limitScale(i, l))
 	}
-	spare := left.minus(kept)
+	bar := s.ref(s, row, recLicence)
+	spare := bar.minus(now)
+	if l.Sense == senseAtLeast {
+		spare = now.minus(bar)
+	}
 	status := chooseWords(less(left.plus(near), number(0)), words(wordPassed),
 		chooseWords(less(spare.plus(near), number(0)), words(wordReserve),
 			chooseWords(atMost(spare, near), words(wordBinds), words(wordHolds))))

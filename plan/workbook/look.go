@@ -51,7 +51,7 @@ var (
 	head    = with(wrapped, func(l *look) {
 		l.bold, l.fill, l.bottom, l.upright = true, fillHead, borderThin, "bottom"
 	})
-	headRight = with(head, func(l *look) { l.across = "right" })
+	headRight = with(head, func(l *look) { l.across, l.indent = "right", 1 })
 	line      = with(wrapped, func(l *look) { l.bottom = borderHair })
 	lineTotal = with(wrapped, func(l *look) { l.bold = true; l.top, l.bottom = borderThin, borderThin })
 	label     = with(wrapped, func(l *look) { l.bold = true })
@@ -66,12 +66,15 @@ func with(l look, change func(*look)) look {
 
 // figures is a number in a table's line.
 func figures(format string) look {
-	return with(line, func(l *look) { l.format, l.across, l.wrap = format, "right", false })
+	return with(line, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 1, false })
 }
+
+// rightWords are words in a table's line that stand like a number.
+var rightWords = with(line, func(l *look) { l.across, l.indent = "right", 1 })
 
 // totals is a number in a total's line.
 func totals(format string) look {
-	return with(lineTotal, func(l *look) { l.format, l.across, l.wrap = format, "right", false })
+	return with(lineTotal, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 1, false })
 }
 
 // editable is a cell that the reader may change.

@@ -23,10 +23,14 @@ const (
 // runeEm is the width of a character as a share of the font size, for the proportions of Arial.
 func runeEm(r rune) float64 {
 	switch {
-	case strings.ContainsRune("ijl|'.,:;!", r):
-		return 0.26
-	case strings.ContainsRune(" ftI()[]-/\\rı", r):
-		return 0.33
+	case strings.ContainsRune("ijl|'ı", r):
+		return 0.23
+	case strings.ContainsRune(" ftI.,:;!/\\[]", r):
+		return 0.28
+	case strings.ContainsRune("()-r", r):
+		return 0.34
+	case strings.ContainsRune("ckszvxyJ", r):
+		return 0.50
 	case strings.ContainsRune("mMW%@—…▲●○", r):
 		return 0.92
 	case r == 'w':

@@ -167,12 +167,12 @@ func (b *book) conflictPart(row int) int {
 		for _, m := range members {
 			row++
 			s.text(row, 1, m.Limit, line)
-			s.text(row, 2, conflictWords(m), with(line, func(l *look) { l.across = "right" }))
+			s.text(row, 2, conflictWords(m), rightWords)
 			alone := "none would do"
 			if m.Alone != nil {
 				alone = joinFilled(" ", figureText(*m.Alone), strings.Trim(unitWords(m.Unit), "–"))
 			}
-			s.text(row, 3, alone, with(line, func(l *look) { l.across = "right" }))
+			s.text(row, 3, alone, rightWords)
 			s.text(row, 4, m.Receptor, line)
 			s.text(row, 5, m.Source, line)
 		}
@@ -191,7 +191,7 @@ func (b *book) bindingPart(row int) int {
 		row++
 		s.text(row, 1, what, line)
 		s.text(row, 2, entered, line)
-		s.text(row, 3, b.priceText(price, unit), with(line, func(l *look) { l.across = "right" }))
+		s.text(row, 3, b.priceText(price, unit), rightWords)
 		s.text(row, 4, said, line)
 		s.text(row, 5, orWords(source, notStated), line)
 	}

@@ -277,7 +277,7 @@ func (b *book) limitRow(row, i, k int) {
 	b.limitFormulas(row, i, k, unit, number)
 	if l.ShadowPrice != 0 {
 		s.text(row, recValid, fmt.Sprintf("%s %s per %s", figureText(l.ShadowPrice), aimUnit(b.report.Aim), priceUnit(unit, l.Quantity)),
-			with(line, func(l *look) { l.across = "right" }))
+			rightWords)
 	} else {
 		s.blank(row, recValid, line)
 	}
