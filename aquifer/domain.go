@@ -127,7 +127,7 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 	corners := d.corners()
 	set := func(f float64) {
 		d.finest = f
-		for k := range d.domain.Points {
+		for k := range near {
 			size := math.Min(f, near[k]/ringsBetween) * scale
 			d.domain.Points[k].Size = math.Max(size, floor[k])
 		}
@@ -147,14 +147,35 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 	if o.Scale > 0 {
 		return
 	}
-	huge := mesh.Options{Growth: d.growth, Coarsest: math.Sqrt(d.areaOfSite) / 10}
-	for try := 0; try < 40; try++ {
-		if mesh.EstimateNodes(d.domain, huge) <= 0.9*allowed {
-			return
-		}
-		finest *= 1.25
-		set(finest)
+	d.fit(allowed, finest, set)
+}
+
+// fit raises the finest size until about the allowed number of nodes is enough, or, where the outline's own vertices ask for more than
+// that, until the places add no more than a third to them. The estimate falls as the size grows, so halving its logarithm finds it.
+func (d *domainPlan) fit(allowed, finest float64, set func(float64)) {
+	unbounded := mesh.Options{Growth: d.growth, Coarsest: math.Sqrt(d.areaOfSite) / 10}
+	estimate := func(f float64) float64 {
+		set(f)
+		return mesh.EstimateNodes(d.domain, unbounded)
 	}
+	allowed *= 0.9 // the estimate is good to a few per cent, and the coarsest size still has to be reached
+	if estimate(finest) <= allowed {
+		return
+	}
+	low, high := finest, math.Sqrt(d.areaOfSite)/10
+	if high <= low {
+		return
+	}
+	target := math.Max(allowed, 4*estimate(high)/3)
+	for range 7 {
+		middle := math.Sqrt(low * high)
+		if estimate(middle) <= target {
+			high = middle
+		} else {
+			low = middle
+		}
+	}
+	set(high)
 }
 
 func orDefault(v, def float64) float64 {
