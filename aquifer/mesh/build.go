@@ -14,6 +14,9 @@ const (
 	defaultTolerance = 1e-8 // of the diagonal: 0.1 mm in 10 km, and far above the rounding of such coordinates
 	budgetFactor     = 4    // default budget over the nodes estimated
 	budgetExtra      = 50000
+	largestBudget    = 5_000_000 // default budget at most: about 1 GB while meshing
+	mostNodes        = 50_000_000 // what handles of 32 bits carry with room to spare
+	largestGrowth    = 1.0        // steeper grading cannot keep the angle
 )
 
 // resolved fills in the defaults.
@@ -48,7 +51,7 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	expected := r.integrate(field).nodes(field.coarsest)
 	r.maxNodes = o.MaxNodes
 	if r.maxNodes == 0 {
-		r.maxNodes = int(budgetFactor*expected) + budgetExtra
+		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, largestBudget))
 	}
 	r.start(field)
 	if err := r.run(ctx); err != nil {
@@ -152,7 +155,7 @@ func (c *carved) sizeBases(d Domain) {
 // makeField makes the size field and finds its coarsest size.
 func (r *refiner) makeField(d Domain, o Options) *sizeField {
 	x0, y0, x1, y1 := bounds(r.p)
-	f := newSizeField(r.sources(d.Points), o.Growth, x0, y0, x1, y1)
+	f := newSizeField(r.sources(d.Points, o.Tolerance), o.Growth, x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
 	if !(o.Coarsest > 0) {
 		f.coarsest = r.integrate(f).coarsestFor(float64(o.Nodes))

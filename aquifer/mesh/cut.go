@@ -63,7 +63,7 @@ func (r *refiner) divide(h int32) {
 	l := r.distance(a, b)
 	n := 1
 	if size := r.bases[s].size; l > size*(1+shellTolerance) {
-		n = int(math.Ceil(l/size - shellTolerance))
+		n = int(min(math.Ceil(l/size-shellTolerance), float64(r.maxNodes)))
 	}
 	var marks [][2]float64
 	count := 0.0

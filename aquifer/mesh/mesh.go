@@ -63,7 +63,7 @@ type Mesh struct {
 
 	nodeStart []int32 // NodeTriangles: start per node in nodeTris, length nodes+1
 	nodeTris  []int32
-	tree      locator
+	locator   locator
 }
 
 // Region is a connected set of triangles bounded by lines and outline.

@@ -10,8 +10,8 @@ const (
 )
 
 // sources makes a size-field source of every vertex: its shortest edge, which is how near the next feature is, and what the
-// domain's points ask for.
-func (c *carved) sources(points []Point) []source {
+// domain's points ask for, but never less than the tolerance.
+func (c *carved) sources(points []Point, tol float64) []source {
 	size := make([]float64, len(c.p))
 	for i := range size {
 		size[i] = math.Inf(1)
@@ -35,7 +35,7 @@ func (c *carved) sources(points []Point) []source {
 	out := make([]source, 0, len(c.p))
 	for i := range c.p {
 		if size[i] < math.Inf(1) {
-			out = append(out, source{c.p[i].x, c.p[i].y, size[i]})
+			out = append(out, source{c.p[i].x, c.p[i].y, max(size[i], tol)})
 		}
 	}
 	return out
