@@ -118,8 +118,8 @@ func (p *planner) headline(r *Report) string {
 	case StatusOptimal:
 		text := "Largest total rate that keeps the limits entered: " + flowText(r.TotalRate) + "."
 		if s.Aim == MostHeadroom {
-			text = "Rates that leave the largest smallest headroom at a total of " + flowText(r.TotalRate) + ": " + percentText(p.share) +
-				" of every limit stays free beyond its reserve."
+			text = "Rates that keep the largest share of every limit free at a total of " + flowText(r.TotalRate) + ": at least " +
+				percentText(p.share) + " beyond each reserve."
 		}
 		if len(s.invalid) > 0 {
 			text = "The plan is not valid: " + s.invalid[0] + ". " + text

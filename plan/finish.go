@@ -16,6 +16,9 @@ func (p *planner) finish(ctx context.Context, g *programme, sol *convex.Solution
 	if !c.Accepted {
 		return p.fail(ctx, fmt.Sprintf("the solution did not pass its check: %s", c.Reason))
 	}
+	if sol.PrimalDegenerate {
+		p.setup.cautions.addf("more limits and bounds meet at the plan than fix it: what loosening one of them is worth may be less than its price says")
+	}
 	if sol.DualDegenerate {
 		other, err := p.hasOther(ctx, g, sol)
 		if err != nil {

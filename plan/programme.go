@@ -44,7 +44,7 @@ func (p *planner) build(withShare bool) (*programme, error) {
 				standing += q.weight[m] * s.standing[i]
 			}
 		}
-		if err := g.add(owner{ofQuota, k}, s.quotaWords(q), a, math.Inf(-1), q.limit-standing); err != nil {
+		if err := g.add(owner{ofQuota, k}, s.quotaWords(q), a, math.Inf(-1), remainder(q.limit-standing, q.limit+standing)); err != nil {
 			return nil, err
 		}
 	}
@@ -90,7 +90,7 @@ func (p *planner) addBound(g *programme, k int, tan tangent) error {
 	s := p.setup
 	b := p.bounds[k]
 	a := g.coefficients()
-	standing := tan.constant
+	standing, terms := tan.constant, math.Abs(tan.constant)+math.Abs(b.edge)
 	for i, slope := range tan.slope {
 		switch {
 		case !b.counted[i]:
@@ -98,12 +98,26 @@ func (p *planner) addBound(g *programme, k int, tan tangent) error {
 			a[s.column[i]] = b.side * slope
 		default:
 			standing += slope * s.standing[i]
+			terms += math.Abs(slope * s.standing[i])
 		}
 	}
 	if g.share >= 0 {
 		a[g.share] = b.size
 	}
-	return g.add(owner{ofBound, k}, s.boundWords(b), a, math.Inf(-1), b.slack(standing, 0))
+	return g.add(owner{ofBound, k}, s.boundWords(b), a, math.Inf(-1), remainder(b.slack(standing, 0), terms))
+}
+
+// remainderShare is the remainder, as a share of the terms that it is the difference of, that is rounding: a hundred sums of a
+// thousand terms.
+const remainderShare = 1e-11
+
+// remainder is what a limit leaves to the decided wells once the standing wells have taken their part; exactly zero where they take
+// all of it, so that rounding cannot make a limit that just holds impossible.
+func remainder(left, terms float64) float64 {
+	if math.Abs(left) <= remainderShare*terms {
+		return 0
+	}
+	return left
 }
 
 func (g *programme) coefficients() []float64 { return make([]float64, g.problem.Columns()) }

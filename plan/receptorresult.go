@@ -105,6 +105,11 @@ func (p *planner) fillReceptor(ctx context.Context, i int, tan tangent, rates []
 			s.notAssessed.addf("the state with existing users at %s rates: that rate of %s is blank", known.name, list(blank))
 			continue
 		}
+		if sameRates(others, make([]float64, len(others))) {
+			value := r.NoPumping
+			*known.into = &value
+			continue
+		}
 		state, err := p.oracle.tangent(ctx, t, others)
 		if err != nil {
 			return nil, err
