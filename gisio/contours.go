@@ -124,7 +124,8 @@ func newContourTracer(x, y []float64, triangles []int32, values []float64) *cont
 func (t *contourTracer) lines(level float64) []ContourLine {
 	t.collect(level)
 	var out []ContourLine
-	keep := func(points orb.LineString, closed bool) {
+	keep := func(points orb.LineString) {
+		closed := points[0] == points[len(points)-1] // a loop, or ends that fall on one node of the outline
 		if points = withoutSpikes(points, closed); len(points) < 2 {
 			return
 		}
@@ -137,16 +138,16 @@ func (t *contourTracer) lines(level float64) []ContourLine {
 		switch s := t.segments[i]; {
 		case s.used:
 		case t.meeting[s.from][1] < 0:
-			keep(t.trace(int32(i), s.from, level), false)
+			keep(t.trace(int32(i), s.from, level))
 		case t.meeting[s.to][1] < 0:
 			points := t.trace(int32(i), s.to, level)
 			slices.Reverse(points)
-			keep(points, false)
+			keep(points)
 		}
 	}
 	for i := range t.segments { // what is left are loops
 		if s := t.segments[i]; !s.used {
-			keep(t.trace(int32(i), s.from, level), true)
+			keep(t.trace(int32(i), s.from, level))
 		}
 	}
 	for _, s := range t.segments {

@@ -65,12 +65,19 @@ type contactSearch struct {
 	ringLen []int32   // number of edges of each ring
 	found   []edgeContact
 	most    int
+	pairs   int // pairs of edges that were looked at
 }
 
-// findContacts gives the contacts between edges of closed rings without repeated consecutive points, sorted by
-// edges. Once most contacts are found it stops and gives those.
+// findContacts gives the contacts between edges of closed rings without repeated consecutive points and without spikes
+// (so that neighbours meet at their common end only), sorted by edges. Once most contacts are found it stops and gives those.
 func findContacts(rings [][]orb.Point, most int) []edgeContact {
-	s := contactSearch{most: most, ringLen: make([]int32, len(rings))}
+	s := newContactSearch(rings, most)
+	s.run()
+	return s.found
+}
+
+func newContactSearch(rings [][]orb.Point, most int) *contactSearch {
+	s := &contactSearch{most: most, ringLen: make([]int32, len(rings))}
 	total := 0
 	for _, r := range rings {
 		total += max(len(r)-1, 0)
@@ -82,8 +89,12 @@ func findContacts(rings [][]orb.Point, most int) []edgeContact {
 		}
 		s.ringLen[i] = int32(max(len(r)-1, 0))
 	}
+	return s
+}
+
+func (s *contactSearch) run() {
 	if len(s.edges) == 0 {
-		return nil
+		return
 	}
 	s.sortEdges()
 	s.boxes = make([]extents, len(s.edges))
@@ -101,7 +112,6 @@ func findContacts(rings [][]orb.Point, most int) []edgeContact {
 		return cmp.Or(cmp.Compare(p.e.ring, q.e.ring), cmp.Compare(p.e.index, q.e.index),
 			cmp.Compare(p.f.ring, q.f.ring), cmp.Compare(p.f.index, q.f.index))
 	})
-	return s.found
 }
 
 // sortEdges orders the edges by the Z-order curve through their middles.
@@ -215,6 +225,7 @@ func (s *contactSearch) across(p, pFirst, q, qFirst, leaves int) {
 }
 
 func (s *contactSearch) pair(i, j int) {
+	s.pairs++
 	if !s.boxes[i].meet(&s.boxes[j]) {
 		return
 	}
@@ -222,15 +233,12 @@ func (s *contactSearch) pair(i, j int) {
 	if f.ring < e.ring || f.ring == e.ring && f.index < e.index {
 		e, f = f, e
 	}
+	if e.ring == f.ring && (e.index+1 == f.index || e.index == 0 && f.index == s.ringLen[e.ring]-1) {
+		return
+	}
 	kind, point := segmentContact(e.a, e.b, f.a, f.b)
 	if kind == contactNone {
 		return
-	}
-	if kind == contactTouch && e.ring == f.ring {
-		n := s.ringLen[e.ring]
-		if e.index+1 == f.index || f.index == n-1 && e.index == 0 {
-			return
-		}
 	}
 	s.found = append(s.found, edgeContact{e, f, kind, point})
 }

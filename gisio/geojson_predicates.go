@@ -19,6 +19,9 @@ const (
 
 // orientation gives the exact sign of the turn a, b, c: 1 to the left, -1 to the right, 0 straight. The points must be finite.
 func orientation(a, b, c orb.Point) int {
+	if a == b || b == c || c == a {
+		return 0
+	}
 	abx, aby := b[0]-a[0], b[1]-a[1]
 	acx, acy := c[0]-a[0], c[1]-a[1]
 	left, right := abx*acy, aby*acx
