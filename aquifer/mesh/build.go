@@ -14,7 +14,7 @@ const (
 	defaultTolerance = 1e-8 // of the diagonal: 0.1 mm in 10 km, and far above the rounding of such coordinates
 	budgetFactor     = 4    // default budget over the nodes estimated
 	budgetExtra      = 50000
-	largestBudget    = 5_000_000 // default budget at most: about 1 GB while meshing
+	largestBudget    = 5_000_000  // default budget at most: about 1 GB while meshing
 	mostNodes        = 50_000_000 // what handles of 32 bits carry with room to spare
 	largestGrowth    = 1.0        // steeper grading cannot keep the angle
 )
@@ -38,8 +38,7 @@ func (o Options) resolved(d Domain) Options {
 // when stopped. A budget that was hit and angles that the input forced are told in Mesh.Quality, not as errors. Method and
 // sources: package documentation (Ruppert 1995; Shewchuk 2002; Ungor 2004).
 func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
-	problems := append(checkOptions(o), check(d, o.Tolerance)...)
-	if len(problems) > 0 {
+	if problems := checkAll(d, o); len(problems) > 0 {
 		return nil, &DomainError{problems}
 	}
 	o = o.resolved(d)
@@ -63,7 +62,7 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 // EstimateNodes is about the number of nodes that Build will make: the integral of the size field after the segments have been
 // cut for nearness, without refining triangles. It is 0 for a domain that Build refuses.
 func EstimateNodes(d Domain, o Options) float64 {
-	if len(checkOptions(o)) > 0 || len(check(d, o.Tolerance)) > 0 {
+	if len(checkAll(d, o)) > 0 {
 		return 0
 	}
 	o = o.resolved(d)

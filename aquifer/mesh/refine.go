@@ -29,6 +29,8 @@ const (
 	// hopelessShare: below this share of the wanted length a short edge comes from the input's own sharpness; its triangles
 	// are left, which bounds the work.
 	hopelessShare = 1.0 / 16
+	// gapLengths: pieces of a segment are at most so many widths of the gap beside it before sizes are taken from them.
+	gapLengths = 4
 	// cornerHalvings bounds the cutting of a segment towards a sharp corner.
 	cornerHalvings = 1 << 24
 )
@@ -103,7 +105,7 @@ func (r *refiner) checkEdges(t int32) {
 		if tr.s[k] < 0 {
 			continue
 		}
-		if r.encroached(t, k) {
+		if r.encroached(t, k) || r.field == nil && r.crowded(t, k) {
 			r.encroach.push(item{4*t + k, tr.stamp})
 		}
 		if (tr.n[k] < 0 || tr.n[k] > 4*t+k) && r.tooLong(4*t+k) {
@@ -119,6 +121,20 @@ func (r *refiner) encroached(t, k int32) bool {
 	bx, by := r.vector(tr.region, tr.v[k], tr.v[prev3[k]])
 	dot := ax*bx + ay*by
 	return dot < 0 && dot*dot > rightAngleSlack*rightAngleSlack*(ax*ax+ay*ay)*(bx*bx+by*by)
+}
+
+// crowded says whether the apex stands so near the inner part of edge k that the pieces of the edge have to follow the gap; not
+// at a sharp corner, where the gap closes.
+func (r *refiner) crowded(t, k int32) bool {
+	tr := &r.t[t]
+	a, b, c := tr.v[next3[k]], tr.v[prev3[k]], tr.v[k]
+	ex, ey := r.vector(tr.region, a, b)
+	ux, uy := r.vector(tr.region, a, c)
+	l2, along := ex*ex+ey*ey, ex*ux+ey*uy
+	if !(along > 0 && along < l2 && l2 > gapLengths*math.Abs(ex*uy-ey*ux)) {
+		return false
+	}
+	return !r.acrossCorner(a, c) && !r.acrossCorner(b, c)
 }
 
 // relax empties the segment queues.

@@ -382,6 +382,15 @@ func (c *checker) checkInside(set *ringSet, p Point) {
 	}
 }
 
+// checkAll lists what is wrong with options and domain.
+func checkAll(d Domain, o Options) []Problem {
+	problems := checkOptions(o)
+	if !(o.Tolerance >= 0) || math.IsInf(o.Tolerance, 0) {
+		o.Tolerance = 0
+	}
+	return append(problems, check(d, o.Tolerance)...)
+}
+
 // checkOptions lists what is wrong with options.
 func checkOptions(o Options) []Problem {
 	var out []Problem
