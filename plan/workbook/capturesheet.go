@@ -83,7 +83,7 @@ func (b *book) captureByWell(row, leading int) {
 	row += 2
 	for j, id := range r.CaptureWells {
 		i := b.facts.well[id]
-		s.text(row, 1, id, with(line, func(l *look) { l.bold = true }))
+		s.text(row, 1, id, strong)
 		s.text(row, 2, r.Wells[i].Name, line)
 		s.text(row, 3, whoseWords(r.Wells[i].Others), line)
 		planRow := b.planRows.first + i

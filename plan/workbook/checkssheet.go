@@ -54,7 +54,7 @@ func (b *book) checkTable(row int) int {
 	for _, c := range b.report.Checks {
 		row++
 		s.text(row, 1, c.Name, line)
-		s.text(row, 2, resultWords(c.Result), figuresOfWords())
+		s.text(row, 2, resultWords(c.Result), strong)
 		s.across(row, 3, checksEnd, c.Detail, line)
 	}
 	s.warnWords(2, first, row)
@@ -154,7 +154,7 @@ func (b *book) agreementTable(row int) int {
 		}
 		row++
 		s.text(row, 1, a.what, line)
-		s.text(row, 2, resultWords(resultFail), figuresOfWords())
+		s.text(row, 2, resultWords(resultFail), strong)
 		s.value(row, 3, a.here, figures(exactFormat))
 		s.value(row, 4, a.report, figures(exactFormat))
 		s.blank(row, 5, line)

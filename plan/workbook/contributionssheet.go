@@ -1,5 +1,8 @@
 package workbook
 
+// rowsOnPage is about how many lines a landscape page takes.
+const rowsOnPage = 28
+
 // fillContributions writes each well's part of each receptor's change, and its share, from the rates now.
 func (b *book) fillContributions() {
 	s, l := b.contributions, &b.sens
@@ -38,7 +41,11 @@ func (b *book) fillContributions() {
 		s.formula(row, leading+1+k, sumOf(s.down(s, leading+1+k, first, row-1)), totals(formats[k]))
 		b.agree("contributions to "+b.report.Receptors[rec].ID, s.at(row, leading+1+k).number, b.report.Receptors[rec].Change, b.gross(rec))
 	}
-	row = s.sectionHead(row+2, last, "Shares")
+	row += 2
+	if row > rowsOnPage/2 {
+		s.page.rowBreaks = append(s.page.rowBreaks, row)
+	}
+	row = s.sectionHead(row, last, "Shares")
 	row = b.receptorHeads(s, row, leading, false)
 	firstShare := row
 	for i := range b.report.Wells {
@@ -92,7 +99,7 @@ func (b *book) contributionFormats() []string {
 
 func (b *book) contributionLead(s *sheet, row, i int) {
 	w := b.report.Wells[i]
-	s.text(row, 1, w.ID, with(line, func(l *look) { l.bold = true }))
+	s.text(row, 1, w.ID, strong)
 	s.text(row, 2, w.Name, line)
 	s.text(row, 3, whoseWords(w.Others), line)
 	from := b.sensitivities.at(b.sens.first+i, b.sens.rate)

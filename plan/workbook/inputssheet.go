@@ -68,7 +68,7 @@ func (b *book) wellTable(row int) int {
 	b.inputWells = row + 1
 	for _, w := range b.report.Wells {
 		row++
-		s.text(row, 1, w.ID, with(line, func(l *look) { l.bold = true }))
+		s.text(row, 1, w.ID, strong)
 		s.text(row, 2, w.Name, line)
 		s.value(row, 3, w.X, figures("#,##0.0"))
 		s.value(row, 4, w.Y, figures("#,##0.0"))

@@ -57,12 +57,10 @@ func (b *book) limitFormulas(row, i, k int, unit string, format look) {
 	status := chooseWords(less(left.plus(near), number(0)), words(wordPassed),
 		chooseWords(less(spare.plus(near), number(0)), words(wordReserve),
 			chooseWords(atMost(spare, near), words(wordBinds), words(wordHolds))))
-	s.phrase(row, recOthers, status, figuresOfWords())
+	s.phrase(row, recOthers, status, strong)
 	b.agree("limited quantity of "+l.ID, quantity.value, l.Value, scale)
 	b.agree("headroom of "+l.ID, left.value, l.Headroom, scale)
 }
-
-func figuresOfWords() look { return with(line, func(l *look) { l.bold = true }) }
 
 // fraction is 0 where a value without pumping says nothing about a limit's size.
 func fraction(l plan.LimitResult) float64 {

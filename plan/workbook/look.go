@@ -38,7 +38,10 @@ const (
 	borderMid  = 2
 )
 
-const textSize = 10
+const (
+	textSize = 10
+	headSize = 9
+)
 
 var (
 	plain   = look{size: textSize, ink: inkDark, upright: "top"}
@@ -49,11 +52,11 @@ var (
 	banner  = with(plain, func(l *look) { l.ink = inkMuted; l.italic = true; l.upright = "center" })
 	section = with(plain, func(l *look) { l.size = 12; l.bold = true; l.bottom = borderMid; l.upright = "bottom" })
 	head    = with(wrapped, func(l *look) {
-		l.bold, l.fill, l.bottom, l.upright = true, fillHead, borderThin, "bottom"
+		l.bold, l.fill, l.bottom, l.upright, l.across, l.indent, l.size = true, fillHead, borderThin, "bottom", "left", 1, headSize
 	})
-	headRight = with(head, func(l *look) { l.across, l.indent = "right", 1 })
-	line      = with(wrapped, func(l *look) { l.bottom = borderHair })
-	lineTotal = with(wrapped, func(l *look) { l.bold = true; l.top, l.bottom = borderThin, borderThin })
+	headRight = with(head, func(l *look) { l.across, l.indent = "right", 0 })
+	line      = with(wrapped, func(l *look) { l.bottom, l.across, l.indent = borderHair, "left", 1 })
+	lineTotal = with(line, func(l *look) { l.bold = true; l.top, l.bottom = borderThin, borderThin })
 	label     = with(wrapped, func(l *look) { l.bold = true })
 	warnMark  = look{bold: true, fill: fillWarn, ink: inkDark}
 	reachMark = look{bold: true, fill: fillReach, ink: inkDark}
@@ -66,15 +69,18 @@ func with(l look, change func(*look)) look {
 
 // figures is a number in a table's line.
 func figures(format string) look {
-	return with(line, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 1, false })
+	return with(line, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 0, false })
 }
 
+// strong is a line's name or its state.
+var strong = with(line, func(l *look) { l.bold = true })
+
 // rightWords are words in a table's line that stand like a number.
-var rightWords = with(line, func(l *look) { l.across, l.indent = "right", 1 })
+var rightWords = with(line, func(l *look) { l.across, l.indent = "right", 0 })
 
 // totals is a number in a total's line.
 func totals(format string) look {
-	return with(lineTotal, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 1, false })
+	return with(lineTotal, func(l *look) { l.format, l.across, l.indent, l.wrap = format, "right", 0, false })
 }
 
 // editable is a cell that the reader may change.

@@ -45,7 +45,11 @@ func headerText(s string) string {
 	if len(r) > maxHeader {
 		r = append(r[:maxHeader-1], '…')
 	}
-	return strings.ReplaceAll(string(r), "&", "&&")
+	text := strings.ReplaceAll(string(r), "&", "&&")
+	if len(r) > 0 && r[0] >= '0' && r[0] <= '9' {
+		return " " + text // else the digits would be read as part of the font's size
+	}
+	return text
 }
 
 func pointer[T any](v T) *T { return &v }
@@ -108,8 +112,8 @@ func (s *sheet) finish(f *excelize.File, report string) error {
 		Top: pointer(topMargin), Bottom: pointer(bottomMargin), Header: pointer(edgeMargin), Footer: pointer(edgeMargin)}); err != nil {
 		return err
 	}
-	head := `&L&"Arial,Regular"&8 ` + headerText(report) + `&R&"Arial,Regular"&8 ` + headerText(s.name) + `, page &P of &N`
-	foot := `&L&"Arial,Regular"&8 ` + standingLine
+	head := `&L&"Arial,Regular"&8` + headerText(report) + `&R&"Arial,Regular"&8` + headerText(s.name) + `, page &P of &N`
+	foot := `&L&"Arial,Regular"&8` + standingLine
 	if err := f.SetHeaderFooter(s.name, &excelize.HeaderFooterOptions{OddHeader: head, OddFooter: foot,
 		ScaleWithDoc: pointer(false), AlignWithMargins: pointer(true)}); err != nil {
 		return err

@@ -1,7 +1,5 @@
 package workbook
 
-import "fmt"
-
 // A quotaLine is where a quota stands on Plan.
 type quotaLine struct {
 	row    int
@@ -12,7 +10,7 @@ type quotaLine struct {
 func (b *book) fillPlanFoot() {
 	p, s := &b.planRows, b.plan
 	row := p.last + 2
-	for c := 1; c <= p.source; c++ {
+	for c := 1; c <= p.rates; c++ {
 		s.blank(row, c, section)
 	}
 	s.text(row, 1, "Totals", section)
@@ -76,7 +74,7 @@ func (b *book) totalLine(row int, words string, sum func(column int) term) int {
 // demandLine compares the total with the demand.
 func (b *book) demandLine(row int, demand float64) int {
 	p, s := &b.planRows, b.plan
-	for c := 1; c <= p.source; c++ {
+	for c := 1; c <= p.rates; c++ {
 		s.blank(row, c, line)
 	}
 	s.across(row, 1, p.whose, "Demand for the wells that the plan decides", line)
@@ -84,10 +82,6 @@ func (b *book) demandLine(row int, demand float64) int {
 	total, want := p.totalNow, s.ref(s, row, p.planned)
 	near := number(limitNearShare * abs(demand))
 	s.phrase(row, p.within, chooseWords(less(total, want.minus(near)), words("▲ NOT MET"), words("○ met")), line)
-	if price := b.report.DemandPrice; price != nil {
-		s.value(row, p.price, *price, figures(priceFormat(*price)))
-		s.text(row, p.priceWords, fmt.Sprintf("1 m³/d more demand changes the aim by %s %s.", figureText(*price), aimUnit(b.report.Aim)), line)
-	}
 	s.warnWords(p.within, row, row)
 	return row + 1
 }
@@ -95,7 +89,7 @@ func (b *book) demandLine(row int, demand float64) int {
 // fillQuotas writes licences and groups with sums that follow the rates.
 func (b *book) fillQuotas(row int) {
 	p, s := &b.planRows, b.plan
-	for c := 1; c <= p.source; c++ {
+	for c := 1; c <= p.rates; c++ {
 		s.blank(row, c, section)
 	}
 	s.text(row, 1, "Licences and groups of wells", section)
@@ -105,13 +99,13 @@ func (b *book) fillQuotas(row int) {
 		s.nothing(row, p.whose, "None were entered.")
 		return
 	}
-	for c := 1; c <= p.source; c++ {
+	for c := 1; c <= p.rates; c++ {
 		s.blank(row, c, head)
 	}
-	s.heads(row, 1, "Licence or group", "Holder", "Wells", "", "Basis", ">Sum at the plan\nm³/d", ">Sum now\nm³/d")
+	s.heads(row, p.id, "Licence or group", "Holder; source", "Wells", "Limit as entered", "", ">Sum at the plan\nm³/d", ">Sum now\nm³/d")
+	s.merge(row, p.mode, p.whose)
 	s.heads(row, p.difference, ">Headroom now\nm³/d")
-	s.heads(row, p.volume, ">Limit entered\nm³ per basis", "", ">Limit\nm³/d", "Sum now", ">Price at the plan", "What the price says", "Source")
-	s.merge(row, p.owner, p.mode)
+	s.heads(row, p.volume, ">Price at the plan\nper m³/d", "", ">Limit\nm³/d", "Sum now")
 	first := row + 1
 	for k := range b.report.Quotas {
 		row++
@@ -122,13 +116,13 @@ func (b *book) fillQuotas(row int) {
 
 func (b *book) quotaLine(k, row int) {
 	p, s, q := &b.planRows, b.plan, b.report.Quotas[k]
-	for c := 1; c <= p.source; c++ {
+	for c := 1; c <= p.rates; c++ {
 		s.blank(row, c, line)
 	}
 	s.text(row, p.id, q.Name, line)
-	s.text(row, p.name, q.Holder, line)
-	s.across(row, p.owner, p.mode, wellList(q.Wells), line)
-	s.text(row, p.whose, q.Basis, line)
+	s.text(row, p.name, joinFilled("; ", q.Holder, q.Source), line)
+	s.text(row, p.owner, wellList(q.Wells), line)
+	s.across(row, p.mode, p.whose, figureText(q.Entered)+" m³ "+q.Basis, line)
 	l := figures(rateFormat(q.Limit, q.Sum))
 	s.value(row, p.planned, q.Sum, l)
 	column := p.now
@@ -137,7 +131,6 @@ func (b *book) quotaLine(k, row int) {
 	}
 	s.formula(row, p.now, b.pumpedSum(q.Wells, column), l)
 	b.agree("sum of "+q.Name+" "+q.Basis, s.at(row, p.now).number, q.Sum, 0)
-	s.value(row, p.volume, q.Entered, figures(rateFormat(q.Entered)))
 	s.value(row, p.most, q.Limit, l)
 	s.formula(row, p.difference, rounded(s.ref(s, row, p.most).minus(s.ref(s, row, p.now)), roundDigits), l)
 	b.agree("headroom of "+q.Name+" "+q.Basis, s.at(row, p.difference).number, q.Headroom, q.Limit)
@@ -146,11 +139,10 @@ func (b *book) quotaLine(k, row int) {
 	status := chooseWords(less(headroom.plus(near), number(0)), words(wordPassed),
 		chooseWords(atMost(headroom, near), words(wordBinds), words(wordHolds)))
 	s.phrase(row, p.within, status, line)
+	s.blank(row, p.volume, line)
 	if q.ShadowPrice != 0 {
-		s.value(row, p.price, q.ShadowPrice, figures(priceFormat(q.ShadowPrice)))
-		s.text(row, p.priceWords, fmt.Sprintf("1 m³/d more is worth %s %s.", figureText(q.ShadowPrice), aimUnit(b.report.Aim)), line)
+		s.value(row, p.volume, q.ShadowPrice, figures(priceFormat(q.ShadowPrice)))
 	}
-	s.text(row, p.source, q.Source, line)
 	b.names.add("quota", q.Name, s, row, p.now)
 	b.quotas = append(b.quotas, quotaLine{row, s.wordRef(s, row, p.within)})
 }

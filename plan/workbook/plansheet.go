@@ -15,6 +15,8 @@ type planLayout struct {
 	static, drop, headNow, own, loss, level, levelPlan            int
 	lowest, reason, margin, levelStatus, levelPrice, top, overTop int
 	valid, record                                                 int
+	idAgain, idLevels                                             int // the well again, at the left of a printed page
+	rates                                                         int // last column of the first page
 	end                                                           int
 	changed, inUse                                                term
 	levelStatuses, withinStatuses                                 wordSpan
@@ -56,11 +58,15 @@ func (b *book) layPlan() {
 	place(&p.volume, 11)
 	place(&p.least, 8.5)
 	place(&p.most, 8.5)
-	place(&p.within, 15)
-	place(&p.price, 9)
-	place(&p.priceWords, 25)
-	place(&p.source, 20)
-	group := column
+	place(&p.within, 16)
+	p.rates = column
+	place(&p.idAgain, 9)
+	place(&p.price, 10)
+	place(&p.priceWords, 32)
+	place(&p.source, 32)
+	place(&p.record, 32)
+	prices := column
+	place(&p.idLevels, 9)
 	place(&p.static, 9)
 	place(&p.drop, 10)
 	place(&p.headNow, 9.5)
@@ -69,16 +75,15 @@ func (b *book) layPlan() {
 	place(&p.level, 9.5)
 	place(&p.levelPlan, 9.5)
 	place(&p.lowest, 9.5)
-	place(&p.reason, 20)
+	place(&p.reason, 19)
 	place(&p.margin, 9)
-	place(&p.levelStatus, 11.5)
+	place(&p.levelStatus, 13)
 	place(&p.levelPrice, 10.5)
 	place(&p.top, 9)
 	place(&p.overTop, 9)
-	place(&p.valid, 8.5)
-	place(&p.record, 24)
+	place(&p.valid, 9)
 	p.end = column
-	s.page = pageSetup{landscape: true, groupEnds: []int{group, column}, titleRows: [2]int{planHeadRow - 1, planHeadRow}, titleColumns: p.name,
+	s.page = pageSetup{landscape: true, groupEnds: []int{p.rates, prices, column}, titleRows: [2]int{planHeadRow - 1, planHeadRow},
 		freezeRow: planHeadRow + 1, freezeColumn: p.name + 1}
 }
 
@@ -94,7 +99,9 @@ func (b *book) fillRates() {
 	unitFormat := rateFormat(largest(rates) / b.unit.factor)
 	for i, w := range b.report.Wells {
 		row := p.first + i
-		s.text(row, p.id, w.ID, with(line, func(l *look) { l.bold = true }))
+		for _, c := range []int{p.id, p.idAgain, p.idLevels} {
+			s.text(row, c, w.ID, strong)
+		}
 		s.text(row, p.name, w.Name, line)
 		s.text(row, p.owner, w.Owner, line)
 		s.text(row, p.mode, w.Mode, line)
@@ -152,8 +159,10 @@ func (b *book) planHeads() {
 	}
 	s.text(planHeadRow-1, 1, "Rates: change only the shaded cells", label)
 	s.at(planHeadRow-1, 1).look.wrap = false
-	s.text(planHeadRow-1, p.static, "Levels in the wells, steady state, in metres above the datum", label)
-	s.at(planHeadRow-1, p.static).look.wrap = false
+	s.text(planHeadRow-1, p.idAgain, "Prices of bounds, and sources", label)
+	s.at(planHeadRow-1, p.idAgain).look.wrap = false
+	s.text(planHeadRow-1, p.idLevels, "Levels in the wells, steady state, in metres above the datum", label)
+	s.at(planHeadRow-1, p.idLevels).look.wrap = false
 	set := func(column int, text string) {
 		if column > 0 {
 			s.heads(planHeadRow, column, text)
@@ -161,6 +170,8 @@ func (b *book) planHeads() {
 	}
 	u := b.unit.shown
 	set(p.id, "Well")
+	set(p.idAgain, "Well")
+	set(p.idLevels, "Well")
 	set(p.name, "Name")
 	set(p.owner, "Owner")
 	set(p.mode, "Rate is")
@@ -177,7 +188,7 @@ func (b *book) planHeads() {
 	set(p.least, ">Least rate\nm³/d")
 	set(p.most, ">Largest rate\nm³/d")
 	set(p.within, "Rate now against its bounds")
-	set(p.price, ">Price of the bound at the plan")
+	set(p.price, ">Price of the bound at the plan\nper m³/d")
 	set(p.priceWords, "What the price says")
 	set(p.source, "Where the largest rate comes from")
 	set(p.static, ">Level without pumping\nm")

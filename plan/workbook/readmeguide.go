@@ -33,7 +33,7 @@ func (b *book) guidePart(row int) int {
 		{"Checks", "what was checked, what failed and what was not done; one calculation by hand"},
 	} {
 		row++
-		s.text(row, 1, l[0], with(line, func(l *look) { l.bold = true }))
+		s.text(row, 1, l[0], strong)
 		s.across(row, 2, readEnd, l[1], line)
 	}
 	return row + 1

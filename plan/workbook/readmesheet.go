@@ -3,6 +3,8 @@ package workbook
 import (
 	"fmt"
 	"strings"
+
+	"springbound/plan"
 )
 
 const readEnd = 5
@@ -198,7 +200,7 @@ func (b *book) bindingPart(row int) int {
 	for _, rec := range r.Receptors {
 		for _, l := range rec.Limits {
 			if l.Binds || l.Passed {
-				put(joinFilled(": ", joinFilled(" ", rec.ID, rec.Name), limitWords(rec, l)), orWords(l.Entered, joinFilled(" ", figureText(l.Limit), strings.Trim(unitWords(l.Unit), "–"))),
+				put(joinFilled(": ", joinFilled(" ", rec.ID, rec.Name), limitWords(rec, l)), limitText(l),
 					l.ShadowPrice, priceUnit(l.Unit, l.Quantity), l.Sentence, l.Source)
 			}
 		}
@@ -232,6 +234,17 @@ func (b *book) bindingPart(row int) int {
 		remark += " Other plans are as good as this one."
 	}
 	return s.paragraph(row, readEnd, remark, muted)
+}
+
+// limitText is a limit as the user wrote it, or in its unit.
+func limitText(l plan.LimitResult) string {
+	switch {
+	case l.Entered != "":
+		return l.Entered
+	case l.Quantity == quantityShare:
+		return figureText(l.Limit*shareOfPercent) + " %"
+	}
+	return joinFilled(" ", figureText(l.Limit), strings.Trim(unitWords(l.Unit), "–"))
 }
 
 func (b *book) priceText(price float64, unit string) string {

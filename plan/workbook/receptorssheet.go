@@ -56,8 +56,9 @@ func (b *book) fillReceptors() {
 				members = append(members, i)
 			}
 		}
-		if part.flow && row > firstRow {
+		if part.flow {
 			row++
+			s.page.rowBreaks = append(s.page.rowBreaks, row)
 		}
 		row = s.sectionHead(row, recEnd, part.title)
 		if len(members) == 0 {
@@ -95,7 +96,7 @@ func smallLimits(limits []plan.LimitResult) []float64 {
 
 func (b *book) receptorRow(row, i int) {
 	s, r := b.receptors, b.report.Receptors[i]
-	s.text(row, recID, r.ID, with(line, func(l *look) { l.bold = true }))
+	s.text(row, recID, r.ID, strong)
 	s.text(row, recName, r.Name, line)
 	s.text(row, recKind, kindWords(r.Kind), line)
 	s.text(row, recOwner, joinFilled("; ", r.Owner, r.Use), line)
@@ -240,7 +241,7 @@ func countWords(l plan.LimitResult) string {
 func (b *book) limitRow(row, i, k int) {
 	s, r := b.receptors, b.report.Receptors[i]
 	l := r.Limits[k]
-	s.text(row, recID, l.ID, with(line, func(l *look) { l.bold = true }))
+	s.text(row, recID, l.ID, strong)
 	s.text(row, recName, joinFilled(" · ", r.ID, r.Name), line)
 	s.text(row, recKind, limitWords(r, l), line)
 	s.text(row, recOwner, countWords(l), line)

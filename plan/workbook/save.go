@@ -42,6 +42,7 @@ func (b *book) saveSheet(i int, s *sheet) error {
 	} else if _, err := f.NewSheet(s.name); err != nil {
 		return err
 	}
+	s.fitWidths()
 	if err := s.setUp(f); err != nil {
 		return err
 	}

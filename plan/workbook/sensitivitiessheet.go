@@ -88,7 +88,7 @@ func (b *book) totalWidth(s *sheet) float64 {
 func (b *book) sensitivityRow(i int) {
 	s, l, w := b.sensitivities, &b.sens, b.report.Wells[i]
 	row := l.first + i
-	s.text(row, 1, w.ID, with(line, func(l *look) { l.bold = true }))
+	s.text(row, 1, w.ID, strong)
 	s.text(row, 2, w.Name, line)
 	s.text(row, 3, whoseWords(w.Others), line)
 	s.formula(row, l.rate, b.plan.ref(s, b.planRows.first+i, b.planRows.now), figures(b.plan.at(b.planRows.first+i, b.planRows.now).look.format))
@@ -137,7 +137,7 @@ func (b *book) fillWellMatrix(row int) {
 	l.wellFirst = row + 2
 	l.wellLast = l.wellFirst + len(b.report.Wells) - 1
 	for j, w := range b.report.Wells {
-		s.text(l.wellFirst+j, 1, w.ID, with(line, func(l *look) { l.bold = true }))
+		s.text(l.wellFirst+j, 1, w.ID, strong)
 		s.text(l.wellFirst+j, 2, w.Name, line)
 		for c := 3; c <= sensLeading; c++ {
 			s.blank(l.wellFirst+j, c, line)
