@@ -16,26 +16,21 @@ type bipartite struct {
 	stack       []int32
 }
 
-// smallestCover appends to out the nodes of a smallest cover of the edges between the sides of the part. nodes are the
-// left nodes; local is scratch by node. Left nodes of the cover come first.
-func (b *bipartite) smallestCover(g *graph, side []uint8, local []int32, nodes, out []int32) []int32 {
-	b.collect(g, side, local, nodes)
+// smallestCover returns the nodes of a smallest cover of the edges between the sides of the part, left nodes first.
+// boundary holds the left nodes that have neighbours on the right; its memory is used for the result. local is scratch
+// by node.
+func (b *bipartite) smallestCover(g *graph, side []uint8, local []int32, boundary []int32) []int32 {
+	b.collect(g, side, local, boundary)
 	b.match()
-	return b.konig(out)
+	return b.konig(boundary[:0])
 }
 
-func (b *bipartite) collect(g *graph, side []uint8, local []int32, nodes []int32) {
-	b.left, b.right, b.start, b.to = b.left[:0], b.right[:0], b.start[:0], b.to[:0]
-	for _, v := range nodes {
-		touches := false
+func (b *bipartite) collect(g *graph, side []uint8, local []int32, boundary []int32) {
+	b.left = append(b.left[:0], boundary...)
+	b.right, b.start, b.to = b.right[:0], b.start[:0], b.to[:0]
+	for _, v := range b.left {
 		for _, u := range g.inside(v) {
-			if side[u] == sideRight {
-				touches = true
-				local[u] = -1
-			}
-		}
-		if touches {
-			b.left = append(b.left, v)
+			local[u] = -1
 		}
 	}
 	for _, v := range b.left {

@@ -7,12 +7,12 @@ import (
 
 // Where dissection stops and how it weighs its choices; measured on triangle meshes of 20,000 to a million nodes.
 const (
-	leafNodes    = 120  // parts up to this size are ordered by minimum degree
-	parallelPart = 4000 // parts from this size on may be split by another worker
-	fewDirection = 1000 // smaller parts are swept along x and y only
-	sweepWindow  = 0.14 // the cut lies within this share of the median by count
-	sweepMargin  = 0.08 // nodes further than this share outside of the window are not looked at
-	largestShare = 0.68 // no side of a separator holds a larger share of its part after improvement
+	leafNodes     = 120  // parts up to this size are ordered by minimum degree
+	parallelPart  = 4000 // parts from this size on may be split by another worker
+	sweepWindow   = 0.2  // the cut lies within this share of the median by count
+	sweepMargin   = 0.08 // nodes further than this share before the window are not looked at
+	imbalanceCost = 0.5  // a side with share s of the nodes makes a separator 1 + imbalanceCost (2s-1)² as dear
+	largestShare  = 0.68 // no side of a separator holds a larger share of its part after improvement
 )
 
 // The side of a separator on which a node lies.
@@ -28,8 +28,9 @@ type dissection struct {
 	g       *graph
 	sweeps  [4][]int32 // position -> node, in sweep order within each part
 	rank    [4][]int32 // node -> position in that sweep
+	far     [4][]int32 // node -> last in that sweep of itself and its neighbours in the part
 	side    []uint8    // node -> side within its part
-	local   []int32    // node -> number in the boundary being covered
+	local   []int32    // node -> number in the boundary being covered, then gain of a move
 	scratch []int32
 	order   []int32 // position -> node: the result
 	tokens  chan struct{}
@@ -50,23 +51,31 @@ type dissector struct {
 	between   []int32
 }
 
-// dissect returns the nodes of g in elimination order. It changes the order within the lists of g.
-func dissect(ctx context.Context, g *graph, x, y []float64, workers int) []int32 {
-	n := g.n
-	d := &dissection{g: g, side: make([]uint8, n), local: make([]int32, n), scratch: make([]int32, n), order: make([]int32, n),
+// dissect numbers the nodes of a matrix for locality and returns its graph with the nodes in elimination order.
+func dissect(ctx context.Context, p *Pattern, x, y []float64, workers int) (*graph, []int32) {
+	n := p.N
+	d := &dissection{side: make([]uint8, n), scratch: make([]int32, n), order: make([]int32, n),
 		tokens: make(chan struct{}, max(0, workers-1)), ctx: ctx}
+	d.local = make([]int32, n)
 	d.spare.New = func() any { return &dissector{haloOf: make([]int32, n)} }
+	runFixed(workers, len(directions), func(k int) { d.sweeps[k] = sweepOrder(x, y, directions[k]) })
+	rows := nearby(d.sweeps[0], d.sweeps[1])
+	node := invert(rows)
+	d.g = newGraph(p, rows)
 	runFixed(workers, len(directions), func(k int) {
-		d.sweeps[k] = sweepOrder(x, y, directions[k])
-		d.rank[k] = make([]int32, n)
-		for p, v := range d.sweeps[k] {
-			d.rank[k][v] = int32(p)
+		for p, row := range d.sweeps[k] {
+			d.sweeps[k][p] = node[row]
+		}
+		d.rank[k] = invert(d.sweeps[k])
+		d.far[k] = make([]int32, n)
+		for v := range int32(n) {
+			d.findFar(k, v)
 		}
 	})
 	w := d.spare.Get().(*dissector)
 	d.split(w, 0, n)
 	d.group.Wait()
-	return d.order
+	return d.g, d.order
 }
 
 // split orders the part [lo, hi).
@@ -104,42 +113,45 @@ func (d *dissection) split(w *dissector, lo, hi int) {
 	d.orderLeaf(w, lo, hi)
 }
 
+// findFar sets the last in sweep k of v and its neighbours in the part.
+func (d *dissection) findFar(k int, v int32) {
+	rank := d.rank[k]
+	far := v
+	for _, u := range d.g.inside(v) {
+		if rank[u] > rank[far] {
+			far = u
+		}
+	}
+	d.far[k][v] = far
+}
+
 // bestCut sweeps the part along each direction and returns the position with the smallest separator for its balance:
-// nodes at positions before cut in that sweep are left.
+// nodes at positions before cut in that sweep are left. A node counts in the separators of the positions between it and
+// the last of its neighbours.
 func (d *dissection) bestCut(lo, hi int) (direction, cut int) {
 	n := hi - lo
 	window := int(float64(n) * sweepWindow)
 	first, last := lo+n/2-window, lo+n/2+window
 	from := max(lo, first-int(float64(n)*sweepMargin))
-	count := len(directions)
-	if n < fewDirection {
-		count = 2
-	}
 	change := d.scratch[lo:hi]
 	best := 0.0
-	for k := range count {
-		clear(change)
-		rank := d.rank[k]
-		for p := from; p < last; p++ {
-			far := int32(0)
-			for _, u := range d.g.inside(d.sweeps[k][p]) {
-				far = max(far, rank[u])
-			}
-			if int(far) > p {
-				change[p+1-lo]++
-				if int(far)+1 < hi {
-					change[int(far)+1-lo]--
-				}
-			}
+	for k := range directions {
+		clear(change[from-lo : last-lo+2])
+		rank, far := d.rank[k], d.far[k]
+		for p, v := range d.sweeps[k][from:last] {
+			p += from - lo + 1
+			q := int(rank[far[v]]) - lo + 1
+			change[p]++
+			change[min(q, last-lo+1)]--
 		}
 		size := int32(0)
-		for c := from; c <= last && c < hi; c++ {
+		for c := from; c <= last; c++ {
 			size += change[c-lo]
 			if c < first {
 				continue
 			}
 			off := float64(2*(c-lo)-n) / float64(n)
-			cost := (float64(size) + 1) * (1 + 2*off*off)
+			cost := (float64(size) + 1) * (1 + imbalanceCost*off*off)
 			if (k == 0 && c == first) || cost < best {
 				best, direction, cut = cost, k, c
 			}
@@ -150,14 +162,18 @@ func (d *dissection) bestCut(lo, hi int) (direction, cut int) {
 
 // separate marks the sides of the part's nodes and returns how many lie left and right.
 func (d *dissection) separate(w *dissector, direction, lo, hi, cut int) (left, right int) {
-	sweep := d.sweeps[direction]
-	for p := lo; p < cut; p++ {
-		d.side[sweep[p]] = sideLeft
+	sweep, rank, far := d.sweeps[direction], d.rank[direction], d.far[direction]
+	w.between = w.between[:0]
+	for _, v := range sweep[lo:cut] {
+		d.side[v] = sideLeft
+		if int(rank[far[v]]) >= cut {
+			w.between = append(w.between, v)
+		}
 	}
-	for p := cut; p < hi; p++ {
-		d.side[sweep[p]] = sideRight
+	for _, v := range sweep[cut:hi] {
+		d.side[v] = sideRight
 	}
-	w.between = w.cover.smallestCover(d.g, d.side, d.local, sweep[lo:cut], w.between[:0])
+	w.between = w.cover.smallestCover(d.g, d.side, d.local, w.between)
 	left, right = cut-lo, hi-cut
 	for _, v := range w.between {
 		if d.side[v] == sideLeft {
@@ -167,7 +183,7 @@ func (d *dissection) separate(w *dissector, direction, lo, hi, cut int) (left, r
 		}
 		d.side[v] = sideBetween
 	}
-	return w.mover.improve(d.g, d.side, w.between, left, right)
+	return w.mover.improve(d.g, d.side, d.local, w.between, left, right)
 }
 
 // divide rearranges every sweep of the part into left, right, between, and writes the separator into the result.
@@ -193,10 +209,24 @@ func (d *dissection) divide(lo, hi, left, right int) {
 		}
 		copy(sweep[a:hi], spare[:c])
 	}
-	for _, v := range d.sweeps[0][lo+left+right : hi] {
-		d.g.detach(v)
+	between := d.order[lo+left+right : hi]
+	copy(between, d.sweeps[0][lo+left+right:hi])
+	for _, v := range between {
+		d.detach(v)
 	}
-	copy(d.order[lo+left+right:hi], d.sweeps[0][lo+left+right:hi])
+}
+
+// detach takes a node of a separator out of its part.
+func (d *dissection) detach(v int32) {
+	neighbours := d.g.inside(v)
+	d.g.detach(v)
+	for _, u := range neighbours {
+		for k := range d.far {
+			if d.far[k][u] == v {
+				d.findFar(k, u)
+			}
+		}
+	}
 }
 
 // orderLeaf orders the part by minimum degree within its halo.

@@ -4,19 +4,22 @@ package sparse
 // of a node's list lead to nodes of its own part; dissection moves edges that it cuts behind them.
 type graph struct {
 	n      int
+	row    []int32 // node -> row of the matrix
 	start  []int32 // n+1
 	to     []int32 // neighbours
 	slot   []int32 // place of the entry in Values
 	active []int32
 }
 
-func newGraph(p *Pattern) *graph {
+// newGraph numbers the nodes in the given order of rows.
+func newGraph(p *Pattern, rows []int32) *graph {
 	n := p.N
-	g := &graph{n: n, start: make([]int32, n+1), active: make([]int32, n)}
+	g := &graph{n: n, row: rows, start: make([]int32, n+1), active: make([]int32, n)}
+	node := invert(rows)
 	for j := range n {
-		g.active[j] += int32(p.Ptr[j+1] - p.Ptr[j] - 1)
+		g.active[node[j]] += int32(p.Ptr[j+1] - p.Ptr[j] - 1)
 		for _, i := range p.Index[p.Ptr[j]+1 : p.Ptr[j+1]] {
-			g.active[i]++
+			g.active[node[i]]++
 		}
 	}
 	for v := range n {
@@ -26,12 +29,13 @@ func newGraph(p *Pattern) *graph {
 	g.slot = make([]int32, g.start[n])
 	at := append([]int32(nil), g.start[:n]...)
 	for j := range n {
+		u := node[j]
 		for k := p.Ptr[j] + 1; k < p.Ptr[j+1]; k++ {
-			i := p.Index[k]
-			g.to[at[i]], g.slot[at[i]] = int32(j), int32(k)
-			g.to[at[j]], g.slot[at[j]] = i, int32(k)
-			at[i]++
-			at[j]++
+			v := node[p.Index[k]]
+			g.to[at[v]], g.slot[at[v]] = u, int32(k)
+			g.to[at[u]], g.slot[at[u]] = v, int32(k)
+			at[v]++
+			at[u]++
 		}
 	}
 	return g

@@ -57,3 +57,44 @@ func radixSort(keys []uint64) []uint64 {
 	}
 	return keys
 }
+
+// nearby returns the rows so that those near each other in the plane mostly follow each other, for the sake of the
+// caches: cells of about cellRows rows, by rank in x and y, along Morton's curve (1966). Ranks keep graded meshes even.
+func nearby(alongX, alongY []int32) []int32 {
+	const cellRows = 16
+	n := len(alongX)
+	bits := 0
+	for cellRows<<(2*bits) < n {
+		bits++
+	}
+	scale := float64(int(1)<<bits) / float64(n)
+	cell := make([]int32, n)
+	for p, v := range alongX {
+		cell[v] = spread(uint32(float64(p) * scale))
+	}
+	for p, v := range alongY {
+		cell[v] |= spread(uint32(float64(p)*scale)) << 1
+	}
+	count := make([]int32, 1<<(2*bits)+1)
+	for _, c := range cell {
+		count[c+1]++
+	}
+	for c := range count[1:] {
+		count[c+1] += count[c]
+	}
+	rows := make([]int32, n)
+	for v, c := range cell {
+		rows[count[c]] = int32(v)
+		count[c]++
+	}
+	return rows
+}
+
+// spread moves the lower 15 bits to the even places.
+func spread(k uint32) int32 {
+	k = (k | k<<8) & 0x00ff00ff
+	k = (k | k<<4) & 0x0f0f0f0f
+	k = (k | k<<2) & 0x33333333
+	k = (k | k<<1) & 0x55555555
+	return int32(k)
+}

@@ -55,22 +55,22 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 		return nil, err
 	}
 	workers := workerCount(o.Workers)
-	g := newGraph(p)
-	order := orderGraph(ctx, g, x, y, workers)
+	g, order := orderGraph(ctx, p, x, y, workers)
 	if err := stop(1); err != nil {
 		return nil, err
 	}
 	s := &Symbolic{pattern: p, options: o}
-	s.buildTree(g, order)
+	order = s.buildTree(g, order)
+	position := invert(order)
 	if err := stop(2); err != nil {
 		return nil, err
 	}
-	s.rowPtr, s.rowIndex = s.nodes.rowLists(g, s.order, s.position)
+	s.rowPtr, s.rowIndex = s.nodes.rowLists(g, order, position)
 	s.layout()
 	if err := stop(3); err != nil {
 		return nil, err
 	}
-	s.mapEntries(g, workers)
+	s.mapEntries(g, order, position, workers)
 	s.plan = newPlan(s)
 	s.spare = &sync.Pool{New: func() any { return &worker{} }}
 	s.panels = &sync.Pool{New: func() any { return &panel{} }}
@@ -78,16 +78,23 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 	return s, nil
 }
 
-func orderGraph(ctx context.Context, g *graph, x, y []float64, workers int) []int32 {
-	if x == nil || g.n <= leafNodes {
-		var m minDegree
-		return m.order(g.n, g.start, g.to)
+// orderGraph returns the graph of the matrix and its nodes in elimination order.
+func orderGraph(ctx context.Context, p *Pattern, x, y []float64, workers int) (*graph, []int32) {
+	if x != nil && p.N > leafNodes {
+		return dissect(ctx, p, x, y, workers)
 	}
-	return dissect(ctx, g, x, y, workers)
+	rows := make([]int32, p.N)
+	for i := range rows {
+		rows[i] = int32(i)
+	}
+	g := newGraph(p, rows)
+	var m minDegree
+	return g, m.order(g.n, g.start, g.to)
 }
 
-// buildTree settles order, position and supernodes from a first order.
-func (s *Symbolic) buildTree(g *graph, order []int32) {
+// buildTree settles order, position and supernodes from a first order of the nodes, and returns the order that follows
+// the supernodes.
+func (s *Symbolic) buildTree(g *graph, order []int32) []int32 {
 	parent := eliminationTree(g, order, invert(order))
 	by := postorder(parent)
 	order = compose(order, by)
@@ -95,8 +102,10 @@ func (s *Symbolic) buildTree(g *graph, order []int32) {
 	count := columnCounts(g, order, invert(order), parent)
 	nodes, old := supernodes(parent, count)
 	s.nodes = nodes
-	s.order = compose(order, old)
+	order = compose(order, old)
+	s.order = compose(g.row, order)
 	s.position = invert(s.order)
+	return order
 }
 
 // compose returns a[b[k]] for every k.
@@ -152,15 +161,15 @@ func frontFlops(nr, nc int) float64 {
 }
 
 // mapEntries finds for every entry of the matrix its place in the panel of its supernode.
-func (s *Symbolic) mapEntries(g *graph, workers int) {
+func (s *Symbolic) mapEntries(g *graph, order, position []int32, workers int) {
 	n := g.n
 	s.entryPtr = make([]int32, n+1)
 	s.entry = make([]int32, len(s.pattern.Index))
 	s.entryRow = make([]int32, len(s.pattern.Index))
 	for j := range int32(n) {
 		count := int32(1)
-		for _, u := range g.all(s.order[j]) {
-			if s.position[u] > j {
+		for _, u := range g.all(order[j]) {
+			if position[u] > j {
 				count++
 			}
 		}
@@ -171,23 +180,23 @@ func (s *Symbolic) mapEntries(g *graph, workers int) {
 	runFixed(workers, chunks, func(c int) {
 		place := make([]int32, n)
 		for k := total * c / chunks; k < total*(c+1)/chunks; k++ {
-			s.mapSupernode(g, k, place)
+			s.mapSupernode(g, k, order, position, place)
 		}
 	})
 }
 
-func (s *Symbolic) mapSupernode(g *graph, k int, place []int32) {
+func (s *Symbolic) mapSupernode(g *graph, k int, order, position, place []int32) {
 	first, last := s.nodes.first[k], s.nodes.first[k+1]
 	for q, i := range s.rowIndex[s.rowPtr[k]:s.rowPtr[k+1]] {
 		place[i] = int32(q) + last - first
 	}
 	for j := first; j < last; j++ {
 		at := s.entryPtr[j]
-		v := s.order[j]
-		s.entry[at], s.entryRow[at] = int32(s.pattern.Ptr[v]), j-first
+		v := order[j]
+		s.entry[at], s.entryRow[at] = int32(s.pattern.Ptr[g.row[v]]), j-first
 		at++
 		for q := g.start[v]; q < g.start[v+1]; q++ {
-			i := s.position[g.to[q]]
+			i := position[g.to[q]]
 			if i <= j {
 				continue
 			}
