@@ -22,7 +22,7 @@ func NiceLevels(lowest, highest float64, n int) []float64 {
 	var best []float64
 	for e := power + 1; e >= power-1; e-- {
 		for _, m := range [...]int{5, 2, 1} {
-			levels := multiplesBetween(lowest, highest, m, e)
+			levels := multiplesBetween(lowest, highest, m, e, 10*n)
 			if best == nil || distance(len(levels), n) < distance(len(best), n) {
 				best = levels
 			}
@@ -33,12 +33,13 @@ func NiceLevels(lowest, highest float64, n int) []float64 {
 
 func distance(a, b int) int { return max(a-b, b-a) }
 
-// multiplesBetween gives the multiples of m times ten to the power e strictly between lowest and highest.
-func multiplesBetween(lowest, highest float64, m, e int) []float64 {
+// multiplesBetween gives the multiples of m times ten to the power e strictly between lowest and highest, or nothing
+// where they are more than most.
+func multiplesBetween(lowest, highest float64, m, e, most int) []float64 {
 	const wholeNumbers = 1 << 53 / 5 // up to here multiples are exact
 	step := decimal(int64(m), e)
 	first, last := math.Floor(lowest/step), math.Ceil(highest/step)
-	if !(step > 0 && math.Abs(first) < wholeNumbers && math.Abs(last) < wholeNumbers && last-first < 20*mostLevels) {
+	if !(step > 0 && math.Abs(first) < wholeNumbers && math.Abs(last) < wholeNumbers && last-first <= float64(most)) {
 		return nil
 	}
 	var out []float64

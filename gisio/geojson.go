@@ -166,7 +166,7 @@ func (r *layerReader) read(data []byte) {
 		r.text = r.text[len("\ufeff"):]
 		r.add(Warning, -1, "", "a byte order mark at the start of the file", "UTF-8 without it", "it was skipped")
 	}
-	r.json = parseJSON(r.text)
+	r.json = parseJSON(r.text, maxJSONValues)
 	if p := r.json.fatal; p != nil {
 		r.add(Error, p.offset, "", p.found, p.allowed, p.hint)
 		return

@@ -37,7 +37,7 @@ func (r *layerReader) unwrap(p path, ring bool, name string) (path, bool) {
 		r.add(Error, int(jumpAt), name, "going right round the Earth", "an outline that comes back to its start", "cut it at the antimeridian")
 		return p, false
 	}
-	r.add(Warning, int(jumpAt), name, "with an edge longer than 180 degrees", "shapes cut at the antimeridian (RFC 7946, section 3.1.9)",
+	r.add(Warning, int(jumpAt), name, "drawn with an edge longer than 180 degrees", "shapes cut at the antimeridian (RFC 7946, section 3.1.9)",
 		"read as crossing the antimeridian, with longitudes that run on past ±180")
 	return p, true
 }
@@ -71,14 +71,14 @@ func touchesBothSides(boxes []orb.Bound) bool {
 }
 
 // joinParts joins the parts of a polygon that was cut at the antimeridian: parts of the western hemisphere are moved
-// on by a whole turn, and edges that two parts share along 180 are taken out. Rings must run the right way round.
-func joinParts(m orb.MultiPolygon) orb.MultiPolygon {
+// on by a whole turn, and edges that two parts share along 180 are taken out. Rings must run the right way round. It tells whether anything changed.
+func joinParts(m orb.MultiPolygon) (orb.MultiPolygon, bool) {
 	boxes := make([]orb.Bound, len(m))
 	for i, p := range m {
 		boxes[i] = p[0].Bound()
 	}
 	if !touchesBothSides(boxes) {
-		return m
+		return m, false
 	}
 	moved := make(orb.MultiPolygon, len(m))
 	for i, p := range m {
@@ -92,12 +92,12 @@ func joinParts(m orb.MultiPolygon) orb.MultiPolygon {
 	}
 	edges, cancelled := cancelSeam(moved)
 	if !cancelled {
-		return moved
+		return moved, true
 	}
 	if joined, ok := assemble(chain(edges)); ok {
-		return joined
+		return joined, true
 	}
-	return moved
+	return moved, true
 }
 
 // joinLines does the same for lines: a line that ends at 180 goes on with the next one, if that begins there.

@@ -96,9 +96,6 @@ func (r *layerReader) depth(c *jsonValue, kind string, depth int) bool {
 			fmt.Sprintf("positions at depth %d for a %s: %s", depth, kind, nesting(depth)), "")
 	case wrong.kind == jsonArray && len(wrong.items) == 0:
 		r.add(Error, int(wrong.offset), `an entry of "coordinates"`, "an empty array", nesting(depth), "")
-	case wrong.kind == jsonArray:
-		r.add(Error, int(wrong.offset), `an entry of "coordinates"`, fmt.Sprintf("an array at depth %d where a position was due", depth),
-			fmt.Sprintf("positions at depth %d for a %s: %s", depth, kind, nesting(depth)), "")
 	default:
 		r.add(Error, int(wrong.offset), `an entry of "coordinates"`, wrong.describe(), "numbers, without quotes", "")
 	}
@@ -123,11 +120,13 @@ func wrongDepth(v *jsonValue, level, depth int) (*jsonValue, int) {
 		return v, 0
 	}
 	if level == depth {
-		if len(v.items) > 0 && v.items[0].kind != jsonArray && v.items[0].kind != jsonNumbers {
-			for i := range v.items {
-				if v.items[i].kind != jsonNumber {
-					return &v.items[i], 0
-				}
+		for i := range v.items {
+			switch v.items[i].kind {
+			case jsonNumber:
+			case jsonArray, jsonNumbers:
+				return v, level + levelsDown(v)
+			default:
+				return &v.items[i], 0
 			}
 		}
 		return v, 0
@@ -138,6 +137,16 @@ func wrongDepth(v *jsonValue, level, depth int) (*jsonValue, int) {
 		}
 	}
 	return nil, 0
+}
+
+// levelsDown counts the arrays within an array on the way to a position.
+func levelsDown(v *jsonValue) int {
+	n := 0
+	for v.kind == jsonArray && len(v.items) > 0 {
+		v = &v.items[0]
+		n++
+	}
+	return n
 }
 
 func (r *layerReader) build(c *jsonValue, kind string) orb.Geometry {
@@ -260,7 +269,7 @@ func (r *layerReader) multiLine(c *jsonValue) orb.Geometry {
 // line reads a line of at least two distinct positions.
 func (r *layerReader) line(v *jsonValue, name string) (orb.LineString, bool) {
 	if len(v.items) < 2 {
-		r.add(Error, int(v.offset), name, fmt.Sprintf("of %d positions", len(v.items)), "at least 2 positions", "")
+		r.add(Error, int(v.offset), name, "made of "+positionCount(len(v.items)), "at least 2 positions", "")
 		return nil, false
 	}
 	p, ok := r.path(v)
@@ -274,6 +283,13 @@ func (r *layerReader) line(v *jsonValue, name string) (orb.LineString, bool) {
 		return nil, false
 	}
 	return p.points, true
+}
+
+func positionCount(n int) string {
+	if n == 1 {
+		return "1 position"
+	}
+	return fmt.Sprintf("%d positions", n)
 }
 
 // dropRepeated drops positions that repeat the one before or lie nearer to it than a tenth of a millimetre.
@@ -302,10 +318,10 @@ func (r *layerReader) dropRepeated(p path, name string) path {
 	}
 	switch {
 	case close > 0:
-		r.add(Warning, int(first), name, fmt.Sprintf("with %d positions that lie less than 0.1 mm from the one before or repeat it", same+close),
+		r.add(Warning, int(first), name, "drawn with "+positionCount(same+close)+" less than 0.1 mm from the one before, or the same",
 			"positions that lie apart", "they were dropped")
 	case same > 0:
-		r.add(Warning, int(first), name, fmt.Sprintf("with %d positions that repeat the one before", same), "each position once", "they were dropped")
+		r.add(Warning, int(first), name, "drawn with "+positionCount(same)+" that only repeat the one before", "each position once", "they were dropped")
 	}
 	return kept
 }

@@ -70,8 +70,10 @@ func (v *jsonValue) describe() string {
 		return "the text " + strconv.Quote(shorten(v.text))
 	case jsonObject:
 		return "an object"
+	case jsonNumbers:
+		return "an array of numbers"
 	}
-	if len(v.items) == 0 && v.count == 0 {
+	if len(v.items) == 0 {
 		return "an empty array"
 	}
 	return "an array"
@@ -106,13 +108,14 @@ type jsonParser struct {
 	src    string
 	pos    int
 	depth  int
-	values int
+	values int // so far
+	most   int // values allowed
 	out    *jsonText
 }
 
-// parseJSON reads src, which must be shorter than 2 GiB.
-func parseJSON(src string) *jsonText {
-	p := jsonParser{src: src, out: &jsonText{}}
+// parseJSON reads src, which must be shorter than 2 GiB, up to so many values; a position counts as one.
+func parseJSON(src string, most int) *jsonText {
+	p := jsonParser{src: src, most: most, out: &jsonText{}}
 	if bad := firstBadUTF8(src); bad >= 0 {
 		p.fail(bad, "bytes that are not UTF-8", "text in UTF-8", "save the file in the encoding UTF-8")
 		return p.out
@@ -191,8 +194,8 @@ func (p *jsonParser) syntax(allowed string) bool {
 func (p *jsonParser) value() (jsonValue, bool) {
 	v := jsonValue{offset: int32(p.pos)}
 	p.values++
-	if p.values > maxJSONValues {
-		return v, p.fail(p.pos, fmt.Sprintf("more than %d values and positions", maxJSONValues), "fewer", "split or simplify the layer")
+	if p.values > p.most {
+		return v, p.fail(p.pos, fmt.Sprintf("more than %d values and positions", p.most), "fewer", "split or simplify the layer")
 	}
 	if p.pos >= len(p.src) {
 		return v, p.syntax("a JSON value")

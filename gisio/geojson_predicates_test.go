@@ -18,7 +18,7 @@ func TestOrientationIsExact(t *testing.T) {
 		return x
 	}
 	zero := 0
-	for i := range 20000 {
+	for i := range 4000 {
 		scale := math.Pow(2, float64(random.IntN(40)-20))
 		if i%10 == 0 {
 			scale = math.Pow(2, float64(random.IntN(2000)-1000)) // products under- and overflow

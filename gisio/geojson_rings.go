@@ -26,7 +26,7 @@ func (r *layerReader) rings(v *jsonValue, parts, part int) ([]path, bool) {
 func (r *layerReader) ring(v *jsonValue, name string) (path, bool) {
 	n := len(v.items)
 	if n < 4 {
-		r.add(Error, int(v.offset), name, fmt.Sprintf("of %d positions", n), "at least 4 positions, the last of which repeats the first", "")
+		r.add(Error, int(v.offset), name, "made of "+positionCount(n), "at least 4 positions, the last of which repeats the first", "")
 		return path{}, false
 	}
 	p, ok := r.path(v)
@@ -65,7 +65,7 @@ func (r *layerReader) closeRing(p path) path {
 	return p
 }
 
-// polygons joins what was cut at the antimeridian, checks the shape and turns its rings the right way round.
+// polygons turns rings the right way round, checks the shape, and joins what was cut at the antimeridian.
 func (r *layerReader) polygons(parts [][]path) orb.Geometry {
 	m := make(orb.MultiPolygon, len(parts))
 	for i, part := range parts {
@@ -77,9 +77,27 @@ func (r *layerReader) polygons(parts [][]path) orb.Geometry {
 			m[i] = append(m[i], turned(ring, j == 0))
 		}
 	}
-	if !r.projected {
-		m = joinParts(m)
+	r.judgeShape(parts, m)
+	if r.faulty {
+		return nil
 	}
+	if !r.projected {
+		if joined, changed := joinParts(m); changed {
+			m = joined
+			r.judgeShape(parts, m)
+		}
+	}
+	switch {
+	case r.faulty:
+		return nil
+	case len(m) == 1:
+		return m[0]
+	}
+	return m
+}
+
+// judgeShape records the faults of the shape.
+func (r *layerReader) judgeShape(parts [][]path, m orb.MultiPolygon) {
 	s := newShape(m)
 	for _, f := range s.check() {
 		severity := Error
@@ -88,13 +106,6 @@ func (r *layerReader) polygons(parts [][]path) orb.Geometry {
 		}
 		r.add(severity, r.ringOffset(parts, m, s, f.ring), s.ringName(f.ring), f.found, f.allowed, f.hint)
 	}
-	if r.faulty {
-		return nil
-	}
-	if len(m) == 1 {
-		return m[0]
-	}
-	return m
 }
 
 // ringOffset gives the place of a ring in the text, as far as it is still the ring of the text.

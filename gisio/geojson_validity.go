@@ -115,7 +115,7 @@ func (s *shape) spikes() {
 			if shown++; shown > shownContacts {
 				break
 			}
-			s.fault(i, "a spike without width: it runs out to "+pointText(b)+" and back on the same line", "a ring that does not turn back on itself", "remove the tip of the spike")
+			s.fault(i, "drawn with a spike: it runs out to "+pointText(b)+" and back on the same line", "a ring that does not turn back on itself", "remove the tip of the spike")
 		}
 	}
 }

@@ -101,9 +101,6 @@ func writeJSON(b *bytes.Buffer, v any) error {
 
 func checkValue(v any, depth int) error {
 	const deepest = maxJSONDepth - 4 // a property lies four levels down
-	if depth > deepest {
-		return fmt.Errorf("nested more than %d deep", deepest)
-	}
 	switch v := v.(type) {
 	case nil, string, bool, int, int32, int64:
 		return nil
@@ -113,6 +110,9 @@ func checkValue(v any, depth int) error {
 		}
 		return nil
 	case []any:
+		if depth == deepest {
+			return fmt.Errorf("nested more than %d deep", deepest)
+		}
 		for _, item := range v {
 			if err := checkValue(item, depth+1); err != nil {
 				return err
@@ -120,6 +120,9 @@ func checkValue(v any, depth int) error {
 		}
 		return nil
 	case map[string]any:
+		if depth == deepest {
+			return fmt.Errorf("nested more than %d deep", deepest)
+		}
 		for _, item := range v {
 			if err := checkValue(item, depth+1); err != nil {
 				return err
