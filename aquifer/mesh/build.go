@@ -3,6 +3,7 @@ package mesh
 import (
 	"context"
 	"fmt"
+	"slices"
 )
 
 const (
@@ -52,7 +53,13 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	if r.maxNodes == 0 {
 		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, largestBudget))
 	}
-	r.start(field)
+	r.start(field, expected)
+	if err := r.run(ctx); err != nil {
+		return nil, err
+	}
+	r.smooth(smoothPasses)
+	r.queueSegments()
+	r.queueTriangles()
 	if err := r.run(ctx); err != nil {
 		return nil, err
 	}
@@ -163,12 +170,24 @@ func (r *refiner) makeField(d Domain, o Options) *sizeField {
 }
 
 // start enters the second stage: sizes at all vertices, segments cut to size, rings around points, all triangles queued.
-func (r *refiner) start(f *sizeField) {
+func (r *refiner) start(f *sizeField, expected float64) {
 	r.field = f
 	for i := range r.p {
 		r.p[i].h = f.at(r.p[i].x, r.p[i].y)
 	}
+	r.reserve(expected)
 	r.ringPoints()
 	r.queueSegments()
 	r.queueTriangles()
+}
+
+// reserveShare is how much more than the nodes expected is reserved; meshes come out within a few per cent.
+const reserveShare = 1.15
+
+// reserve makes room for the nodes expected and their triangles, so that nothing is copied while the mesh grows.
+func (r *refiner) reserve(expected float64) {
+	n := int(min(reserveShare*expected, float64(r.maxNodes))) + 100
+	r.p = slices.Grow(r.p, max(0, n-len(r.p)))
+	r.t = slices.Grow(r.t, max(0, 2*n-len(r.t)))
+	r.mark = slices.Grow(r.mark, max(0, 2*n-len(r.mark)))
 }

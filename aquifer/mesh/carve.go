@@ -12,6 +12,8 @@ type base struct {
 	set    int32 // index of its origins
 	sharpP bool  // another segment leaves p within sharpAngleDeg
 	sharpQ bool
+	scaleP float64 // shell distances from p are multiplied by this, so that shells agree in the metric of the wedges
+	scaleQ float64
 	size   float64 // wanted edge length on it; +Inf none [m]
 }
 
@@ -135,7 +137,7 @@ func (c *carved) makeBases() {
 			if e < 0 || set >= 0 && c.onLine(set) {
 				a, b := c.ends(h)
 				number = int32(len(c.bases))
-				c.bases = append(c.bases, base{p: a, q: b, set: set, size: math.Inf(1)})
+				c.bases = append(c.bases, base{p: a, q: b, set: set, scaleP: 1, scaleQ: 1, size: math.Inf(1)})
 			}
 			c.t[t].s[k] = number
 			if e >= 0 {
@@ -206,49 +208,6 @@ func (m *triangulation) regionPlaces(n int32) []orb.Point {
 		}
 	}
 	return places
-}
-
-// markSharp finds the corners where two segments meet at less than sharpAngleDeg, in the metric of the wedge between them.
-func (c *carved) markSharp() {
-	cosSharp := math.Cos(sharpAngleDeg * math.Pi / 180)
-	for t := range c.t {
-		for k := int32(0); k < 3; k++ {
-			if c.t[t].s[prev3[k]] < 0 { // edge v[k] -> v[k+1] starts a wedge at v[k]
-				continue
-			}
-			c.markWedge(4*int32(t)+prev3[k], cosSharp)
-		}
-	}
-}
-
-// markWedge looks from the constrained edge h = (a, b) counter-clockwise round a to the next one and marks both if sharp.
-func (c *carved) markWedge(h int32, cosSharp float64) {
-	a, b := c.ends(h)
-	first := c.t[h>>2].s[h&3]
-	t := h >> 2
-	for range c.t {
-		k := c.corner(t, a)
-		w := c.t[t].v[prev3[k]]
-		out := 4*t + next3[k] // edge w -> a
-		if s := c.t[t].s[out&3]; s >= 0 {
-			if s == first || c.cosine(c.t[t].region, a, b, w) <= cosSharp || c.orientV(a, b, w) <= 0 {
-				return
-			}
-			c.setSharp(first, a)
-			c.setSharp(s, a)
-			return
-		}
-		t = c.t[t].n[out&3] >> 2
-	}
-}
-
-// setSharp marks the end a of a base segment.
-func (c *carved) setSharp(s, a int32) {
-	if c.bases[s].p == a {
-		c.bases[s].sharpP = true
-	} else {
-		c.bases[s].sharpQ = true
-	}
 }
 
 // cosine of the angle b-a-w in the metric of a region.

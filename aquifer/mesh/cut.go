@@ -119,7 +119,8 @@ func (r *refiner) cutSegment(h int32) {
 	}
 	l := r.distance(a, b)
 	if corner >= 0 {
-		f = shellFraction(r.distance(corner, a), r.distance(corner, b))
+		scale := *r.shellScale(r.t[h>>2].s[h&3], corner)
+		f = shellFraction(scale*r.distance(corner, a), scale*r.distance(corner, b))
 		if !(l > r.distance(s.p, s.q)/cornerHalvings) {
 			r.refused++
 			return

@@ -83,7 +83,7 @@ func (r *refiner) onShell(u, w int32) bool {
 	if c < 0 {
 		return false
 	}
-	du, dw := r.distance(c, u), r.distance(c, w)
+	du, dw := *r.shellScale(a, c)*r.distance(c, u), *r.shellScale(b, c)*r.distance(c, w)
 	return math.Abs(du-dw) <= shellTolerance*max(du, dw)
 }
 

@@ -168,3 +168,31 @@ func TestRandomSites(t *testing.T) {
 		t.Errorf("only %d of %d sites have the wanted quality", good, meshed)
 	}
 }
+
+// TestRandomAnisotropicSites gives every region of random sites its own tensor; no segment may be left encroached.
+func TestRandomAnisotropicSites(t *testing.T) {
+	sites := 12
+	if long() {
+		sites = 200
+	}
+	for seed := range sites {
+		rng := rand.New(rand.NewSource(int64(1000 + seed)))
+		d, fault := site(rng)
+		if fault != "" {
+			continue
+		}
+		m, err := Build(context.Background(), d, Options{Nodes: 1500, Metric: func(orb.Point) Tensor {
+			return tensor(math.Pow(10, 1.5*rng.Float64()), 180*rng.Float64())
+		}})
+		if err != nil {
+			t.Errorf("seed %d: %v", seed, err)
+			continue
+		}
+		if faults := faultsOf(m, d, true); len(faults) > 0 {
+			t.Errorf("seed %d: %s", seed, strings.Join(faults, "; "))
+		}
+		if q := m.Quality; q.EncroachedLeft > 0 || q.PoorOther > 0 || q.BudgetHit {
+			t.Errorf("seed %d: %+v", seed, q)
+		}
+	}
+}
