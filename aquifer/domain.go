@@ -124,7 +124,7 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 	}
 	near := d.clearances()
 	finest := orDefault(o.Finest, finestShare*math.Sqrt(d.areaOfSite))
-	corners := d.corners()
+	corners := d.corners(s)
 	set := func(f float64) {
 		d.finest = f
 		for k := range near {
@@ -133,7 +133,7 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 		}
 		d.domain.Points = d.domain.Points[:len(near)]
 		for _, c := range corners {
-			d.domain.Points = append(d.domain.Points, mesh.Point{At: c.at, Size: math.Max(2*f, c.least) * scale, Name: "corner of the outline"})
+			d.domain.Points = append(d.domain.Points, mesh.Point{At: c.at, Size: math.Max(f*c.share, c.least) * scale, Name: "corner"})
 		}
 	}
 	set(finest)
@@ -221,31 +221,38 @@ func (d *domainPlan) clearances() []float64 {
 	return near
 }
 
-// sharpCorner is the interior angle from which the head has a singular gradient at a corner [°]: 180 is a straight outline,
-// digitised curves bend by less than 20 a vertex.
-const sharpCorner = 200
+// Corners are refined where the gradient of head is singular: it goes as r^(a-1) with r the distance from the corner.
+const (
+	// sharpCorner is the interior angle above which a corner of the outline counts [°]: a = 180/angle, and at 190 the lost order is 0.1.
+	sharpCorner = 190
+	// endShare of the finest size is the edge length at the end of a condition: there a may be one half, and the error that the corner
+	// spreads goes as the edge length to the power 2a.
+	endShare = 1.0 / 8
+	// cornerShare of the shorter adjoining segment is the edge length at a re-entrant corner or a bend of a zone's border: with a above 0.8
+	// the corner then spreads an error below a thousandth; its singularity does not reach beyond the segments that make it.
+	cornerShare = 1.0 / 64
+	// manyCorners is from how many corners on the share is raised, since a line with more of them shows each at a smaller scale.
+	manyCorners = 120
+)
 
-// corner is a place on the outline where the gradient of head may be singular.
+// corner is a place where the gradient of head may be singular.
 type corner struct {
 	at    orb.Point
+	share float64 // of the finest size
 	least float64 // no finer edge length is useful here [m]
 }
 
-// cornerShare of the shorter adjoining segment is fine enough at a re-entrant corner of a digitised line: the singularity of
-// a corner does not reach beyond the segments that make it.
-const cornerShare = 1.0 / 16
-
-// corners lists the ends of conditions and the re-entrant corners.
-func (d *domainPlan) corners() []corner {
+// corners lists the ends of conditions, the re-entrant corners of the outline and the bends of zone borders.
+func (d *domainPlan) corners(s *Site) []corner {
 	ends := map[orb.Point]bool{}
-	for _, s := range d.stretches {
-		cum := d.outline.cum[s.ring]
+	for _, st := range d.stretches {
+		cum := d.outline.cum[st.ring]
 		perimeter := cum[len(cum)-1]
-		if s.span >= perimeter {
+		if st.span >= perimeter {
 			continue
 		}
-		for _, arc := range []float64{s.start, math.Mod(s.start+s.span, perimeter)} {
-			for i, v := range d.outline.rings[s.ring] {
+		for _, arc := range []float64{st.start, math.Mod(st.start+st.span, perimeter)} {
+			for i, v := range d.outline.rings[st.ring] {
 				if math.Abs(cum[i]-arc) <= sameVertex*d.outline.diag {
 					ends[v] = true
 				}
@@ -257,29 +264,51 @@ func (d *domainPlan) corners() []corner {
 		taken[p.At] = true
 	}
 	var out []corner
-	for k, r := range d.outline.rings {
-		ccw := ringArea(r) > 0
-		if k > 0 {
-			ccw = !ccw
-		}
+	bends := 0
+	visit := func(r orb.Ring, isSharp func(i int) bool) {
 		for i, v := range r {
-			a, b := r[(i+len(r)-1)%len(r)], r[(i+1)%len(r)]
-			turn := math.Atan2(cross(a, v, b), dot(a, v, b)) * 180 / math.Pi
-			if !ccw {
-				turn = -turn
-			}
-			if taken[v] || !(ends[v] || 180-turn > sharpCorner) {
+			if taken[v] || !(ends[v] || isSharp(i)) {
 				continue
 			}
 			taken[v] = true
-			least := 0.0
-			if !ends[v] {
-				least = cornerShare * math.Min(distance(a, v), distance(v, b))
+			if ends[v] {
+				out = append(out, corner{at: v, share: endShare})
+				continue
 			}
-			out = append(out, corner{v, least})
+			bends++
+			out = append(out, corner{at: v, share: 1, least: cornerShare * math.Min(distance(r[(i+len(r)-1)%len(r)], v), distance(v, r[(i+1)%len(r)]))})
+		}
+	}
+	for k, r := range d.outline.rings {
+		inside := 1.0 // the domain is on the left of a counter-clockwise outer ring, on the right of a hole's
+		if (ringArea(r) > 0) != (k == 0) {
+			inside = -1
+		}
+		visit(r, func(i int) bool { return 180-inside*turnAt(r, i) > sharpCorner })
+	}
+	for _, z := range s.Zones {
+		if z.Transmissivity == nil && z.Anisotropy == nil {
+			continue
+		}
+		for _, poly := range z.Area {
+			for _, ring := range poly {
+				r := openRing(ring)
+				visit(r, func(i int) bool { return inPolygon(r[i], s.Extent) && math.Abs(turnAt(r, i)) > sharpCorner-180 })
+			}
+		}
+	}
+	if bends > manyCorners {
+		for i := range out {
+			out[i].least *= math.Min(float64(bends)/manyCorners, 1/(4*cornerShare))
 		}
 	}
 	return out
+}
+
+// turnAt is by how much a ring turns left at a vertex [°].
+func turnAt(r orb.Ring, i int) float64 {
+	a, v, b := r[(i+len(r)-1)%len(r)], r[i], r[(i+1)%len(r)]
+	return math.Atan2(cross(a, v, b), dot(a, v, b)) * 180 / math.Pi
 }
 
 // cross and dot are of the vectors a->v and v->b.

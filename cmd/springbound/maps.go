@@ -1,6 +1,7 @@
 package main
 
 import (
+	"fmt"
 	"math"
 
 	"springbound/adjoint"
@@ -26,8 +27,11 @@ func (m *maps) add(name, unitKey string, field []float64) error {
 		low, high = math.Min(low, v), math.Max(high, v)
 	}
 	levels := gisio.NiceLevels(low, high, contourCount)
-	contours := gisio.Contours(mesh.X, mesh.Y, mesh.Triangles, field, levels)
-	data, err := gisio.WriteContours(contours, unitKey, m.job.project.Plane)
+	contours, err := gisio.Contours(mesh.X, mesh.Y, mesh.Triangles, field, levels)
+	if err != nil {
+		return fmt.Errorf("%s: %w", name, err)
+	}
+	data, err := gisio.WriteContours(contours, m.job.project.Plane, unitKey)
 	if err != nil {
 		return err
 	}

@@ -166,13 +166,22 @@ func notDone(r *plan.Report, name, why string) {
 func (j *job) balances(r *plan.Report, state *adjoint.State) {
 	m := j.field.Model
 	worst := 0.0
-	for _, s := range []struct {
+	states := []struct {
 		name  string
 		heads []float64
 		sinks []aquifer.Sink
-	}{{"without pumping", state.Base, nil}, {"at the plan", state.Heads, j.field.Sinks(state.Rates)}} {
+	}{{"without pumping", state.Base, nil}, {"at the plan", state.Heads, j.field.Sinks(state.Rates)}}
+	throughflow := 0.0 // the larger of the two states: water at rest has none of its own
+	for _, s := range states {
 		b := m.Balance(s.heads, s.sinks)
-		out := plan.Balance{State: s.name, In: b.In, Out: b.Out, Error: b.Error()}
+		throughflow = math.Max(throughflow, math.Max(b.In, b.Out))
+	}
+	for _, s := range states {
+		b := m.Balance(s.heads, s.sinks)
+		out := plan.Balance{State: s.name, In: b.In, Out: b.Out}
+		if throughflow > 0 {
+			out.Error = (b.In - b.Out) / throughflow
+		}
 		for _, f := range append(b.Features, b.Wells) {
 			kind := string(f.Kind)
 			if kind == "" {
@@ -420,6 +429,5 @@ func (j *job) notDone(r *plan.Report) {
 		fmt.Sprintf("parameter uncertainty: not assessed (%d inputs state a range; only the best values are used)", ranged),
 		"discretisation error: not estimated for each number; the mesh is described on the checks sheet",
 		"what a confined, steady, single-layer model leaves out: change with time and season, storage, other layers, unconfined flow, water quality, density, subsidence")
-	notDone(r, "Largest well out of service", "this version plans with every well in service")
 	notDone(r, "Boundaries replaced by no-flow, one at a time", "this version does not re-plan with changed boundaries")
 }

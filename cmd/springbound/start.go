@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"os"
 	"path/filepath"
-	"sort"
 
 	"springbound/gisio"
 )
@@ -12,10 +11,9 @@ import (
 // runStart writes the starter project into a folder that holds none of its files yet.
 func runStart(dir string, s streams) error {
 	var files []outputFile
-	for name, data := range gisio.StarterFiles() {
-		files = append(files, outputFile{name, data})
+	for _, f := range gisio.StarterFiles() {
+		files = append(files, outputFile{f.Name, f.Data})
 	}
-	sort.Slice(files, func(a, b int) bool { return files[a].name < files[b].name })
 	for _, f := range files {
 		if _, err := os.Stat(filepath.Join(dir, f.name)); err == nil {
 			return usagef("%s is there already; choose a folder without a project", filepath.Join(dir, f.name))
