@@ -18,13 +18,11 @@ func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
 	if err := o.Validate(); err != nil {
 		return nil, err
 	}
-	s := scale(p)
-	e := newEngine(s.matrix, s.cost, s.lower, s.upper)
-	e.limit = o.iterationLimit(e.rows, e.n)
-	e.progress = o.Progress
-	e.start(o.Start)
-	status, q := e.optimise(ctx)
-	return report(p, s, e, status, q), nil
+	t := newSession(p)
+	t.e.progress = o.Progress
+	t.e.start(o.Start)
+	status := t.solve(ctx, o.iterationLimit(t.e.rows, t.e.n))
+	return report(t, status), nil
 }
 
 // start adopts a basis, or the rows when there is none or its number of columns differs.
@@ -52,7 +50,8 @@ func (e *engine) basis() *Basis {
 }
 
 // report takes the state back to the units of the problem; the factors are powers of two, so that nothing is rounded.
-func report(p *Problem, s *scaled, e *engine, status Status, q int) *Solution {
+func report(t *session, status Status) *Solution {
+	p, s, e := t.p, t.s, t.e
 	n, m := e.n, e.rows
 	sol := &Solution{
 		Status: status, X: make([]float64, n), RowValue: make([]float64, m), RowPrice: make([]float64, m),
@@ -81,7 +80,7 @@ func report(p *Problem, s *scaled, e *engine, status Status, q int) *Solution {
 	case Infeasible:
 		sol.Ray = proofRay(p, s, e.proof)
 	case Unbounded:
-		sol.Ray = directionRay(s, e, q)
+		sol.Ray = directionRay(s, e, t.q)
 	}
 	return sol
 }

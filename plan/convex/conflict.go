@@ -1,0 +1,192 @@
+package convex
+
+import (
+	"context"
+	"fmt"
+)
+
+// ConflictSet is an irreducible set of bounds that cannot all be met.
+type ConflictSet struct {
+	// Status is Infeasible when a set was found, Optimal when the problem is feasible, and what stopped the search otherwise.
+	Status Status
+	Rows   []Bound // sides of rows, in the order of Among
+	Bounds []Bound // bounds of columns that take part
+	// Verified tells that the set, with the rows outside Among, was proven infeasible afresh with an accepted certificate, and
+	// that dropping any one member was seen to make it feasible.
+	Verified bool
+	Solves   int
+}
+
+// Conflict explains an infeasible problem: it finds sides of the rows in among, and bounds of columns, that together with the rows
+// not in among cannot be met, while they can be once any one of them is dropped. Sides tried earlier are the first to be dropped,
+// so that those later in among are kept where there is a choice.
+//
+// Method: deletion filter (Chinneck & Dravnieks 1991), each step warm-started, with what a proof of infeasibility does not use
+// dropped at once. The error is not nil only for an index out of range; other ends are in Status.
+func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error) {
+	for _, i := range among {
+		if i < 0 || i >= p.Rows() {
+			return nil, fmt.Errorf("convex: Conflict: no row %d among %d", i, p.Rows())
+		}
+	}
+	f := newFilter(ctx, p.Clone(), among)
+	out := &ConflictSet{Status: f.solve()}
+	if out.Status == Infeasible {
+		f.useProof()
+		out.Status = f.reduce(&f.rows)
+	}
+	if out.Status == Infeasible {
+		out.Status = f.reduce(&f.columns)
+	}
+	if out.Status == Infeasible {
+		out.Rows, out.Bounds = f.rows.list(), f.columns.list()
+		out.Verified = f.verify()
+	}
+	out.Solves = f.solves
+	return out, nil
+}
+
+// filterList is a list of bounds of which some have been dropped.
+type filterList struct {
+	all     []Bound
+	dropped []bool
+	row     bool // bounds of rows, not of columns
+}
+
+func (l *filterList) list() []Bound {
+	var kept []Bound
+	for k, b := range l.all {
+		if !l.dropped[k] {
+			kept = append(kept, b)
+		}
+	}
+	return kept
+}
+
+// filter is the state of the deletion filter. The problem p is its own copy: dropped bounds are removed from it.
+type filter struct {
+	ctx           context.Context
+	p             *Problem
+	t             *session
+	rows, columns filterList
+	solves        int
+}
+
+func newFilter(ctx context.Context, p *Problem, among []int) *filter {
+	for j := range p.columns {
+		p.columns[j].Cost = 0
+	}
+	f := &filter{ctx: ctx, p: p, t: newSession(p)}
+	f.t.e.startFromRows()
+	seen := make([]bool, p.Rows())
+	for _, i := range among {
+		if !seen[i] {
+			f.rows.all = append(f.rows.all, sidesOf(i, p.rowLower[i], p.rowUpper[i])...)
+		}
+		seen[i] = true
+	}
+	for j, c := range p.columns {
+		f.columns.all = append(f.columns.all, sidesOf(j, c.Lower, c.Upper)...)
+	}
+	f.rows.row = true
+	f.rows.dropped = make([]bool, len(f.rows.all))
+	f.columns.dropped = make([]bool, len(f.columns.all))
+	return f
+}
+
+func (f *filter) solve() Status {
+	f.solves++
+	return f.t.solve(f.ctx, Options{}.iterationLimit(f.p.Rows(), f.p.Columns()))
+}
+
+// bounds returns the bounds that b is a side of.
+func (f *filter) bounds(b Bound, row bool) (lower, upper float64) {
+	if row {
+		return f.p.rowLower[b.Index], f.p.rowUpper[b.Index]
+	}
+	return f.p.columns[b.Index].Lower, f.p.columns[b.Index].Upper
+}
+
+func (f *filter) set(b Bound, row bool, lower, upper float64) {
+	if row {
+		f.p.rowLower[b.Index], f.p.rowUpper[b.Index] = lower, upper
+		f.t.setRow(b.Index, lower, upper)
+		return
+	}
+	f.p.columns[b.Index].Lower, f.p.columns[b.Index].Upper = lower, upper
+	f.t.setColumn(b.Index, lower, upper)
+}
+
+// drop removes member k for good.
+func (f *filter) drop(l *filterList, k int) {
+	b := l.all[k]
+	lower, upper := f.bounds(b, l.row)
+	lower, upper = without(lower, upper, b.Side)
+	f.set(b, l.row, lower, upper)
+	l.dropped[k] = true
+}
+
+// useProof drops every member that the last proof does not need.
+func (f *filter) useProof() {
+	y := f.t.e.proof
+	f.dropUnused(&f.rows, func(i int) float64 { return y[i] })
+	z := f.t.e.byCol
+	f.t.e.m.combineRows(z, f.t.e.everyRow(y), f.t.e.dr, f.t.e.byRow)
+	f.dropUnused(&f.columns, func(j int) float64 { return -z[j] })
+}
+
+func (f *filter) dropUnused(l *filterList, multiplier func(int) float64) {
+	for k, b := range l.all {
+		v := multiplier(b.Index)
+		used := (v > 0 && b.Side == UpperSide) || (v < 0 && b.Side == LowerSide)
+		if !used && !l.dropped[k] {
+			f.drop(l, k)
+		}
+	}
+}
+
+// reduce tries to do without each member in turn. It returns Infeasible, or the status that stopped it.
+func (f *filter) reduce(l *filterList) Status {
+	for k, b := range l.all {
+		if l.dropped[k] {
+			continue
+		}
+		lower, upper := f.bounds(b, l.row)
+		f.drop(l, k)
+		switch status := f.solve(); status {
+		case Infeasible:
+			f.useProof()
+		case Optimal:
+			f.set(b, l.row, lower, upper)
+			l.dropped[k] = false
+		default:
+			return status
+		}
+	}
+	return Infeasible
+}
+
+// verify solves the remaining problem from the start, checks the proof from the data, and drops each member once.
+func (f *filter) verify() bool {
+	s, err := Solve(f.ctx, f.p, Options{})
+	f.solves++
+	if err != nil || s.Status != Infeasible || !Certify(f.p, s).Accepted {
+		return false
+	}
+	for _, l := range []*filterList{&f.rows, &f.columns} {
+		for k, b := range l.all {
+			if l.dropped[k] {
+				continue
+			}
+			lower, upper := f.bounds(b, l.row)
+			f.drop(l, k)
+			status := f.solve()
+			f.set(b, l.row, lower, upper)
+			l.dropped[k] = false
+			if status != Optimal {
+				return false
+			}
+		}
+	}
+	return true
+}
