@@ -28,9 +28,12 @@ const (
 	shellTolerance = 1e-3
 	// hopelessShare: below this share of the wanted length a short edge comes from the input's own sharpness; its triangles
 	// are left, which bounds the work.
-	hopelessShare = 1.0 / 16
+	hopelessShare = 1.0 / 1024
 	// gapLengths: pieces of a segment are at most so many widths of the gap beside it before sizes are taken from them.
 	gapLengths = 4
+	// gapMargin: the apex may stand so far beyond the edge's end, in edge lengths; pieces on both sides of a gap often end
+	// exactly opposite each other.
+	gapMargin = 0.01
 	// cornerHalvings bounds the cutting of a segment towards a sharp corner.
 	cornerHalvings = 1 << 24
 )
@@ -131,7 +134,7 @@ func (r *refiner) crowded(t, k int32) bool {
 	ex, ey := r.vector(tr.region, a, b)
 	ux, uy := r.vector(tr.region, a, c)
 	l2, along := ex*ex+ey*ey, ex*ux+ey*uy
-	if !(along > 0 && along < l2 && l2 > gapLengths*math.Abs(ex*uy-ey*ux)) {
+	if !(along > -gapMargin*l2 && along < (1+gapMargin)*l2 && l2 > gapLengths*math.Abs(ex*uy-ey*ux)) {
 		return false
 	}
 	return !r.acrossCorner(a, c) && !r.acrossCorner(b, c)
