@@ -127,6 +127,48 @@ func TestAntimeridianCutAndJoined(t *testing.T) {
 	}
 }
 
+// Real outlines moved over the antimeridian are cut into many parts and come back whole: as many holes, the same area.
+func TestRealPolygonsCutAndJoined(t *testing.T) {
+	for _, name := range []string{"coast-great-britain-10m", "holes-stikine-icecap-10m", "holes-alaska-glacier-10m", "lake-vilyuy-reservoir-10m", "thin-cuba-10m"} {
+		data, err := os.ReadFile(sharedData(t, "polygons", name+".geojson"))
+		if err != nil {
+			t.Fatal(err)
+		}
+		layer, findings := ReadLayer(name, data, LayerOptions{})
+		if findings.Err() != nil {
+			t.Fatal(findings)
+		}
+		p := layer.Features[0].Geometry.(orb.Polygon)
+		box := p.Bound()
+		for k := range 5 {
+			// The antimeridian runs through the middle, a quarter, and three vertices in turn.
+			by := 180 - [...]float64{(box.Min[0] + box.Max[0]) / 2, box.Min[0] + (box.Max[0]-box.Min[0])/4, p[0][0][0], p[0][len(p[0])/3][0], p[0][len(p[0])/2][0]}[k]
+			moved := make(orb.Polygon, len(p))
+			for i, ring := range p {
+				for _, v := range ring {
+					moved[i] = append(moved[i], orb.Point{roundDegrees(v[0] + by), v[1]})
+				}
+			}
+			text, err := WriteFeatures([]OutputFeature{{Geometry: moved}})
+			if err != nil {
+				t.Fatalf("%s: %v", name, err)
+			}
+			again, findings := ReadLayer(name, text, LayerOptions{})
+			if findings.Err() != nil {
+				t.Fatalf("%s: %v", name, findings)
+			}
+			back, ok := again.Features[0].Geometry.(orb.Polygon)
+			if !ok || len(back) != len(p) {
+				t.Fatalf("%s came back as %T of %d rings, not %d", name, again.Features[0].Geometry, len(back), len(p))
+			}
+			// Each of some tens of cut points moves by up to 5e-8 degree along edges of up to a degree.
+			if a, b := planarArea(p), planarArea(back); math.Abs(a-b) > 1e-5 {
+				t.Errorf("%s: area %v came back as %v", name, a, b)
+			}
+		}
+	}
+}
+
 func TestAntimeridianReading(t *testing.T) {
 	for name, c := range map[string]struct {
 		text, says string
