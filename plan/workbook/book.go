@@ -2,6 +2,7 @@ package workbook
 
 import (
 	"fmt"
+	"reflect"
 	"strings"
 
 	"github.com/xuri/excelize/v2"
@@ -15,7 +16,8 @@ type book struct {
 	report   *plan.Report
 	facts    facts
 	unit     rateUnit
-	styles   map[look]int
+	looks    map[look]*look
+	styles   map[*look]int
 	problems []error
 	names    nameTable
 
@@ -43,8 +45,11 @@ func Write(r *plan.Report) ([]byte, error) {
 	if err != nil {
 		return nil, err
 	}
-	b := &book{file: excelize.NewFile(), report: r, facts: f, unit: unit, styles: map[look]int{}}
+	b := &book{file: excelize.NewFile(), report: r, facts: f, unit: unit, looks: map[look]*look{}, styles: map[*look]int{}}
 	b.fill()
+	if len(b.problems) == 0 {
+		b.checkNumbers(reflect.ValueOf(r), "")
+	}
 	if err := b.err(); err != nil {
 		return nil, err
 	}
@@ -92,11 +97,17 @@ const (
 // fillHeads writes the lines that stand in the same place on every sheet.
 func (b *book) fillHeads() {
 	master := b.plan
-	changed := chooseWords(more(b.planRows.changed, number(0)), words(warnSign+changedText), words(b.asPlanned()))
+	changed := chooseWords(more(b.planRows.changed, number(0)), words(warnSign+b.says(changedText)), words(b.asPlanned()))
 	master.phrase(changedRow, 1, changed, banner)
 	broken := chooseWords(more(b.brokenSprings(), number(0)), words(warnSign+"table not valid: a spring would stop at these rates, its flow is not linear any more"),
 		chooseWords(more(b.brokenLevels(), number(0)), words(warnSign+"table not valid: a level falls below the aquifer's top, the aquifer is not confined there"), words("")))
 	master.phrase(validRow, 1, broken, banner)
+	for _, column := range []int{b.planRows.idAgain, b.planRows.idLevels} { // further printed pages of Plan
+		master.text(titleRow, column, master.name+", continued", title)
+		master.phrase(changedRow, column, master.wordRef(master, changedRow, 1), banner)
+		master.phrase(validRow, column, master.wordRef(master, validRow, 1), banner)
+		master.warnState(column)
+	}
 	reference := joinFilled(" · ", b.report.Title, b.report.Reference, b.report.PreparedFor)
 	for _, s := range b.sheets() {
 		s.text(titleRow, 1, s.name, title)
@@ -111,17 +122,22 @@ func (b *book) fillHeads() {
 			s.phrase(validRow, 1, master.wordRef(s, validRow, 1), banner)
 		}
 		s.heights[changedRow] = 18
-		block := "A3:A4"
-		s.marks = append(s.marks, mark{block, `LEFT($A3,1)="▲"`, warnMark})
+		s.warnState(1)
 	}
 }
 
 // asPlanned says what the rates are before anything is edited.
 func (b *book) asPlanned() string {
-	if b.report.Conflict != nil {
-		return "No plan keeps all limits. The rates shown are a starting point, not a plan."
+	if b.noPlan() {
+		return warnSign + "No plan keeps all limits. The rates shown are a starting point, not a plan."
 	}
 	return "Rates as planned."
+}
+
+// warnState marks the two lines on the state of the rates where they warn.
+func (s *sheet) warnState(column int) {
+	first := cellName(changedRow, column)
+	s.marks = append(s.marks, mark{first + ":" + cellName(validRow, column), fmt.Sprintf(`LEFT(%s,1)="▲"`, first), warnMark})
 }
 
 func joinFilled(between string, parts ...string) string {
@@ -144,9 +160,25 @@ func (s *sheet) sectionHead(row, last int, words string) int {
 	for c := 1; c <= last; c++ {
 		s.blank(row, c, section)
 	}
-	s.text(row, 1, words, section)
+	s.text(row, 1, s.book.says(words), section)
 	s.heights[row] = 24
 	return row + 1
+}
+
+// noPlan tells whether the report explains why there is no plan; its rates are then a starting point.
+func (b *book) noPlan() bool { return b.report.Conflict != nil || b.report.Status == statusInfeasible }
+
+// startWords are what the workbook's own words become where there is no plan.
+var startWords = strings.NewReplacer("At the plan", "At the start", "at the plan", "at the start", "Planned rate", "Starting rate", "planned rate", "starting rate",
+	"less planned", "less start", "refer to the plan", "refer to the starting rates", "What holds the plan: binding limits", "Limits reached or passed at the starting rates",
+	"differs from the plan", "differs from the start", "those of the plan", "the starting ones")
+
+// says adapts the workbook's own words where there is no plan; never the report's.
+func (b *book) says(words string) string {
+	if b.noPlan() {
+		return startWords.Replace(words)
+	}
+	return words
 }
 
 // paragraph writes words over the first columns and returns the next row.
@@ -162,7 +194,7 @@ func (s *sheet) heads(row, column int, texts ...string) {
 		if strings.HasPrefix(t, ">") {
 			t, l = t[1:], headRight
 		}
-		s.text(row, column+k, t, l)
+		s.text(row, column+k, s.book.says(t), l)
 	}
 }
 

@@ -87,7 +87,7 @@ func (b *book) captureByWell(row, leading int) {
 		s.text(row, 2, r.Wells[i].Name, line)
 		s.text(row, 3, whoseWords(r.Wells[i].Others), line)
 		planRow := b.planRows.first + i
-		s.formula(row, 4, b.plan.ref(s, planRow, b.planRows.now), figures(b.plan.at(planRow, b.planRows.now).look.format))
+		s.formula(row, 4, b.plan.ref(s, planRow, b.planRows.now), figures(b.plan.lookOf(planRow, b.planRows.now).format))
 		for k, c := range r.Capture {
 			s.value(row, leading+1+k, c.ShareByWell[j], figures(shareFormat))
 		}

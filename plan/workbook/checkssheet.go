@@ -15,6 +15,7 @@ func (b *book) fillChecks() {
 	s.page = pageSetup{wide: 1, freezeRow: changedRow + 2}
 	row := b.checkTable(firstRow)
 	row = b.handTable(row + 1)
+	row = b.resolvedTable(row + 1)
 	row = b.agreementTable(row + 1)
 	b.auditTable(row + 1)
 }
@@ -121,6 +122,28 @@ func (b *book) handTable(row int) int {
 	}
 	s.blank(row, 3, line)
 	s.across(row, 4, checksEnd, "a few per cent are usual: other wells and edges bend the cone", line)
+	return row + 1
+}
+
+// resolvedTable sets each receptor's superposed change beside the one of a full solve at the plan.
+func (b *book) resolvedTable(row int) int {
+	s := b.checks
+	row = s.sectionHead(row, checksEnd, "Superposition: each receptor's change at the plan, and from a full solve at the plan")
+	if len(b.facts.assessed) == 0 {
+		s.nothing(row, checksEnd, "Not done: no receptor was assessed.")
+		return row + 1
+	}
+	s.heads(row, 1, "Receptor", "Unit", ">Superposed", ">Full solve", ">Difference")
+	for _, i := range b.facts.assessed {
+		row++
+		r := b.report.Receptors[i]
+		f := figures(decimals(min(figuresOf(abs(r.Change), 5), 10)))
+		s.text(row, 1, joinFilled(" · ", r.ID, r.Name), line)
+		s.text(row, 2, unitWords(r.Unit), line)
+		s.value(row, 3, r.Change, f)
+		s.value(row, 4, r.ChangeResolved, f)
+		s.formula(row, 5, s.ref(s, row, 3).minus(s.ref(s, row, 4)), figures("0.0E+00"))
+	}
 	return row + 1
 }
 

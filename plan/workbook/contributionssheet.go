@@ -39,6 +39,7 @@ func (b *book) fillContributions() {
 	s.across(row, 1, leading, "Change of the receptor", lineTotal)
 	for k, rec := range receptors {
 		s.formula(row, leading+1+k, sumOf(s.down(s, leading+1+k, first, row-1)), totals(formats[k]))
+		b.agreeContributions(rec)
 		b.agree("contributions to "+b.report.Receptors[rec].ID, s.at(row, leading+1+k).number, b.report.Receptors[rec].Change, b.gross(rec))
 	}
 	row += 2
@@ -60,6 +61,22 @@ func (b *book) fillContributions() {
 	s.across(row, 1, leading, "Sum", lineTotal)
 	for k := range receptors {
 		s.formula(row, leading+1+k, sumOf(s.down(s, leading+1+k, firstShare, row-1)), totals(shareFormat))
+	}
+}
+
+// agreeContributions compares the parts with those that the report lists.
+func (b *book) agreeContributions(receptor int) {
+	t := b.report.Contributions
+	id := b.report.Receptors[receptor].ID
+	for k, name := range t.Receptors {
+		if name != id || k >= len(t.Values) {
+			continue
+		}
+		for c, well := range t.Wells {
+			if i, known := b.facts.well[well]; known && c < len(t.Values[k]) {
+				b.agree("contribution of "+well+" to "+id, b.facts.slope[receptor][i]*b.report.Wells[i].Rate, t.Values[k][c], b.gross(receptor))
+			}
+		}
 	}
 }
 
@@ -102,8 +119,8 @@ func (b *book) contributionLead(s *sheet, row, i int) {
 	s.text(row, 1, w.ID, strong)
 	s.text(row, 2, w.Name, line)
 	s.text(row, 3, whoseWords(w.Others), line)
-	from := b.sensitivities.at(b.sens.first+i, b.sens.rate)
-	s.formula(row, 4, b.sensitivities.ref(s, b.sens.first+i, b.sens.rate), from.look)
+	from := b.sensitivities.lookOf(b.sens.first+i, b.sens.rate)
+	s.formula(row, 4, b.sensitivities.ref(s, b.sens.first+i, b.sens.rate), from)
 }
 
 // receptorHeads writes the heads of a table with receptors across and returns the next row.

@@ -120,7 +120,14 @@ func fillTable(r *plan.Report, rows [][]float64) {
 			rec.OthersRecent, rec.OthersLicensed = &recent, &licensed
 		}
 	}
-	r.Contributions = r.Sensitivities
+	r.Contributions = plan.Table{Receptors: r.Sensitivities.Receptors, Units: r.Sensitivities.Units, Wells: r.Sensitivities.Wells}
+	for k := range rows {
+		parts := make([]float64, len(r.Wells))
+		for i, w := range r.Wells {
+			parts[i] = rows[k][i] * w.Rate
+		}
+		r.Contributions.Values = append(r.Contributions.Values, parts)
+	}
 }
 
 // limitOf works out a limit's line as the plan means it.

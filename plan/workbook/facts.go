@@ -112,6 +112,9 @@ func (f *facts) readSensitivities(r *plan.Report, receptor map[string]int, add f
 			add("the sensitivities of %q have %d of %d wells", id, len(t.Values[k]), len(columns))
 			continue
 		}
+		if len(r.Wells) == 0 {
+			continue
+		}
 		f.slope[i] = make([]float64, len(r.Wells))
 		for c, v := range t.Values[k] {
 			f.slope[i][columns[c]] = v
@@ -138,6 +141,8 @@ const (
 	aimMostYield     = "most-yield"
 	aimMostHeadroom  = "most-headroom"
 	aimLeastEnergy   = "least-energy"
+	statusInfeasible = "infeasible"
+	statusOptimal    = "optimal"
 	assessedYes      = "yes"
 	modeDecided      = "decided"
 	modeOff          = "off"

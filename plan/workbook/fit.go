@@ -24,10 +24,10 @@ func (s *sheet) fitWidths() {
 			var need float64
 			switch {
 			case cell.kind == numberCell && cell.look.size == textSize:
-				need = textPixels(shownNumber(cell.number, cell.look.format), cell.look) + numberSlack
+				need = textPixels(shownNumber(cell.number, cell.look.format), *cell.look) + numberSlack
 			case cell.kind == wordCell && cell.look.fill == fillHead:
 				for _, word := range strings.Fields(cell.words) {
-					need = math.Max(need, textPixels(word, cell.look))
+					need = math.Max(need, textPixels(word, *cell.look))
 				}
 				need = math.Min(need+float64(cell.look.indent)*indentPixels+paddingPixels, widestHeadWord)
 			}

@@ -15,7 +15,7 @@ type cell struct {
 	number  float64
 	words   string
 	formula string
-	look    look
+	look    *look // shared by all cells of that look, never changed; nil is none
 }
 
 type cellKind int
@@ -70,25 +70,31 @@ func (s *sheet) at(row, column int) *cell {
 		s.rows = append(s.rows, nil)
 	}
 	if line := s.rows[row-1]; len(line) < column {
-		grown := make([]cell, column, column+8)
-		copy(grown, line)
-		s.rows[row-1] = grown
+		if cap(line) < column {
+			grown := make([]cell, len(line), max(column, 2*cap(line), leastColumns))
+			copy(grown, line)
+			line = grown
+		}
+		s.rows[row-1] = line[:column]
 	}
 	return &s.rows[row-1][column-1]
 }
 
+// leastColumns is the room that a new row starts with.
+const leastColumns = 16
+
 // text puts words that are never taken for a formula.
 func (s *sheet) text(row, column int, words string, l look) {
-	*s.at(row, column) = cell{kind: wordCell, words: cleanText(words), look: l}
+	*s.at(row, column) = cell{kind: wordCell, words: cleanText(words), look: s.book.shared(l)}
 }
 
 // blank puts an empty cell that has a look.
-func (s *sheet) blank(row, column int, l look) { *s.at(row, column) = cell{look: l} }
+func (s *sheet) blank(row, column int, l look) { *s.at(row, column) = cell{look: s.book.shared(l)} }
 
 // value puts a number; a number that is not finite is a problem that names the cell.
 func (s *sheet) value(row, column int, x float64, l look) {
 	s.finite(row, column, x)
-	*s.at(row, column) = cell{kind: numberCell, number: x + 0, look: l}
+	*s.at(row, column) = cell{kind: numberCell, number: x + 0, look: s.book.shared(l)}
 }
 
 // known puts a number, or leaves the cell empty where it is not known.
@@ -103,12 +109,12 @@ func (s *sheet) known(row, column int, x *float64, l look) {
 // formula puts a numeric formula with its value.
 func (s *sheet) formula(row, column int, t term, l look) {
 	s.finite(row, column, t.value)
-	*s.at(row, column) = cell{kind: numberCell, number: t.value + 0, formula: t.text, look: l}
+	*s.at(row, column) = cell{kind: numberCell, number: t.value + 0, formula: t.text, look: s.book.shared(l)}
 }
 
 // phrase puts a formula that gives words.
 func (s *sheet) phrase(row, column int, p phrase, l look) {
-	*s.at(row, column) = cell{kind: wordCell, words: p.value, formula: p.text, look: l}
+	*s.at(row, column) = cell{kind: wordCell, words: p.value, formula: p.text, look: s.book.shared(l)}
 }
 
 func (s *sheet) finite(row, column int, x float64) {
@@ -126,7 +132,7 @@ func (s *sheet) merge(row, first, last int) {
 	if last <= first {
 		return
 	}
-	l := s.at(row, first).look
+	l := s.lookOf(row, first)
 	for c := first + 1; c <= last; c++ {
 		s.blank(row, c, l)
 	}
@@ -137,6 +143,19 @@ func (s *sheet) merge(row, first, last int) {
 func (s *sheet) across(row, first, last int, words string, l look) {
 	s.text(row, first, words, l)
 	s.merge(row, first, last)
+}
+
+// lookOf is a cell's look.
+func (s *sheet) lookOf(row, column int) look {
+	if l := s.at(row, column).look; l != nil {
+		return *l
+	}
+	return look{}
+}
+
+// oneLine keeps a cell's words from being wrapped.
+func (s *sheet) oneLine(row, column int) {
+	s.at(row, column).look = s.book.shared(with(s.lookOf(row, column), func(l *look) { l.wrap = false }))
 }
 
 func cellName(row, column int) string {

@@ -88,16 +88,26 @@ func editable(format string) look {
 	return with(figures(format), func(l *look) { l.fill, l.unlocked, l.bold, l.box = fillEdit, true, true, true })
 }
 
-// style returns the file's number of a look.
-func (b *book) style(l look) (int, error) {
-	if id, ok := b.styles[l]; ok {
+// shared returns the one copy of a look that all its cells share.
+func (b *book) shared(l look) *look {
+	if p, ok := b.looks[l]; ok {
+		return p
+	}
+	p := &l
+	b.looks[l] = p
+	return p
+}
+
+// style returns the file's number of a shared look.
+func (b *book) style(p *look) (int, error) {
+	if id, ok := b.styles[p]; ok {
 		return id, nil
 	}
-	id, err := b.file.NewStyle(l.excel(true))
+	id, err := b.file.NewStyle(p.excel(true))
 	if err != nil {
 		return 0, err
 	}
-	b.styles[l] = id
+	b.styles[p] = id
 	return id, nil
 }
 

@@ -105,7 +105,7 @@ func (s *sheet) rowHeight(row int, joined map[int]int) float64 {
 			for k := i + 1; k <= last; k++ {
 				digits += s.width(k)
 			}
-			lines = linesOf(c.words, c.look, digits*digitPixels-paddingPixels-float64(c.look.indent)*indentPixels)
+			lines = linesOf(c.words, *c.look, digits*digitPixels-paddingPixels-float64(c.look.indent)*indentPixels)
 		}
 		height = math.Max(height, float64(lines)*c.look.size*lineFactor+rowPadding)
 	}

@@ -158,11 +158,11 @@ func (b *book) planHeads() {
 		s.text(planHeadRow-1, c, "", under)
 	}
 	s.text(planHeadRow-1, 1, "Rates: change only the shaded cells", label)
-	s.at(planHeadRow-1, 1).look.wrap = false
+	s.oneLine(planHeadRow-1, 1)
 	s.text(planHeadRow-1, p.idAgain, "Prices of bounds, and sources", label)
-	s.at(planHeadRow-1, p.idAgain).look.wrap = false
+	s.oneLine(planHeadRow-1, p.idAgain)
 	s.text(planHeadRow-1, p.idLevels, "Levels in the wells, steady state, in metres above the datum", label)
-	s.at(planHeadRow-1, p.idLevels).look.wrap = false
+	s.oneLine(planHeadRow-1, p.idLevels)
 	set := func(column int, text string) {
 		if column > 0 {
 			s.heads(planHeadRow, column, text)

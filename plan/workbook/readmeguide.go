@@ -18,7 +18,7 @@ func (b *book) guidePart(row int) int {
 		"Some programs ask to save on closing although nothing was changed: the workbook asks them to recalculate when it is opened.",
 		"Numbers are stored in full and shown rounded.",
 	} {
-		row = s.paragraph(row, readEnd, "– "+item, wrapped)
+		row = s.paragraph(row, readEnd, "– "+b.says(item), wrapped)
 	}
 	row++
 	s.heads(row, 1, "Sheet", "What it holds", "", "", "")
@@ -34,7 +34,7 @@ func (b *book) guidePart(row int) int {
 	} {
 		row++
 		s.text(row, 1, l[0], strong)
-		s.across(row, 2, readEnd, l[1], line)
+		s.across(row, 2, readEnd, b.says(l[1]), line)
 	}
 	return row + 1
 }

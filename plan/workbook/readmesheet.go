@@ -12,7 +12,7 @@ const readEnd = 5
 // fillReadMe writes page one: the result, what binds, where the water comes from, what was not assessed, and the sign-off.
 func (b *book) fillReadMe() {
 	s := b.readMe
-	s.setWidths(1, 33, 16, 17, 17, 34)
+	s.setWidths(1, 32, 15, 17, 30, 22)
 	s.page = pageSetup{wide: 1, freezeRow: changedRow + 2}
 	row := b.resultPart(firstRow)
 	row = b.conflictPart(row)
@@ -33,7 +33,7 @@ const headlineWords = "Largest total rate that keeps the limits entered"
 
 func (b *book) headline() string {
 	switch {
-	case b.report.Conflict != nil || b.report.Status == "infeasible":
+	case b.noPlan():
 		return "No plan keeps all the limits entered"
 	case b.report.Aim == aimMostYield:
 		return headlineWords
@@ -48,8 +48,7 @@ func (b *book) resultPart(row int) int {
 	s, r, p := b.readMe, b.report, &b.planRows
 	s.across(row, 1, readEnd, b.headline(), with(label, func(l *look) { l.size = 13 }))
 	row++
-	noPlan := r.Conflict != nil || r.Status == "infeasible"
-	if !noPlan {
+	if !b.noPlan() {
 		big := with(plain, func(l *look) {
 			l.size, l.bold, l.format, l.across = 22, true, rateFormat(r.TotalRate)+` "m³/d"`, "left"
 		})
@@ -70,7 +69,7 @@ func (b *book) resultPart(row int) int {
 		row = s.paragraph(row, readEnd, warnSign+"THE MODEL IS NOT VALID AT THESE RATES: "+orWords(strings.Join(r.Invalid, "; "), "the report gives no reason"),
 			with(label, func(l *look) { l.fill, l.box = fillWarn, true }))
 	}
-	if r.Status != "" && r.Status != "optimal" && r.Status != "infeasible" {
+	if r.Status != "" && r.Status != statusOptimal && r.Status != statusInfeasible {
 		row = s.paragraph(row, readEnd, warnSign+"The search for the plan ended as: "+strings.ReplaceAll(r.Status, "_", " "), with(label, func(l *look) { l.fill, l.box = fillWarn, true }))
 	}
 	if len(r.Observations) == 0 {
@@ -95,7 +94,7 @@ func (b *book) resultPart(row int) int {
 	compare("Total rate, m³/d", func(row int) { s.value(row, 2, r.TotalRate, figures(total)) }, b.plan.ref(s, p.totalRow, p.now), total, "wells that the plan decides, pumped rates only")
 	differences := b.plan.down(s, p.difference, p.first, p.last)
 	spread := call("MAX", largest(differences.values), "MAX("+differences.text+")", "-MIN("+differences.text+")")
-	compare("Largest difference of a rate, m³/d", nil, spread, total, "0 while all rates are those of the plan")
+	compare("Largest difference of a rate, m³/d", nil, spread, total, b.says("0 while all rates are those of the plan"))
 	if d := r.Demand; d != nil {
 		row++
 		s.text(row, 1, "Demand, m³/d", line)
@@ -110,12 +109,22 @@ func (b *book) resultPart(row int) int {
 		{"Limits that bind", wordBinds, "reached exactly, with what is kept back"},
 	} {
 		compare(c.words, nil, countWord(c.status, statuses...), countFormat, c.remark)
+		if c.status == wordPassed {
+			s.warnCount(row, 3)
+		}
 	}
 	within := b.plan.wordsDown(s, p.within, p.first, p.last)
 	outside := countWord(wordBelow, within).plus(countWord(wordAbove, within)).plus(countWord(wordOutOfService, within)).plus(countWord(wordChanged, within))
 	compare("Rates outside their bounds or not as given", nil, outside, countFormat, "marked on Plan")
+	s.warnCount(row, 3)
 	b.marginLine(row + 1)
 	return row + 2
+}
+
+// warnCount marks a count that is not zero.
+func (s *sheet) warnCount(row, column int) {
+	cell := cellName(row, column)
+	s.marks = append(s.marks, mark{cell, cell + ">0", warnMark})
 }
 
 // limitStatuses are all cells that say how a limit stands now.
@@ -133,7 +142,7 @@ func (b *book) limitStatuses(from *sheet) []wordSpan {
 
 func (b *book) marginLine(row int) {
 	s, r := b.readMe, b.report
-	s.text(row, 1, "Worst margin at the plan", line)
+	s.text(row, 1, b.says("Worst margin at the plan"), line)
 	if r.WorstMargin != nil {
 		s.value(row, 2, *r.WorstMargin, figures(shareFormat))
 	} else {

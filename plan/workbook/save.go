@@ -30,7 +30,11 @@ func (b *book) save() ([]byte, error) {
 	if err := f.Write(&out); err != nil {
 		return nil, fmt.Errorf("workbook: %w", err)
 	}
-	return out.Bytes(), nil
+	data, err := inOrder(out.Bytes())
+	if err != nil {
+		return nil, fmt.Errorf("workbook: %w", err)
+	}
+	return data, nil
 }
 
 func (b *book) saveSheet(i int, s *sheet) error {
@@ -126,7 +130,7 @@ func (s *sheet) excelRow(r int) ([]any, error) {
 	line := make([]any, len(s.rows[r-1]))
 	for c := range s.rows[r-1] {
 		from := &s.rows[r-1][c]
-		if from.kind == emptyCell && from.look == (look{}) {
+		if from.look == nil {
 			continue
 		}
 		id, err := s.book.style(from.look)
@@ -194,11 +198,7 @@ func (b *book) saveProperties() error {
 	if err := f.SetAppProps(&excelize.AppProperties{Application: "springbound"}); err != nil {
 		return err
 	}
-	if err := f.SetCalcProps(&excelize.CalcPropsOptions{FullCalcOnLoad: pointer(true)}); err != nil {
-		return err
-	}
-	f.SetActiveSheet(0)
-	return nil
+	return f.SetCalcProps(&excelize.CalcPropsOptions{FullCalcOnLoad: pointer(true)})
 }
 
 // printTitles is the reference of the rows and columns that repeat on every printed page.

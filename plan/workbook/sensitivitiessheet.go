@@ -61,9 +61,6 @@ func (b *book) fillSensitivities() {
 		s.text(sensHeadRow, sensLeading+1, "No receptor was assessed.", under)
 	}
 	b.fillWellMatrix(l.last + 2)
-	for column := l.rate; column < sensLeading+1+len(b.facts.assessed); column++ {
-		s.at(sensHeadRow, column).look.across = "right"
-	}
 }
 
 func changeUnitPerRate(unit string) string {
@@ -91,7 +88,7 @@ func (b *book) sensitivityRow(i int) {
 	s.text(row, 1, w.ID, strong)
 	s.text(row, 2, w.Name, line)
 	s.text(row, 3, whoseWords(w.Others), line)
-	s.formula(row, l.rate, b.plan.ref(s, b.planRows.first+i, b.planRows.now), figures(b.plan.at(b.planRows.first+i, b.planRows.now).look.format))
+	s.formula(row, l.rate, b.plan.ref(s, b.planRows.first+i, b.planRows.now), figures(b.plan.lookOf(b.planRows.first+i, b.planRows.now).format))
 	own, existing := 1.0, 0.0
 	if w.Others {
 		own, existing = 0, 1

@@ -45,7 +45,7 @@ func layout(t testing.TB, r *plan.Report) *book {
 	if err != nil {
 		t.Fatal(err)
 	}
-	b := &book{report: r, facts: f, unit: unit, styles: map[look]int{}}
+	b := &book{report: r, facts: f, unit: unit, looks: map[look]*look{}, styles: map[*look]int{}}
 	b.fill()
 	if err := b.err(); err != nil {
 		t.Fatal(err)
