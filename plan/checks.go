@@ -164,6 +164,11 @@ func (p *planner) checkCertificate(add func(name, result, detail string)) {
 		add(name, notDone, "nothing was optimised")
 	case c.Status == convex.Infeasible && c.Accepted:
 		add("No rates keep every limit: proof recomputed", pass, fmt.Sprintf("margin %.2g of its terms", c.ProofMargin))
+		if p.conflictVerified {
+			add("Any one member of the conflict left out, the others can be kept", pass, "seen for each member")
+		} else {
+			add("Any one member of the conflict left out, the others can be kept", notDone, "rounding left it open")
+		}
 	case c.Accepted:
 		add(name, pass, fmt.Sprintf("violation %.2g, wrong prices %.2g, gap %.2g, each as a share of its terms", c.PrimalViolationScaled, c.DualViolationScaled, c.Gap))
 	default:

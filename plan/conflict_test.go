@@ -2,6 +2,7 @@ package plan
 
 import (
 	"context"
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"strings"
@@ -194,11 +195,19 @@ func (s *site) relaxed(by []ConflictMember, factor float64) *site {
 	return &out
 }
 
+// letters names wells A to Z and on as A1, B1, ...
+func letters(i int) string {
+	if i < 26 {
+		return string(rune('A' + i))
+	}
+	return fmt.Sprintf("%c%d", 'A'+i%26, i/26)
+}
+
 // randomSite has n wells up for decision and m receptors with one limit each, all different.
 func randomSite(random *rand.Rand, n, m int) *site {
 	var list []wells.Well
 	for i := 0; i < n; i++ {
-		w := decidedWell(string(rune('A'+i)), 0, 500+1500*random.Float64())
+		w := decidedWell(letters(i), 0, 500+1500*random.Float64())
 		list = append(list, w)
 	}
 	s := newSite(MostYield, list...)
@@ -207,7 +216,7 @@ func randomSite(random *rand.Rand, n, m int) *site {
 		for i := range slope {
 			slope[i] = math.Exp(-9 + 3*random.Float64())
 		}
-		id := "R" + string(rune('0'+k))
+		id := fmt.Sprint("R", k)
 		s.receptor(id, wells.PointLevel, 20, slope...)
 		s.limit("L"+id, id, 0.1+0.4*random.Float64(), func(l *wells.Limit) {
 			if random.IntN(3) == 0 {

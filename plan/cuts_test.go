@@ -59,6 +59,25 @@ func TestCutsAreKept(t *testing.T) {
 	}
 }
 
+// A total of 12 asks for a change of at least 13.4, where both pieces meet at y = 7: the limit of 10 alone must give way by 3.4,
+// which no single tangent tells. The largest total under the limit is 5 + 5/1.2.
+func TestConflictWithCuts(t *testing.T) {
+	s := newSite(MostYield, decidedWell("X", 0, 10), decidedWell("Y", 0, 10))
+	s.brief.Demand = number(12)
+	s.brief.Receptors = []wells.Receptor{{ID: "R", Name: "R", Kind: wells.WetlandWorst}}
+	s.limit("L", "R", 10)
+	m := &pieces{ids: []string{"X", "Y"}, slopes: [][]float64{{1, 1.2}, {2, 1.2}}, offset: []float64{0, -5}}
+	r, err := Make(context.Background(), s.brief, m, Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if r.Status != StatusInfeasible || len(r.Conflict.Members) != 2 {
+		t.Fatalf("%s %+v", r.Status, r.Conflict)
+	}
+	near(t, "limit alone", *r.Conflict.Members[1].Alone, 3.4, 10*cutTolerance*10)
+	near(t, "demand alone", *r.Conflict.Members[0].Alone, 12-(5+5/1.2), 10*cutTolerance*10)
+}
+
 // bowl is a receptor with the smooth convex change (x² + 2 y²)/100 + 0.1 x + 0.1 y.
 type bowl struct{ ids []string }
 

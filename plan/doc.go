@@ -9,11 +9,24 @@
 //	most-yield      maximise  sum of pumped rates             subject to limits, quotas, demand, bounds
 //	most-headroom   maximise  smallest share of room left     for the demand, subject to the same
 //
-// Where a row is not linear (the worst place beneath a wetland moves as rates change) its change is convex in the rates; tangents
+// For limit k with edge e_k (the limit as a change of the counted wells C_k against no pumping), size z_k and reserve f_k
+//
+//	side_k (sum_{w in C_k} S_kw Q_w - e_k) + (f_k + t) z_k <= 0        t = 0 for most-yield
+//
+// and its shadow price is the row's price times de_k/dlimit, less what a larger size keeps back. The solution is certified from the
+// data; what cannot be met is explained by an irreducible set of limits and by the least relaxation.
+//
+// Where a row is not linear (the worst place beneath a wetland moves as rates change; the level in a bore falls by C Q|Q| besides) its change is convex in the rates; tangents
 // taken at re-solved plans are kept as cuts and the loop ends (Kelley 1960, J. SIAM 8).
 //
 // Symbols, units, signs: Q rate [m³/d], pumping positive; change = value without pumping - value, so that pumping makes it larger;
 // headroom = limit - quantity in the limit's own direction; shadow price = change of the aim per unit of the limit.
+//
+// Not done: operating states other than the default one (listed as not assessed); wells that are off or above a least rate; left
+// and right prices and their ranges; a choice among plans as good.
+//
+// Sources: Maddock 1972 (Water Resources Research 8) for the response matrix; Kelley 1960 (J. SIAM 8) for cuts; Mangasarian 1979
+// (Linear Algebra and its Applications 25) for other plans as good.
 //
 // The package sees no mesh and no file format. Prices hold near the plan and for this model only.
 package plan

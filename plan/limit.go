@@ -24,14 +24,14 @@ type bound struct {
 	limit    int // index into Brief.Limits; -1: the lowest level in a well
 	target   target
 	counted  []bool
-	linear   bool
+	linear   bool    // the change is linear in the decided rates
 	value    bool    // a bound on the value, not on its change
 	side     float64 // +1: the change may not be larger than edge; -1: not smaller
 	edge     float64
 	size     float64 // the limit's own size, in the unit of the change; 0: a hard limit
 	reserve  float64
 	baseline float64 // change of the baseline, in the unit of the change
-	boreBase float64 // turbulent loss in the baseline, for a receptor that is the level in a pumped well [m]
+	bore     int     // the well whose turbulent loss is part of the change; -1: none
 	unit     float64 // one unit of the limit in the unit of the change: the undisturbed value for a share, 1 otherwise
 	grow     float64 // change of size when the limit is loosened by one unit of the change: -1, 0, 1
 	cuts     []tangent
@@ -109,11 +109,14 @@ func (p *planner) limitBound(ctx context.Context, index int, l wells.Limit) (b *
 	case l.Quantity == wells.ShareOfBase && row.Base == 0:
 		return nil, "the value without pumping is 0, of which a share has no meaning", nil
 	}
-	b = &bound{limit: index, target: target{receptor: r, well: -1}, linear: row.Linear, side: 1, reserve: l.Reserve, unit: 1,
+	b = &bound{limit: index, target: target{receptor: r, well: -1}, linear: row.Linear, side: 1, reserve: l.Reserve, unit: 1, bore: -1,
 		counted: make([]bool, len(s.Wells))}
 	own := l.Counts == wells.Own && l.Quantity != wells.Value
 	for i, w := range s.Wells {
 		b.counted[i] = !(own && w.Others)
+	}
+	if i, known := s.wellIndex[s.Receptors[r].Feature]; known && s.Receptors[r].Kind == wells.PumpingLevel {
+		s.setBore(b, i)
 	}
 	if l.Quantity == wells.Value {
 		if l.Sense == wells.AtMost {
@@ -159,7 +162,6 @@ func (p *planner) baselineChange(ctx context.Context, l wells.Limit, b *bound) (
 			s.findings.addf("limit %s counts from the baseline %s, but that rate of well %s is blank: taken as 0", l.ID, l.Baseline, id)
 		}
 	}
-	b.boreBase = s.boreLoss(s.Receptors[b.target.receptor], rates, b.counted)
 	tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
 	if err != nil {
 		return 0, err
@@ -167,7 +169,19 @@ func (p *planner) baselineChange(ctx context.Context, l wells.Limit, b *bound) (
 	return tan.at(counted), nil
 }
 
-// levelBound makes the bound on the level in a well, without the turbulent part of its loss; nil when the well has none.
+// setBore makes the turbulent loss of well i part of a bound. It is convex in the rate of a well that pumps, so that the bound is
+// kept by cuts. Where the well recharges it is concave and relieves the bound: the programme then leaves it out.
+func (s *setup) setBore(b *bound, i int) {
+	if s.Wells[i].QuadraticLoss == 0 || !b.counted[i] {
+		return
+	}
+	b.bore = i
+	if s.isYield(i) {
+		b.linear = false
+	}
+}
+
+// levelBound makes the bound on the level in a well; nil when the well has none.
 func (p *planner) levelBound(i int) *bound {
 	s := p.setup
 	w := s.Wells[i]
@@ -180,10 +194,12 @@ func (p *planner) levelBound(i int) *bound {
 		s.notAssessed.addf("level in well %s: the response has no row for it", w.ID)
 		return nil
 	}
-	b := &bound{limit: -1, target: target{receptor: -1, well: i}, linear: row.Linear, value: true, side: 1, unit: 1, counted: make([]bool, len(s.Wells))}
+	b := &bound{limit: -1, target: target{receptor: -1, well: i}, linear: row.Linear, value: true, side: 1, unit: 1, bore: -1,
+		counted: make([]bool, len(s.Wells))}
 	for k := range b.counted {
 		b.counted[k] = true
 	}
+	s.setBore(b, i)
 	b.edge = s.WellTerms[i].StaticLevel - *lowest
 	b.size = math.Abs(b.edge)
 	b.grow = sign(b.edge)

@@ -155,13 +155,37 @@ func TestLowestLevel(t *testing.T) {
 	if *w.LowestLevel != 32 || w.LowestReason != "pump intake" || *r.WorstMargin != *w.LevelMargin/8 || !r.ModelValid {
 		t.Errorf("%+v %v", w, r.Invalid)
 	}
-	// turbulent loss: the plan passes the level and is not valid
-	s.brief.Wells[0].QuadraticLoss = 1e-6 // 1e-6 (1600)² = 2.56 m
+	// turbulent loss 1e-6 (2 Q)²: 4e-6 Q² + 0.01 Q = 8, and one more metre is worth 1/(8e-6 Q + 0.01)
+	s.brief.Wells[0].QuadraticLoss = 1e-6
 	r = s.plan(t)
-	if r.ModelValid || len(r.Invalid) != 1 || !strings.Contains(r.Invalid[0], "well A") || !strings.Contains(r.Invalid[0], "2.56 m") {
-		t.Errorf("valid %v: %q", r.ModelValid, r.Invalid)
+	rate := (-0.01 + math.Sqrt(1e-4+4*4e-6*8)) / 8e-6
+	near(t, "rate", r.Wells[0].Rate, rate, 1e-4) // cutTolerance of 8 m, worth some 70 m³/d per m
+	near(t, "margin", *r.Wells[0].LevelMargin, 0, 8*cutTolerance)
+	near(t, "price per metre", r.Wells[0].LevelShadowPrice, 1/(8e-6*rate+0.01), 1e-2)
+	if !r.ModelValid {
+		t.Errorf("%q", r.Invalid)
 	}
-	exact(t, "margin", *r.Wells[0].LevelMargin, -2.56)
+	// at the rate that keeps the level without it, the loss of 2.56 m passes it
+	response, _ := s.table.Linearise(context.Background(), []float64{800})
+	given, err := Evaluate(s.brief, response, []float64{800})
+	if err != nil {
+		t.Fatal(err)
+	}
+	exact(t, "margin", *given.Wells[0].LevelMargin, -2.56)
+	for _, c := range given.Checks {
+		if c.Name == "Levels in wells are kept with the full well loss" && (c.Result != failed || !strings.Contains(c.Detail, "well A") || !strings.Contains(c.Detail, "2.56 m")) {
+			t.Errorf("%+v", c)
+		}
+	}
+	// a fixed well's loss is a constant of its own level
+	s.brief.Wells[0].Mode, s.brief.Wells[0].FixedRate = wells.Fixed, 100
+	s.brief.Wells = append(s.brief.Wells, decidedWell("B", 0, 9000))
+	s.brief.WellTerms = append(s.brief.WellTerms, WellTerm{})
+	s.table.response.Wells = []string{"A", "B"}
+	s.table.response.Rows[0].Slope = []float64{0.01, 0.001}
+	r = s.plan(t)
+	exact(t, "B", r.Wells[1].Rate, (8-1-0.04)/0.001)
+	exact(t, "A's margin", *r.Wells[0].LevelMargin, 0)
 }
 
 func TestQuotasAndLicences(t *testing.T) {

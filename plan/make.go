@@ -34,8 +34,8 @@ const (
 //   - value: undisturbed value minus the change that all wells cause; no baseline, every well counts.
 //   - size: |value| of a change, |undisturbed value - value| of a value. A reserve keeps that share of the size back. A limit of size
 //     0 is hard: it has no reserve and no share of headroom.
-//   - lowest level in a well: the higher of the lowest allowed level and the intake, without the turbulent loss in the programme; the
-//     plan's levels are checked with it, and a plan that fails is not valid.
+//   - lowest level in a well: the higher of the lowest allowed level and the intake. The turbulent loss C Q|Q| is convex in the rate of
+//     a pumping well and kept by cuts too; the plan's levels are checked with the full loss, and a plan that fails is not valid.
 //   - yield, demand and quotas count pumped rates only; the first two those of the decided wells.
 //
 // The report is filled but for what only the caller knows (title, inputs, mesh, balances, capture, places on the globe). Its status

@@ -184,7 +184,21 @@ func (o *oracle) tangentOf(ctx context.Context, b *bound, rates []float64) (tan 
 	if b.value {
 		tan.constant += o.known[0].row(b.target).Base - tan.base
 	}
-	return tan, counted, nil
+	return o.setup.withLoss(b, tan, counted), counted, nil
+}
+
+// withLoss adds the tangent of the turbulent loss that is part of a bound.
+func (s *setup) withLoss(b *bound, tan tangent, rates []float64) tangent {
+	if b.bore < 0 || rates[b.bore] == 0 {
+		return tan
+	}
+	w, rate := s.Wells[b.bore], rates[b.bore]
+	loss := quadraticLoss(w, rate)
+	slope := 2 * loss / rate // of C Q|Q|
+	tan.constant += loss - slope*rate
+	tan.slope = append([]float64(nil), tan.slope...)
+	tan.slope[b.bore] += slope
+	return tan
 }
 
 func sameRates(a, b []float64) bool {

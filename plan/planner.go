@@ -15,15 +15,16 @@ type planner struct {
 
 	cuts []cut // tangents of rows that are not linear, in the order in which they were added
 
-	priced      bool
-	share       float64   // t of most-headroom; 0 otherwise [-]
-	wellPrice   []float64 // nil when nothing was optimised
-	minHolds    []bool    // the lower bound holds the rate rather than the upper
-	demandPrice *float64
-	notUnique   bool
-	iterations  int
-	certificate *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
-	local       bool                // a limit on a row that is not linear bounds it from below: the plan is locally best
+	priced           bool
+	share            float64   // t of most-headroom; 0 otherwise [-]
+	wellPrice        []float64 // nil when nothing was optimised
+	minHolds         []bool    // the lower bound holds the rate rather than the upper
+	demandPrice      *float64
+	notUnique        bool
+	iterations       int
+	certificate      *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
+	conflictVerified bool                // the irreducible set was proven afresh, member by member
+	local            bool                // a limit on a row that is not linear bounds it from below: the plan is locally best
 }
 
 // cut is one tangent of one bound's row.

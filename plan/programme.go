@@ -65,7 +65,9 @@ func (p *planner) build(withShare bool) (*programme, error) {
 	}
 	for k, b := range p.bounds {
 		if b.linear {
-			if err := p.addBound(g, k, tangent{slope: p.oracle.known[0].row(b.target).Slope}); err != nil {
+			// standing wells' losses are constants: the tangent at the standing rates has them
+			tan := s.withLoss(b, tangent{slope: p.oracle.known[0].row(b.target).Slope}, s.standing)
+			if err := p.addBound(g, k, tan); err != nil {
 				return nil, err
 			}
 		}
@@ -87,9 +89,20 @@ func (p *planner) indexOf(b *bound) int {
 
 // addBound adds one row: side (constant + slope·Q - edge) + (reserve + t) size <= 0 over the counted wells.
 func (p *planner) addBound(g *programme, k int, tan tangent) error {
-	s := p.setup
 	b := p.bounds[k]
+	row, upper := p.boundRow(b, tan)
 	a := g.coefficients()
+	copy(a, row)
+	if g.share >= 0 {
+		a[g.share] = b.size
+	}
+	return g.add(owner{ofBound, k}, p.setup.boundWords(b), a, math.Inf(-1), upper)
+}
+
+// boundRow returns the coefficients of the decided wells in a bound's row, and what the standing wells leave.
+func (p *planner) boundRow(b *bound, tan tangent) (a []float64, upper float64) {
+	s := p.setup
+	a = make([]float64, len(s.decided))
 	standing, terms := tan.constant, math.Abs(tan.constant)+math.Abs(b.edge)
 	for i, slope := range tan.slope {
 		switch {
@@ -101,10 +114,7 @@ func (p *planner) addBound(g *programme, k int, tan tangent) error {
 			terms += math.Abs(slope * s.standing[i])
 		}
 	}
-	if g.share >= 0 {
-		a[g.share] = b.size
-	}
-	return g.add(owner{ofBound, k}, s.boundWords(b), a, math.Inf(-1), remainder(b.slack(standing, 0), terms))
+	return a, remainder(b.slack(standing, 0), terms)
 }
 
 // remainderShare is the remainder, as a share of the terms that it is the difference of, that is rounding: a hundred sums of a

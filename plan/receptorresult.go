@@ -144,8 +144,7 @@ func (p *planner) limitResult(ctx context.Context, k int, rates []float64) (Limi
 	if err != nil {
 		return r, err
 	}
-	change := tan.at(counted)
-	full := change + s.boreLoss(rec, rates, b.counted) - b.boreBase
+	full := tan.at(counted)
 	switch l.Quantity {
 	case wells.Value:
 		r.Value = p.oracle.known[0].row(b.target).Base - full
@@ -168,9 +167,13 @@ func (p *planner) limitResult(ctx context.Context, k int, rates []float64) (Limi
 			return r, err
 		}
 	}
+	row, err := p.oracle.tangent(ctx, b.target, counted)
+	if err != nil {
+		return r, err
+	}
 	parts := make([]float64, len(counted))
 	for i, q := range counted {
-		parts[i] = b.side * tan.slope[i] * q
+		parts[i] = b.side * row.slope[i] * q
 	}
 	r.Sentence = p.sentence(b, &r, parts, byRecharge)
 	return r, nil

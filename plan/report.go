@@ -10,7 +10,7 @@ type Report struct {
 	Title       string   `json:"title"`
 	Headline    string   `json:"headline"` // 'largest total rate that keeps the limits entered: ...'
 	Aim         string   `json:"aim"`
-	Status      string   `json:"status"`      // optimal, infeasible, not_converged
+	Status      string   `json:"status"`      // optimal, infeasible, not_converged, numerical_failure, given_rates
 	ModelValid  bool     `json:"model_valid"` // false: a re-solve, a confined check or a well loss failed
 	Invalid     []string `json:"invalid_because"`
 	State       string   `json:"state"`
@@ -30,7 +30,7 @@ type Report struct {
 	WorstMargin *float64 `json:"worst_headroom_share"` // smallest headroom as a share of its limit's room
 	WorstLimit  string   `json:"worst_limit"`
 	NotUnique   bool     `json:"other_plans_as_good"`
-	DemandPrice *float64 `json:"demand_shadow_price"` // change of the aim per m³/d of demand
+	DemandPrice *float64 `json:"demand_shadow_price"` // change of the aim per m³/d of demand; as it is, so mostly negative
 
 	Wells         []WellResult     `json:"wells"`
 	Receptors     []ReceptorResult `json:"receptors"`
@@ -71,7 +71,7 @@ type WellResult struct {
 	Max              float64   `json:"max_m3_per_d"`
 	MaxSource        string    `json:"max_source"`
 	AtBound          string    `json:"at_bound"`     // "", min, max
-	ShadowPrice      float64   `json:"shadow_price"` // change of the aim per m³/d of the bound that holds the rate
+	ShadowPrice      float64   `json:"shadow_price"` // change of the aim per m³/d by which the bound that holds the rate is loosened
 	Present          *float64  `json:"present_m3_per_d"`
 	Recent           *float64  `json:"recent_m3_per_d"`
 	Licensed         *float64  `json:"licensed_m3_per_d"`
@@ -129,25 +129,25 @@ type LimitResult struct {
 	Sense       string   `json:"sense"`    // at_most, at_least
 	Limit       float64  `json:"limit"`
 	Entered     string   `json:"entered"`
-	Unit        string   `json:"unit"` // m, m3/d, 1
+	Unit        string   `json:"unit"` // m, m3/d, 1; 1 for a share of base
 	Baseline    string   `json:"baseline"`
 	Counts      string   `json:"counts"`
 	Reserve     float64  `json:"reserve_share"`
 	State       string   `json:"state"`
-	Value       float64  `json:"value"`          // of the limited quantity at the plan
-	Headroom    float64  `json:"headroom"`       // in the unit; negative: passed
-	RoomShare   *float64 `json:"headroom_share"` // of the limit's own size; null for a zero limit
-	Binds       bool     `json:"binds"`
-	Passed      bool     `json:"passed"`
+	Value       float64  `json:"value"`          // of the limited quantity at the plan: change less the baseline's, share, or value; a pumping level with its turbulent loss
+	Headroom    float64  `json:"headroom"`       // in the unit, to the limit as entered, without its reserve; negative: passed
+	RoomShare   *float64 `json:"headroom_share"` // of the limit's own size: |limit|, for a value |value without pumping - limit|; null for a zero limit
+	Binds       bool     `json:"binds"`          // the limit with its reserve is reached; with most-headroom also: it sets the smallest headroom
+	Passed      bool     `json:"passed"`         // the limit as entered
 	ShadowPrice float64  `json:"shadow_price"`   // change of the aim per unit by which the limit is loosened
-	ChangeRoom  float64  `json:"change_allowed"` // largest change (cumulative or own, as counted) that keeps the limit and its reserve
+	ChangeRoom  float64  `json:"change_allowed"` // largest change against no pumping (cumulative or own, as counted) that keeps the limit and its reserve; smallest where a fall is asked for
 	Source      string   `json:"source"`
 	Date        string   `json:"date"`
 	Sentence    string   `json:"sentence"` // 'Binds. W4 contributes 38 %. One more centimetre is worth 27 m³/d.'
 	ResultState string   `json:"assessed"` // 'yes', or why not
 }
 
-// Table is a matrix with named rows and columns.
+// Table is a matrix with named rows and columns. Rows are the receptors that have a response, in the order of the receptors.
 type Table struct {
 	Receptors []string    `json:"receptors"`
 	Units     []string    `json:"units"` // of each row
@@ -161,7 +161,7 @@ type QuotaResult struct {
 	Holder      string   `json:"holder"`
 	Wells       []string `json:"wells"`
 	Basis       string   `json:"basis"`          // per day, per year, per hour
-	Limit       float64  `json:"limit_m3_per_d"` // as a mean rate
+	Limit       float64  `json:"limit_m3_per_d"` // as a mean rate; per hour: as a running rate, as is the sum
 	Entered     float64  `json:"entered_m3"`     // per the basis
 	Sum         float64  `json:"sum_m3_per_d"`
 	Headroom    float64  `json:"headroom_m3_per_d"`

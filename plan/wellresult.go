@@ -3,8 +3,6 @@ package plan
 import (
 	"context"
 	"math"
-
-	"springbound/wells"
 )
 
 // rateTolerance is how near a rate must be to its bound to stand at it, as a share of the largest rate of the well; the programme
@@ -104,8 +102,7 @@ func (p *planner) atBound(i int, rate float64) string {
 	return ""
 }
 
-// checkLevels compares every running well's level, with its full loss, with the lowest one allowed. A plan that keeps the level
-// without the turbulent loss and not with it is not valid.
+// checkLevels compares every running well's level, with its full loss, with the lowest one allowed. A plan that fails is not valid.
 func (p *planner) checkLevels(results []WellResult) (passed []string) {
 	s := p.setup
 	for i, r := range results {
@@ -125,16 +122,4 @@ func (p *planner) checkLevels(results []WellResult) (passed []string) {
 		passed = append(passed, text)
 	}
 	return passed
-}
-
-// boreLoss is the turbulent loss that belongs to a receptor which is the level in a pumped well; zero for every other receptor.
-func (s *setup) boreLoss(r wells.Receptor, rates []float64, counted []bool) float64 {
-	if r.Kind != wells.PumpingLevel {
-		return 0
-	}
-	i, known := s.wellIndex[r.Feature]
-	if !known || !counted[i] {
-		return 0
-	}
-	return quadraticLoss(s.Wells[i], rates[i])
 }

@@ -1,0 +1,141 @@
+package plan
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"springbound/plan/convex"
+	"springbound/wells"
+)
+
+// conflictProgramme writes what must be kept as one row a member, so that each can be left out or relaxed by itself: ends of
+// ranges become rows, so do the signs of the rates, which always hold; and the cuts of a row that is not linear bound a column of their own that stands for the row's change, which
+// one row then limits.
+func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
+	s := p.setup
+	g, err := p.build(false)
+	if err != nil {
+		return nil, nil, err
+	}
+	var columns []convex.Column
+	for k := range s.decided {
+		columns = append(columns, convex.Column{Name: g.problem.Column(k).Name, Lower: math.Inf(-1), Upper: math.Inf(1)})
+	}
+	stands := map[owner]int{} // the column of a bound on a row that is not linear
+	for _, o := range g.owners {
+		if _, known := stands[o]; !known && o.kind == ofBound && !p.bounds[o.index].linear {
+			stands[o] = len(columns)
+			columns = append(columns, convex.Column{Name: "excess", Lower: math.Inf(-1), Upper: math.Inf(1)})
+		}
+	}
+	problem, err := convex.NewProblem(convex.Minimise, columns)
+	if err != nil {
+		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
+	}
+	var members []member
+	add := func(m *member, name string, lower, upper float64, set func(a []float64)) {
+		a := make([]float64, len(columns))
+		set(a)
+		row, problemErr := problem.AddRow(convex.Row{Name: name, Coefficients: a, Lower: lower, Upper: upper})
+		err = errors.Join(err, problemErr)
+		if m != nil {
+			m.row = row
+			members = append(members, *m)
+		}
+	}
+	memberAt := map[owner]int{}
+	for r, o := range g.owners {
+		row := g.problem.Row(r)
+		m := p.memberOf(o)
+		column, cut := stands[o]
+		if !cut {
+			add(&m, m.words, row.Lower, row.Upper, func(a []float64) { copy(a, row.Coefficients) })
+			continue
+		}
+		if _, known := memberAt[o]; !known {
+			memberAt[o] = len(members)
+			add(&m, m.words, math.Inf(-1), 0, func(a []float64) { a[column] = 1 })
+		}
+		add(nil, "cut of "+m.words, math.Inf(-1), row.Upper, func(a []float64) {
+			copy(a, row.Coefficients)
+			a[column] = -1
+		})
+		members[memberAt[o]].excess = column
+	}
+	for k, i := range s.decided {
+		lower, upper := 0.0, math.Inf(1)
+		if s.Wells[i].Min < 0 {
+			lower, upper = math.Inf(-1), 0
+		}
+		add(nil, "sign of "+s.Wells[i].ID, lower, upper, func(a []float64) { a[k] = 1 })
+		for _, m := range rangeEnds(s.Wells[i]) {
+			lower, upper := s.Wells[i].Min, math.Inf(1)
+			if m.upper {
+				lower, upper = math.Inf(-1), s.Wells[i].Max
+			}
+			add(&m.member, m.words, lower, upper, func(a []float64) { a[k] = 1 })
+		}
+	}
+	if err != nil {
+		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
+	}
+	return problem, members, nil
+}
+
+// rangeEnd is an end of a well's range that is not zero.
+type rangeEnd struct {
+	member
+	upper bool
+}
+
+func rangeEnds(w wells.Well) []rangeEnd {
+	var out []rangeEnd
+	for _, e := range []struct {
+		value             float64
+		upper             bool
+		pumping, recharge string
+		source            string
+	}{{w.Min, false, " at least ", " recharges at most ", w.Source}, {w.Max, true, " at most ", " recharges at least ", w.MaxSource}} {
+		if e.value == 0 {
+			continue
+		}
+		size := math.Abs(e.value)
+		words := w.ID + e.pumping + flowText(size)
+		if e.value < 0 {
+			words = w.ID + e.recharge + flowText(size)
+		}
+		out = append(out, rangeEnd{member{words: words, unit: "m3/d", size: size, effect: size, end: true, source: e.source}, e.upper})
+	}
+	return out
+}
+
+func (p *planner) memberOf(o owner) member {
+	s := p.setup
+	switch o.kind {
+	case ofQuota:
+		q := &s.quotas[o.index]
+		size := q.scale(s)
+		return member{words: s.quotaWords(q), unit: "m3/d", source: q.source, size: size, effect: size, hard: q.limit == 0}
+	case ofDemand:
+		d := *s.demand
+		return member{words: "required total " + flowText(d), unit: "m3/d", source: "brief", size: d, effect: d, hard: d == 0}
+	}
+	b := p.bounds[o.index]
+	row := p.oracle.known[0].row(b.target)
+	size := b.scale(s, row.Slope)
+	if !(size > 0) {
+		size = 1
+	}
+	m := member{words: s.boundWords(b), unit: row.Unit, size: size / b.unit, effect: size * (1 - b.reserve*b.grow), hard: b.size == 0, bound: b}
+	if b.limit < 0 {
+		m.unit, m.source = "m", s.Wells[b.target.well].Source
+		return m
+	}
+	l := s.Limits[b.limit]
+	m.receptor, m.source = l.Receptor, l.Source
+	if l.Quantity == wells.ShareOfBase {
+		m.unit, m.share = "1", true
+	}
+	return m
+}
