@@ -11,7 +11,7 @@ import (
 
 // Contour holds the lines of one level.
 type Contour struct {
-	Level float64 // in the unit of the values
+	Level float64 // in the unit of the values, of heads and drawdowns [m]
 	Lines []ContourLine
 }
 

@@ -191,7 +191,7 @@ func ParseEPSG(text string) (System, error) {
 // PointError says that a point cannot be projected.
 type PointError struct {
 	System System
-	X, Y   float64 // as given: degrees or metres
+	X, Y   float64 // as given; in degrees where the system is geographic [m]
 	Reason string
 }
 

@@ -2,6 +2,7 @@ package gisio
 
 import (
 	"fmt"
+	"math"
 	"slices"
 
 	"github.com/paulmach/orb"
@@ -125,4 +126,38 @@ func turned(ring orb.Ring, counterclockwise bool) orb.Ring {
 	out := slices.Clone(ring)
 	slices.Reverse(out)
 	return out
+}
+
+// ringArea gives the area of a closed ring, positive counterclockwise, summed about its first point.
+func ringArea(ring []orb.Point) float64 {
+	if len(ring) == 0 {
+		return 0
+	}
+	o := ring[0]
+	sum := 0.0
+	for i := 1; i < len(ring); i++ {
+		a, b := ring[i-1], ring[i]
+		sum += (a[0]-o[0])*(b[1]-o[1]) - (b[0]-o[0])*(a[1]-o[1])
+	}
+	return sum / 2
+}
+
+// onOneLine tells exactly whether all points of a ring lie on one line.
+func onOneLine(ring []orb.Point) bool {
+	if len(ring) < 3 {
+		return true
+	}
+	a, b := ring[0], ring[0]
+	furthest := 0.0
+	for _, p := range ring {
+		if d := math.Abs(p[0]-a[0]) + math.Abs(p[1]-a[1]); d > furthest {
+			b, furthest = p, d
+		}
+	}
+	for _, p := range ring {
+		if a != b && orientation(a, b, p) != 0 {
+			return false
+		}
+	}
+	return true
 }

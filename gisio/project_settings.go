@@ -103,7 +103,7 @@ func (b *builder) readQuota(i int, table map[string]any) plan.Quota {
 	rec := b.settings.record(&b.reader, &quotaSection, table, "[[brief.quota]]", nil, "brief", "quota", fmt.Sprint(i))
 	q := plan.Quota{Name: rec.text("name"), Wells: rec.ids("wells"), PerDay: rec.optional("per_day"), PerYear: rec.optional("per_year"), Source: rec.text("source")}
 	if !rec.has("per_day") && !rec.has("per_year") {
-		rec.fail(Finding{Property: "per_day, per_year", Found: "both missing", Allowed: "one of them or both"})
+		rec.fail(Finding{Property: "per_day, per_year", Found: "missing, both of them", Allowed: "one of them or both"})
 	}
 	return q
 }

@@ -45,7 +45,7 @@ func (b *builder) properties(rec *record) aquifer.Zone {
 	ratio, angle := rec.optional("anisotropy_ratio"), rec.optional("anisotropy_angle_deg")
 	switch {
 	case rec.has("anisotropy_ratio") != rec.has("anisotropy_angle_deg"):
-		rec.fail(Finding{Property: "anisotropy_ratio, anisotropy_angle_deg", Found: "one without the other", Allowed: "both or neither"})
+		rec.fail(Finding{Property: "anisotropy_ratio, anisotropy_angle_deg", Found: "given one without the other", Allowed: "both or neither"})
 	case ratio != nil && angle != nil:
 		z.Anisotropy = &aquifer.Anisotropy{Ratio: *ratio, AngleDeg: *angle}
 	}
@@ -68,7 +68,7 @@ func (rec *record) direct(name, first, second string, combine func(a, b float64)
 		return nil
 	}
 	if !rec.has(first) || !rec.has(second) {
-		rec.fail(Finding{Property: first + ", " + second, Found: "one without the other", Allowed: "both, or " + name})
+		rec.fail(Finding{Property: first + ", " + second, Found: "given one without the other", Allowed: "both, or " + name})
 		return nil
 	}
 	a, b := rec.parameter(first), rec.parameter(second)
@@ -126,7 +126,7 @@ func (b *builder) doubleCounting(rec *record, z aquifer.Zone, background bool) {
 		}
 	}
 	if own && recharge != nil && recharge.Best != 0 && leakage != nil {
-		rec.warn(Finding{Property: "recharge", Found: "recharge and leakage at one place", Hint: "water that comes through the confining layer may be counted twice"})
+		rec.warn(Finding{Found: "recharge and leakage at one place", Hint: "water that comes through the confining layer may be counted twice"})
 	}
 }
 
@@ -157,7 +157,7 @@ func (b *builder) buildEdges() {
 		hasLevel := p.has("level") || p.has("levels")
 		if kind == int(aquifer.PrescribedFlux) {
 			if hasLevel {
-				p.fail(Finding{Property: "level", Found: "a level on an edge whose flux is prescribed", Allowed: "flux alone"})
+				p.fail(Finding{Property: "level", Found: "stated on an edge whose flux is prescribed", Allowed: "flux alone"})
 			}
 			if !p.has("flux") {
 				p.missing("flux", "an edge of this kind needs it")
@@ -168,7 +168,7 @@ func (b *builder) buildEdges() {
 				p.missing("level", "or levels, one a vertex")
 			}
 			if p.has("flux") {
-				p.fail(Finding{Property: "flux", Found: "a flux on an edge of kind " + e.Kind.String(), Allowed: "only for prescribed_flux"})
+				p.fail(Finding{Property: "flux", Found: "stated on an edge of kind " + e.Kind.String(), Allowed: "only for prescribed_flux"})
 			}
 			if known || !p.has("levels") {
 				e.Levels = p.levelOrLevels("level", "levels", len(path))
@@ -182,7 +182,7 @@ func (b *builder) buildEdges() {
 				e.Conductance = *c
 			}
 		} else if kind >= 0 && p.has("conductance") {
-			p.fail(Finding{Property: "conductance", Found: "a conductance on an edge of kind " + e.Kind.String(), Allowed: "only for head_dependent"})
+			p.fail(Finding{Property: "conductance", Found: "stated on an edge of kind " + e.Kind.String(), Allowed: "only for head_dependent"})
 		}
 		if e.Saline && kind > int(aquifer.PrescribedHead) {
 			p.fail(Finding{Property: "saline", Found: "true on an edge of kind " + e.Kind.String(), Allowed: "only for prescribed_head"})
@@ -211,7 +211,7 @@ func (b *builder) alongOutline(p placed, path orb.LineString) {
 		}
 	}
 	if !(best <= b.tolerance) {
-		p.fail(Finding{Property: "geometry", Found: fmt.Sprintf("a line up to %s m off the outline", roundMetres(best)), Allowed: fmt.Sprintf("within %s m of one ring of the extent", roundMetres(b.tolerance)),
+		p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("a line up to %s m off the outline", roundMetres(best)), Allowed: fmt.Sprintf("within %s m of one ring of the extent", roundMetres(b.tolerance)),
 			Hint: "take its points from the extent's"})
 	}
 }
@@ -230,7 +230,7 @@ func (b *builder) buildZones() {
 		case orb.MultiPolygon:
 			z.Area = g
 		default:
-			p.fail(Finding{Property: "geometry", Found: "a " + g.GeoJSONType(), Allowed: "a polygon, or several"})
+			p.fail(Finding{Property: p.spot(), Found: "a " + g.GeoJSONType(), Allowed: "a polygon, or several"})
 		}
 		if z.LeakageResistance != nil && z.SourceHead == nil && !p.has("source_head") && b.p.Site.Background.SourceHead == nil {
 			p.missing("source_head", "leakage needs the level that it comes from")
@@ -323,9 +323,9 @@ func (b *builder) buildSprings() {
 			s.OutletLevel = *v
 		}
 		if p.has("conductance") == p.has("measured_flow") {
-			found := "both stated"
+			found := "stated, both of them"
 			if !p.has("conductance") {
-				found = "both missing"
+				found = "missing, both of them"
 			}
 			p.fail(Finding{Property: "conductance, measured_flow", Found: found, Allowed: "one of the two"})
 		}
@@ -334,7 +334,7 @@ func (b *builder) buildSprings() {
 		s.EffectiveRadius = p.numberOr("effective_radius", 0)
 		s.Source = p.text("source")
 		if known && !b.inside(at) {
-			p.fail(Finding{Property: "geometry", Found: "a spring outside the extent", Hint: b.outsideHint(at)})
+			p.fail(Finding{Property: p.spot(), Found: "a spring outside the extent", Hint: b.outsideHint(at)})
 		}
 		b.p.Site.Springs = append(b.p.Site.Springs, s)
 		b.keepPlace(len(b.p.Site.Springs)-1, "spring", p)

@@ -88,7 +88,7 @@ func (b *builder) checkZoneOverlaps() {
 	zones := b.p.Site.Zones
 	for i, z := range zones {
 		if b.extentKnown && len(z.Area) > 0 && !touches(z.Area, b.p.Site.Extent, b.tolerance) {
-			b.recordOf("zone", i).warn(Finding{Property: "geometry", Found: "a zone outside the extent", Hint: "it has no effect"})
+			b.recordOf("zone", i).warn(Finding{Found: "a zone outside the extent", Hint: "it has no effect"})
 		}
 		for _, o := range zones[:i] {
 			changed := changes(z, o)
@@ -276,7 +276,7 @@ func (b *builder) checkLinearLoss() {
 			continue
 		}
 		own := math.Log(stepTestRadius/w.Radius) / (2 * math.Pi * t.Best)
-		if w.LinearLoss >= own {
+		if own > 0 && w.LinearLoss >= own {
 			p.warn(Finding{Property: "linear_loss", Found: Inside(LinearLoss).show(w.LinearLoss), Allowed: fmt.Sprintf("usually well below %.2g d/m2, the aquifer's own drawdown to %v m", own, stepTestRadius),
 				Hint: "is it the whole linear term of a step test? The model adds the aquifer's part itself"})
 		}

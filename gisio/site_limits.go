@@ -135,6 +135,9 @@ func (b *builder) limitValue(p placed, l *wells.Limit, receptor wells.Kind) {
 	if e == nil {
 		return
 	}
+	if _, reported := e.value.(known); reported {
+		return
+	}
 	kind := limitKind(l.Quantity, receptor)
 	if text := p.text("unit"); text != "" {
 		u, err := FindUnit(text, kind)
@@ -202,7 +205,7 @@ func (b *builder) buildLicences() {
 			PerYear: p.optional("per_year"), StartDay: p.text("start_day"), Source: p.text("source")}
 		unique(p, ids, l.ID)
 		if !p.has("per_hour") && !p.has("per_day") && !p.has("per_year") {
-			p.fail(Finding{Property: "per_hour, per_day, per_year", Found: "all missing", Allowed: "at least one"})
+			p.fail(Finding{Property: "per_hour, per_day, per_year", Found: "missing, all of them", Allowed: "at least one"})
 		}
 		if l.StartDay != "" {
 			if _, err := time.Parse("2006-01-02", "2024-"+l.StartDay); err != nil {

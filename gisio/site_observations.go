@@ -37,11 +37,11 @@ func (b *builder) buildObservations() {
 			}
 			at, known := geometryOf[orb.Point](p, "one point")
 			if p.fromTable && !p.has("longitude") && !p.has("easting") {
-				p.fail(Finding{Property: "geometry", Found: "missing", Allowed: "a point", Hint: "give longitude and latitude, or easting and northing"})
+				p.fail(Finding{Property: p.spot(), Found: "missing", Allowed: "a point", Hint: "give longitude and latitude, or easting and northing"})
 			}
 			o.At = at
 			if known && !b.inside(at) {
-				p.warn(Finding{Property: "geometry", Found: "an observation outside the extent", Hint: "it is left out; " + b.outsideHint(at)})
+				p.warn(Finding{Property: p.spot(), Found: "an observation outside the extent", Hint: "it is left out; " + b.outsideHint(at)})
 				continue
 			}
 		case wells.SpringFlow:

@@ -118,6 +118,14 @@ type placed struct {
 	fromTable bool
 }
 
+// spot names where a record's place is written.
+func (p placed) spot() string {
+	if p.fromTable {
+		return "place"
+	}
+	return "geometry"
+}
+
 // placedRecords makes a record of every feature of a layer; more adds what a table says of the same id. Keys that are not known are
 // listed in one warning.
 func (b *builder) placedRecords(section *Section, more func(id string) []written) []placed {
@@ -213,7 +221,7 @@ func (b *builder) tablePlace(rec *record, table *tableData) (orb.Point, bool) {
 		first, second := rec.has(pair[0]), rec.has(pair[1])
 		switch {
 		case first != second:
-			rec.fail(Finding{Property: pair[0] + ", " + pair[1], Found: "one without the other", Allowed: "both or neither"})
+			rec.fail(Finding{Property: pair[0] + ", " + pair[1], Found: "given one without the other", Allowed: "both or neither"})
 			return orb.Point{}, false
 		case first && chosen >= 0:
 			rec.fail(Finding{Property: pair[0], Found: "stated beside longitude and latitude", Allowed: "one of the two pairs"})
@@ -251,7 +259,11 @@ func (b *builder) tablePlace(rec *record, table *tableData) (orb.Point, bool) {
 	}
 	g, err := Transform(system, b.p.Plane, orb.Point{x, y})
 	if err != nil {
-		rec.fail(Finding{Property: strings.Join(pairs[chosen][:], ", "), Found: err.Error()})
+		hint := ""
+		if g, err := Transform(system, b.p.Plane, orb.Point{y, x}); err == nil && b.extentKnown && b.inside(g.(orb.Point)) {
+			hint = exchangedHint
+		}
+		rec.fail(Finding{Property: strings.Join(pairs[chosen][:], ", "), Found: "a " + err.Error(), Hint: hint})
 		return orb.Point{}, false
 	}
 	return g.(orb.Point), true
@@ -295,7 +307,7 @@ func geometryOf[G orb.Geometry](p placed, wanted string) (G, bool) {
 	}
 	g, ok := single(p.geometry).(G)
 	if !ok {
-		p.fail(Finding{Property: "geometry", Found: "a " + p.geometry.GeoJSONType(), Allowed: wanted})
+		p.fail(Finding{Property: p.spot(), Found: "a " + p.geometry.GeoJSONType(), Allowed: wanted})
 		return zero, false
 	}
 	return g, true
@@ -329,18 +341,25 @@ func (b *builder) inside(at orb.Point) bool {
 	return !b.extentKnown || polygonContains(b.p.Site.Extent, at)
 }
 
+const exchangedHint = "longitude and latitude look exchanged"
+
 // outsideHint says why a place may be outside: exchanged coordinates.
 func (b *builder) outsideHint(at orb.Point) string {
 	if lon, lat, err := b.p.Plane.Inverse(at[0], at[1]); err == nil && math.Abs(lon) <= 90 {
 		if x, y, err := b.p.Plane.Forward(lat, lon); err == nil && b.inside(orb.Point{x, y}) {
-			return "longitude and latitude look exchanged"
+			return exchangedHint
 		}
 	}
 	return fmt.Sprintf("it is %s m from the outline", roundMetres(distanceToPolygon(b.p.Site.Extent, at)))
 }
 
 // roundMetres writes a distance for messages.
-func roundMetres(d float64) string { return fmt.Sprintf("%.4g", d) }
+func roundMetres(d float64) string {
+	if math.Abs(d) >= 1000 {
+		return fmt.Sprintf("%.0f", d)
+	}
+	return fmt.Sprintf("%.4g", d)
+}
 
 // keepInside reports a shape that leaves the extent by more than the outline's tolerance.
 func (b *builder) keepInside(p placed, points []orb.Point) bool {
@@ -356,7 +375,7 @@ func (b *builder) keepInside(p placed, points []orb.Point) bool {
 	if worst <= b.tolerance {
 		return true
 	}
-	p.fail(Finding{Property: "geometry", Found: fmt.Sprintf("a part up to %s m outside the extent", roundMetres(worst)), Allowed: "inside the extent", Hint: "cut it at the outline"})
+	p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("a part up to %s m outside the extent", roundMetres(worst)), Allowed: "inside the extent", Hint: "cut it at the outline"})
 	return false
 }
 

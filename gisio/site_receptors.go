@@ -104,6 +104,13 @@ func (b *builder) mustName(p placed, name, what string, names []string) {
 // listSome lists names, a dozen at most.
 func listSome(names []string) string {
 	const shown = 12 // more would hide the message
+	var named []string
+	for _, n := range names {
+		if n != "" && !contains(named, n) {
+			named = append(named, n)
+		}
+	}
+	names = named
 	if len(names) > shown {
 		return orList(append(names[:shown:shown], fmt.Sprintf("one of %d more", len(names)-shown)))
 	}
@@ -120,7 +127,7 @@ func (b *builder) noFeature(p placed, r *wells.Receptor) {
 // outside marks a receptor that lies outside the extent.
 func (b *builder) outside(p placed, r *wells.Receptor, at orb.Point) {
 	r.Outside = true
-	p.warn(Finding{Property: "geometry", Found: "a receptor outside the extent", Hint: "listed as outside and not assessed; " + b.outsideHint(at)})
+	p.warn(Finding{Property: p.spot(), Found: "a receptor outside the extent", Hint: "listed as outside and not assessed; " + b.outsideHint(at)})
 }
 
 // pointReceptor takes one point and asks for a node there.
@@ -141,7 +148,7 @@ func (b *builder) pointReceptor(p placed, r *wells.Receptor) {
 // needPlace reports a receptor of a table without a place, where its kind needs one.
 func (b *builder) needPlace(p placed, what string) {
 	if p.fromTable && !p.has("longitude") && !p.has("easting") {
-		p.fail(Finding{Property: "geometry", Found: "missing", Allowed: what, Hint: "give longitude and latitude of a point; draw anything else in the layer"})
+		p.fail(Finding{Property: p.spot(), Found: "missing", Allowed: what, Hint: "give longitude and latitude of a point; draw anything else in the layer"})
 	}
 }
 
@@ -169,7 +176,7 @@ func (b *builder) areaReceptor(p placed, r *wells.Receptor) {
 	case out > 0 && ins == 0:
 		b.outside(p, r, worst)
 	case out > 0:
-		p.fail(Finding{Property: "geometry", Found: "a polygon partly outside the extent", Allowed: "inside, or wholly outside", Hint: "cut it at the outline"})
+		p.fail(Finding{Property: p.spot(), Found: "a polygon partly outside the extent", Allowed: "inside, or wholly outside", Hint: "cut it at the outline"})
 	default:
 		b.p.Site.Outlines = append(b.p.Site.Outlines, aquifer.AreaRequest{Name: "receptor " + r.ID, Area: area})
 	}
@@ -183,7 +190,7 @@ func (b *builder) frontReceptor(p placed, r *wells.Receptor) {
 		return
 	}
 	if len(line) != 2 {
-		p.fail(Finding{Property: "geometry", Found: fmt.Sprintf("a line of %d points", len(line)), Allowed: "two, from inland towards the salt water"})
+		p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("a line of %d points", len(line)), Allowed: "two, from inland towards the salt water"})
 		return
 	}
 	r.At, r.To = line[0], line[1]
@@ -195,7 +202,7 @@ func (b *builder) frontReceptor(p placed, r *wells.Receptor) {
 	}
 	for _, e := range b.p.Site.Edges {
 		if e.Saline && len(e.Path) > 1 && distanceToLine(e.Path, r.At) < distanceToLine(e.Path, r.To) {
-			p.warn(Finding{Property: "geometry", Found: "a line whose first point is nearer to the saline edge " + quoted(e.Name), Allowed: "from inland towards the salt water", Hint: "is it drawn the wrong way round?"})
+			p.warn(Finding{Property: p.spot(), Found: "a line whose first point is nearer to the saline edge " + quoted(e.Name), Allowed: "from inland towards the salt water", Hint: "is it drawn the wrong way round?"})
 		}
 	}
 	b.node("receptor "+r.ID, r.At, 0, false)
@@ -222,7 +229,7 @@ func (b *builder) reachReceptor(p placed, r *wells.Receptor) {
 			worst = max(worst, distanceToLine(river.Path, at))
 		}
 		if !(worst <= b.tolerance) {
-			p.fail(Finding{Property: "geometry", Found: fmt.Sprintf("a line up to %s m off the river", roundMetres(worst)), Allowed: fmt.Sprintf("within %s m of it", roundMetres(b.tolerance)), Hint: "take its points from the river's"})
+			p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("a line up to %s m off the river", roundMetres(worst)), Allowed: fmt.Sprintf("within %s m of it", roundMetres(b.tolerance)), Hint: "take its points from the river's"})
 		}
 	}
 }

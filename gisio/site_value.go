@@ -13,6 +13,9 @@ var missingMarks = []float64{-99, -999, -9999, -99999, -999999, -32768, 1e30, -1
 
 // convert turns an entry's value into the inside unit of a kind; false after an error was noted.
 func (rec *record) convert(e *entry, kind Kind) (float64, bool) {
+	if _, reported := e.value.(known); reported {
+		return 0, false
+	}
 	v, _, err := e.quantity(e.value, kind)
 	if err == nil {
 		return v, true
@@ -133,7 +136,7 @@ func (rec *record) checkBound(e *entry, v float64) bool {
 // withInside shows a value as written, and in the inside unit where that is something else.
 func withInside(value any, in Unit, v float64) string {
 	shown, inside := valueText(value), in.show(v)
-	if shown == inside || shown == quoted(inside) || in.Name == "" {
+	if shown == inside || shown == quoted(inside) || shown == strings.TrimSuffix(inside, " "+in.Name) || in.Name == "" {
 		return shown
 	}
 	return shown + " (" + inside + ")"

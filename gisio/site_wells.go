@@ -165,11 +165,11 @@ func (b *builder) buildWells() {
 		if known {
 			w.At = at
 			if !b.inside(at) {
-				p.fail(Finding{Property: "geometry", Found: "a well outside the extent", Hint: b.outsideHint(at)})
+				p.fail(Finding{Property: p.spot(), Found: "a well outside the extent", Hint: b.outsideHint(at)})
 			}
 			for i, other := range b.p.Wells {
 				if b.recordOf("well", i).geometry != nil && !(math.Hypot(at[0]-other.At[0], at[1]-other.At[1]) > w.Radius+other.Radius) {
-					p.fail(Finding{Property: "geometry", Found: "the place of well " + other.ID, Allowed: "wells that stand apart"})
+					p.fail(Finding{Property: p.spot(), Found: "the place of well " + other.ID, Allowed: "wells that stand apart"})
 				}
 			}
 		}
@@ -234,7 +234,7 @@ func (b *builder) wellRates(p placed, w *wells.Well) {
 			w.FixedRate = *w.Licensed
 			p.assumeDefault("fixed_rate", Inside(Rate).show(w.FixedRate), "not stated: the licensed rate")
 		case w.Others:
-			p.fail(Finding{Property: "fixed_rate, licensed", Found: "both missing", Allowed: "one of them", Hint: "the rate of an existing user must be known"})
+			p.fail(Finding{Property: "fixed_rate, licensed", Found: "missing, both of them", Allowed: "one of them", Hint: "the rate of an existing user must be known"})
 		default:
 			p.missing("fixed_rate", "the rate of a fixed well must be known")
 		}

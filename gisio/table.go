@@ -92,7 +92,7 @@ func readCSV(file string, data []byte, opt TableOptions) (Grid, Findings) {
 		if err != nil {
 			var pe *csv.ParseError
 			if errors.As(err, &pe) {
-				return fail(Finding{Line: pe.Line, Column: pe.Column, Found: "a quote that does not open or close as it should", Allowed: `a field in quotes, with "" for a quote inside it`})
+				return fail(Finding{Line: pe.StartLine, Found: "a row with a quote that does not open or close as it should", Allowed: `a field in quotes, with "" for a quote inside it`})
 			}
 			return fail(Finding{Found: err.Error()})
 		}

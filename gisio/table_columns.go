@@ -19,6 +19,12 @@ type column struct {
 	header string
 	res    *resolved // nil: not known
 	unit   *Unit
+	wrong  bool // its unit is wrong or missing, which is reported: its numbers are not looked at
+}
+
+// numeric tells whether the column holds numbers.
+func (c column) numeric() bool {
+	return c.res != nil && c.res.field.Class.numeric() && c.res.role != basisRole && c.res.role != sourceRole
 }
 
 // tableRow is one row ready to become a record.
@@ -48,6 +54,7 @@ func (rd *reader) rows(g Grid, section *Section, maps []columnMap, mapFile strin
 		body = body[1:]
 	}
 	decimal := rd.settleDecimal(g, body, columns, at)
+	rd.bareColumns(body, columns, at)
 	var out []tableRow
 	for _, r := range body {
 		row := tableRow{at: at}
@@ -57,12 +64,17 @@ func (rd *reader) rows(g Grid, section *Section, maps []columnMap, mapFile strin
 				continue
 			}
 			w := written{key: c.header, as: c.res, unit: c.unit}
-			value, err := cellValue(r.cell(i), c.res.field, decimal)
+			if c.wrong {
+				w.value = unreadable(r.cell(i))
+				row.list = append(row.list, w)
+				continue
+			}
+			value, err := cellValue(r.cell(i), c, decimal)
 			if err != nil {
 				f := row.at
 				f.Property, f.Found, f.Allowed, f.Hint = c.header, err.Found, err.Allowed, err.Hint
 				rd.fail(f)
-				value = nil
+				value = unreadable(r.cell(i))
 			}
 			w.value = value
 			row.list = append(row.list, w)
@@ -83,7 +95,7 @@ func (rd *reader) rows(g Grid, section *Section, maps []columnMap, mapFile strin
 
 // findHeader returns the index of the row, among the first, that names the most known fields; -1 where none does.
 func findHeader(g Grid, section *Section, maps []columnMap) int {
-	best, most := -1, 0
+	best, most := -1, 1 // one known word may be a cell of the body
 	for i, r := range g.Rows {
 		if i == headerRows {
 			break
@@ -185,7 +197,7 @@ func (rd *reader) columns(head Row, section *Section, maps []columnMap, at Findi
 		case res != nil:
 			col.res = res
 			col.unit = res.unit
-			if unitText != "" && res.field.Class.numeric() {
+			if unitText != "" && col.numeric() {
 				rd.columnUnit(&col, unitText, at)
 			}
 			for _, other := range columns {
@@ -230,6 +242,7 @@ func (rd *reader) columnUnit(col *column, text string, at Finding) bool {
 		var q *QuantityError
 		errors.As(err, &q)
 		rd.fail(place(at, Finding{Property: col.header, Found: q.Found, Allowed: q.Allowed, Hint: q.Hint}))
+		col.wrong = true
 		return false
 	}
 	if col.unit != nil && col.unit.Name != u.Name {
@@ -240,12 +253,12 @@ func (rd *reader) columnUnit(col *column, text string, at Finding) bool {
 	return true
 }
 
-// unitRow tells whether a row below the headers holds units, and gives them to the columns: no cell starts with a number, and
-// every cell of a numeric column with a kind is blank or in brackets or a unit.
+// unitRow tells whether a row below the headers holds units, and gives them to the columns: no cell of a numeric column starts with a
+// number, and most that are not blank are units; the others are then reported.
 func (rd *reader) unitRow(r Row, columns []column, at Finding) bool {
 	at.Feature = fmt.Sprintf("row %d", r.Number)
 	texts := make([]string, len(columns))
-	found := false
+	good, bad := 0, 0
 	for i, c := range r.Cells {
 		t := c.Text
 		bracketed := len(t) > 1 && (t[0] == '[' && t[len(t)-1] == ']' || t[0] == '(' && t[len(t)-1] == ')')
@@ -256,24 +269,26 @@ func (rd *reader) unitRow(r Row, columns []column, at Finding) bool {
 			continue
 		}
 		f := columns[i].res.field
-		if !f.Class.numeric() {
+		if !columns[i].numeric() {
 			if !bracketed && t != "-" && f.Class == Identity {
 				return false
 			}
 			continue
 		}
-		if f.Kind == Plain {
-			if n, _ := splitQuantity(t); n != "" {
-				return false
-			}
-			continue
-		}
-		if _, err := FindUnit(t, f.Kind); err != nil && !bracketed && !anyUnit(t) {
+		if n, _ := splitQuantity(t); n != "" && t != perThousand {
 			return false
 		}
-		texts[i], found = t, true
+		if f.Kind == Plain {
+			continue
+		}
+		if _, err := FindUnit(t, f.Kind); err == nil || bracketed || anyUnit(t) {
+			good++
+		} else {
+			bad++
+		}
+		texts[i] = t
 	}
-	if !found {
+	if good <= bad {
 		return false
 	}
 	for i, t := range texts {
@@ -282,6 +297,30 @@ func (rd *reader) unitRow(r Row, columns []column, at Finding) bool {
 		}
 	}
 	return true
+}
+
+// bareColumns reports each column whose unit could be doubted once, with its first bare number, and not again for every row.
+func (rd *reader) bareColumns(body []Row, columns []column, at Finding) {
+	for i := range columns {
+		c := &columns[i]
+		if !c.numeric() || c.unit != nil || c.wrong {
+			continue
+		}
+		f := c.res.field
+		if f.Kind == Plain || f.Kind == LimitValue {
+			continue
+		}
+		for _, r := range body {
+			text := r.cell(i).Text
+			if number, unit := splitQuantity(text); number == "" || unit != "" {
+				continue
+			}
+			rd.fail(place(at, Finding{Feature: fmt.Sprintf("row %d", r.Number), Property: c.header, Found: quoted(text) + ", a number without a unit",
+				Allowed: f.keysOf() + " as header", Hint: "or a unit in brackets behind the header, in a row below the headers, or behind each number"}))
+			c.wrong = true
+			break
+		}
+	}
 }
 
 // anyUnit tells whether a text is a unit of any kind, or a doubtful one.
@@ -305,7 +344,7 @@ func (rd *reader) settleDecimal(g Grid, body []Row, columns []column, at Finding
 	var first [3]string
 	for _, r := range body {
 		for i, c := range columns {
-			if c.res == nil || !(c.res.field.Class.numeric() || c.res.field.Class == Whole) {
+			if !c.numeric() && (c.res == nil || c.res.field.Class != Whole) {
 				continue
 			}
 			number, _ := splitQuantity(r.cell(i).Text)
@@ -323,12 +362,23 @@ func (rd *reader) settleDecimal(g Grid, body []Row, columns []column, at Finding
 	return "."
 }
 
-// cellValue turns a cell into a value for its field.
-func cellValue(c Cell, f *Field, decimal string) (any, *QuantityError) {
+// known marks a value that is there but cannot be read, which is reported already.
+type known struct{}
+
+// unreadable is the value of a cell that is reported already: there, so that nobody misses it, but without a number.
+func unreadable(c Cell) any {
+	if c.Text == "" {
+		return nil
+	}
+	return known{}
+}
+
+// cellValue turns a cell into a value for its column.
+func cellValue(c Cell, col column, decimal string) (any, *QuantityError) {
 	if c.Text == "" {
 		return nil, nil
 	}
-	if !f.Class.numeric() && f.Class != Whole {
+	if !col.numeric() && col.res.field.Class != Whole {
 		return c.Text, nil
 	}
 	if c.Numeric {

@@ -170,6 +170,9 @@ type QuantityError struct {
 // Error puts the parts into one sentence.
 func (e *QuantityError) Error() string {
 	s := "found " + e.Found
+	if strings.HasPrefix(e.Found, "in the ") {
+		s = "found a value " + e.Found
+	}
 	if e.Allowed != "" {
 		s += "; allowed: " + e.Allowed
 	}

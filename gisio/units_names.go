@@ -58,16 +58,26 @@ func FindUnit(text string, kind Kind) (Unit, error) {
 		}
 	}
 	if hint, ok := doubtfulUnits[name]; ok {
-		return Unit{}, &QuantityError{"the unit " + quoted(text) + ", which can mean more than one", quantityAllowed(kind), "write " + hint}
+		return Unit{}, &QuantityError{"in the unit " + quoted(text) + ", which can mean more than one", quantityAllowed(kind), "write " + hint}
 	}
-	for k := Rate; k < kindCount; k++ {
+	if kinds := kindsOf(name); len(kinds) > 0 {
+		return Unit{}, &QuantityError{"in the unit " + quoted(text) + ", which is for " + orList(kinds), quantityAllowed(kind), ""}
+	}
+	return Unit{}, &QuantityError{"in the unknown unit " + quoted(text), quantityAllowed(kind), nearestHint(text, unitNameList(kind))}
+}
+
+// kindsOf lists the kinds that have a unit of that name or word.
+func kindsOf(name string) []string {
+	var kinds []string
+	for k := Rate; k < LimitValue; k++ {
 		for _, u := range unitTable[k] {
 			if u.Name == name || u.Word == name {
-				return Unit{}, &QuantityError{"the unit " + quoted(text) + ", which is for " + k.String(), quantityAllowed(kind), ""}
+				kinds = append(kinds, k.String())
+				break
 			}
 		}
 	}
-	return Unit{}, &QuantityError{"the unknown unit " + quoted(text), quantityAllowed(kind), nearestHint(text, unitNameList(kind))}
+	return kinds
 }
 
 // unitNameList lists the names of the kind's units.

@@ -111,9 +111,9 @@ func TestQuantityMessages(t *testing.T) {
 		want string
 	}{
 		{"18", Rate, `found "18", without a unit; allowed: a rate in m3/d, m3/h, m3/yr, L/s, L/min, L/h, ML/d, ML/yr, kL/d, kL/yr, Mm3/yr, gpm_us, gpm_imp, mgd_us, ft3/s or acre_ft/yr`},
-		{"18 m", Transmissivity, `found the unit "m", which is for a length; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft`},
-		{"18 m2/dy", Transmissivity, `found the unknown unit "m2/dy"; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft; did you mean m2/d?`},
-		{"18 gpd/ft", Transmissivity, `found the unit "gpd/ft", which can mean more than one; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft; write gpd_us/ft`},
+		{"18 m", Transmissivity, `found a value in the unit "m", which is for a length; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft`},
+		{"18 m2/dy", Transmissivity, `found a value in the unknown unit "m2/dy"; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft; did you mean m2/d?`},
+		{"18 gpd/ft", Transmissivity, `found a value in the unit "gpd/ft", which can mean more than one; allowed: a transmissivity in m2/d, m2/s, ft2/d or gpd_us/ft; write gpd_us/ft`},
 		{"1,200 m", Length, `found "1,200"; allowed: a number with a decimal point and no thousands separator; a comma may mean either`},
 		{"much", Length, `found "much"; allowed: a length in m, cm, mm, ft or in; start with the number`},
 		{"nan m", Length, `found "nan m"; allowed: a length in m, cm, mm, ft or in; start with the number`},

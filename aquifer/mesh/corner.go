@@ -20,6 +20,7 @@ func (c *carved) markSharp() {
 	}
 	if c.metrics != nil {
 		c.scaleShells(wedges)
+		c.markMixed()
 	}
 }
 
@@ -101,5 +102,22 @@ func (c *carved) setSharp(s, a int32) {
 		c.bases[s].sharpP = true
 	} else {
 		c.bases[s].sharpQ = true
+	}
+}
+
+// markMixed finds the segments that end where regions of different metrics meet.
+func (c *carved) markMixed() {
+	first := make([]int32, len(c.p)) // region first seen at a vertex, plus one
+	mixed := make([]bool, len(c.p))
+	for t := range c.t {
+		for _, v := range c.t[t].v {
+			if first[v] == 0 {
+				first[v] = c.t[t].region + 1
+			}
+			mixed[v] = mixed[v] || c.metrics[first[v]-1] != c.metrics[c.t[t].region]
+		}
+	}
+	for i := range c.bases {
+		c.bases[i].mixed = mixed[c.bases[i].p] || mixed[c.bases[i].q]
 	}
 }

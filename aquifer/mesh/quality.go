@@ -64,10 +64,20 @@ func (m *Mesh) measure(r *refiner, o Options) {
 }
 
 // atSharp says whether a triangle lies at a sharp corner of the input: a corner of it is that vertex, or two of its corners lie
-// on the two segments.
+// on the two segments. A very short edge on a segment that ends where regions of different metrics meet counts too.
 func (r *refiner) atSharp(t int32) bool {
 	v := r.t[t].v
+	s := r.shapeOf(t)
+	h := (r.p[v[0]].h + r.p[v[1]].h + r.p[v[2]].h) / 3
+	hopeless := s.l2[s.shortest()] < hopelessShare*hopelessShare*h*h
 	for k := range 3 {
+		if hopeless {
+			for _, b := range r.segmentsAt(v[k]) {
+				if r.bases[b].mixed {
+					return true
+				}
+			}
+		}
 		if r.acrossCorner(v[next3[k]], v[prev3[k]]) {
 			return true
 		}

@@ -26,9 +26,9 @@ const (
 	rightAngleSlack = 1e-9
 	// shellTolerance: two vertices are on one shell about a corner when their distances agree to this share.
 	shellTolerance = 1e-3
-	// hopelessShare: below this share of the wanted length a short edge comes from the input's own sharpness; its triangles
-	// are left, which bounds the work.
-	hopelessShare = 1.0 / 1024
+	// hopelessShare: below this share of the wanted length a short edge comes from the input's own sharpness, or from a corner
+	// at which regions of different metrics ask for pieces of different length for ever; its triangles are left.
+	hopelessShare = 1.0 / 16
 	// gapLengths: pieces of a segment are at most so many widths of the gap beside it before sizes are taken from them.
 	gapLengths = 4
 	// gapMargin: the apex may stand so far beyond the edge's end, in edge lengths; pieces on both sides of a gap often end

@@ -14,13 +14,34 @@ type Factor struct {
 	panels   []float64 // L, supernode by supernode
 	values   []float64 // the matrix, kept for refinement only
 	valid    bool
+	smallest pivotShare
 }
+
+// pivotShare is a pivot as a share of the diagonal entry that it started from.
+type pivotShare struct {
+	position int32
+	share    float64
+}
+
+// SmallestPivot returns the row whose pivot is the smallest share of its diagonal entry, and that share [-]. A share near
+// n units of rounding says that the matrix is singular to working precision, as where nothing fixes the level of a part.
+// The row is -1 where the matrix has none.
+func (f *Factor) SmallestPivot() (row int, share float64) {
+	f.mustBeValid()
+	if f.smallest.position < 0 {
+		return -1, 1
+	}
+	return int(f.symbolic.order[f.smallest.position]), f.smallest.share
+}
+
+// kernelReach is the number of entries beyond the last panel that a kernel may read.
+const kernelReach = 3
 
 // Factor computes L for the given values, one for each entry of the pattern. It fails with [NotPositiveDefinite] where
 // a pivot is not positive (within rounding of the diagonal entry that it came from) or a value is not finite, and with
 // [Interrupted] when ctx ends. Of several bad rows the one eliminated first is named.
 func (s *Symbolic) Factor(ctx context.Context, values []float64) (*Factor, error) {
-	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1])}
+	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1]+kernelReach)}
 	if err := f.Refactor(ctx, values); err != nil {
 		return nil, err
 	}
@@ -41,6 +62,12 @@ func (f *Factor) Refactor(ctx context.Context, values []float64) error {
 	r := &numeric{symbolic: s, panels: f.panels, values: values, ctx: ctx, updates: make([][]float64, len(s.plan.first))}
 	if err := r.run(); err != nil {
 		return err
+	}
+	f.smallest = pivotShare{-1, 1}
+	for _, p := range r.smallest {
+		if p.position >= 0 && (f.smallest.position < 0 || p.share < f.smallest.share) {
+			f.smallest = p
+		}
 	}
 	if s.options.Refine {
 		f.values = append(f.values[:0], values...)
@@ -66,6 +93,7 @@ type worker struct {
 	stack [2][]float64
 	used  [2]int
 	rows  []float64 // packed rows
+	spare []float64 // up to four columns
 	scale []float64
 }
 
@@ -77,8 +105,9 @@ type numeric struct {
 	updates  [][]float64 // task -> its update matrix until the parent takes it
 	ctx      context.Context
 	crew     crew
-	broken   []atomic.Bool // task -> it or one below it failed
-	failure  []failure     // task -> what failed
+	broken   []atomic.Bool // task -> it or one below it failed or was stopped
+	failure  []failure     // task -> the pivot that it refused, position -1 for none
+	smallest []pivotShare  // task -> its smallest pivot
 	done     atomic.Int64  // tasks done
 }
 
@@ -91,6 +120,10 @@ func (r *numeric) run() error {
 	s := r.symbolic
 	p := &s.plan
 	r.broken, r.failure = make([]atomic.Bool, len(p.first)), make([]failure, len(p.first))
+	r.smallest = make([]pivotShare, len(p.first))
+	for t := range r.failure {
+		r.failure[t].position, r.smallest[t].position = -1, -1
+	}
 	r.crew = crew{parent: p.parent, pending: make([]int32, len(p.first)), workers: min(workerCount(s.options.Workers), max(1, len(p.first))), do: r.task}
 	for _, up := range p.parent {
 		if up >= 0 {
@@ -102,8 +135,8 @@ func (r *numeric) run() error {
 		return &Interrupted{Stage: "factor", Done: int(r.done.Load()), Total: len(p.first), Cause: err}
 	}
 	first := failure{position: -1}
-	for t := range r.failure {
-		if f := r.failure[t]; r.broken[t].Load() && f.position >= 0 && (first.position < 0 || f.position < first.position) {
+	for _, f := range r.failure {
+		if f.position >= 0 && (first.position < 0 || f.position < first.position) {
 			first = f
 		}
 	}
@@ -132,7 +165,6 @@ func (r *numeric) task(w *worker, t int32) {
 	p := &r.symbolic.plan
 	if r.ctx.Err() != nil {
 		r.broken[t].Store(true)
-		r.failure[t].position = -1
 	}
 	for k := p.first[t]; k <= p.last[t] && !r.broken[t].Load(); k++ {
 		if position, pivot := r.supernode(w, t, k); position >= 0 {
@@ -146,7 +178,6 @@ func (r *numeric) task(w *worker, t int32) {
 		return
 	}
 	if up := p.parent[t]; up >= 0 {
-		r.failure[up].position = -1
 		r.broken[up].Store(true)
 	}
 }
@@ -187,6 +218,13 @@ func (r *numeric) supernode(w *worker, t, k int32) (int32, float64) {
 	if q, pivot := r.eliminateFront(w, front, nr, nc, rest); q >= 0 {
 		return int32(first + q), pivot
 	}
+	for j := range nc {
+		root := front[j*nr+j]
+		share := root * root / w.scale[j]
+		if least := &r.smallest[t]; least.position < 0 || share < least.share {
+			*least = pivotShare{int32(first + j), share}
+		}
+	}
 	return -1, 0
 }
 
@@ -216,25 +254,33 @@ func (r *numeric) gather(w *worker, t, k int32, front, rest []float64, side int)
 // extendAdd adds the lower triangle of an update matrix, whose rows are up in the rows of the front.
 func extendAdd(front, rest []float64, nr, nc int, u []float64, up []int32) {
 	n, m := len(up), nr-nc
-	for j, column := range up {
+	inside := 0 // rows of u that are columns of the front
+	for inside < n && int(up[inside]) < nc {
+		inside++
+	}
+	for j, column := range up[:inside] {
+		target := front[int(column)*nr : int(column+1)*nr]
 		source := u[j*n+j : (j+1)*n]
 		rows := up[j:]
-		if int(column) < nc {
-			target := front[int(column)*nr : int(column+1)*nr]
-			for i, v := range source {
-				target[rows[i]] += v
-			}
-			continue
+		rows = rows[:len(source)]
+		for i, v := range source {
+			target[rows[i]] += v
 		}
-		c := int(column) - nc
+	}
+	for j := inside; j < n; j++ {
+		c := int(up[j]) - nc
 		target := rest[c*m : (c+1)*m]
+		source := u[j*n+j : (j+1)*n]
+		rows := up[j:]
+		rows = rows[:len(source)]
 		for i, v := range source {
 			target[int(rows[i])-nc] += v
 		}
 	}
 }
 
-// eliminateFront computes the first nc columns of the factor of a front and subtracts their products from the rest.
+// eliminateFront computes the first nc columns of the factor of a front and subtracts their products from the rest. It
+// returns the first refused pivot's column and value, or -1.
 func (r *numeric) eliminateFront(w *worker, front []float64, nr, nc int, rest []float64) (int, float64) {
 	m := nr - nc
 	for b := 0; b < nc; b += blockColumns {
@@ -242,23 +288,32 @@ func (r *numeric) eliminateFront(w *worker, front []float64, nr, nc int, rest []
 		for j := b; j < e; j += 4 {
 			width := min(4, e-j)
 			if j > b {
-				packRows(w.rows, front[b*nr:], nr, j, width, j-b)
-				update(front[j*nr+j:], nr, front[b*nr+j:], nr, w.rows, nr-j, j-b, width)
+				w.update(front[j*nr+j:], nr, nr-j, front[b*nr:], nr, j, j-b, width)
 			}
 			if q, pivot := eliminate(front[j*nr+j:], nr, nr-j, width, w.scale[j:]); q >= 0 {
 				return j + q, pivot
 			}
 		}
 		for j := e; j < nc; j += 4 {
-			width := min(4, nc-j)
-			packRows(w.rows, front[b*nr:], nr, j, width, e-b)
-			update(front[j*nr+j:], nr, front[b*nr+j:], nr, w.rows, nr-j, e-b, width)
+			w.update(front[j*nr+j:], nr, nr-j, front[b*nr:], nr, j, e-b, min(4, nc-j))
 		}
 		for j := 0; j < m; j += 4 {
-			width := min(4, m-j)
-			packRows(w.rows, front[b*nr:], nr, nc+j, width, e-b)
-			update(rest[j*m+j:], m, front[b*nr+nc+j:], nr, w.rows, m-j, e-b, width)
+			w.update(rest[j*m+j:], m, m-j, front[b*nr:], nr, nc+j, e-b, min(4, m-j))
 		}
 	}
 	return -1, 0
+}
+
+// update subtracts from width columns of c, rows entries each, the products of the rows of a from row r on with its rows
+// r to r+width-1.
+func (w *worker) update(c []float64, ldc, rows int, a []float64, lda, r, depth, width int) {
+	packRows(w.rows, a, lda, r, width, depth)
+	if width == 4 {
+		update(c, ldc, a[r:], lda, w.rows, rows, depth)
+		return
+	}
+	if len(w.spare) < 4*rows {
+		w.spare = make([]float64, 8*rows)
+	}
+	updateNarrow(c, ldc, a[r:], lda, w.rows, rows, depth, width, w.spare)
 }

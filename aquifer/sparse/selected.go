@@ -26,20 +26,24 @@ func (f *Factor) SolveSelected(ctx context.Context, rhs []SparseVector, wanted [
 		values[r] = make([]float64, len(wanted))
 	}
 	if f.symbolic.options.Refine {
-		return values, f.selectFromWhole(ctx, rhs, wanted, values)
+		if err := f.selectFromWhole(ctx, rhs, wanted, values); err != nil {
+			return nil, err
+		}
+		return values, nil
 	}
 	s := f.symbolic
 	sequence := s.byPosition(rhs)
 	count := (len(rhs) + panelWidth - 1) / panelWidth
+	done := make([]bool, count)
 	back := s.paths(wanted, nil, make([]bool, len(s.nodes.rows)))
 	slices.Sort(back)
 	runFixed(workerCount(s.options.Workers), count, func(c int) {
 		from := c * panelWidth
 		to := min(len(rhs), from+panelWidth)
-		f.selectPanel(ctx, rhs, sequence[from:to], back, wanted, values)
+		done[c] = f.selectPanel(ctx, rhs, sequence[from:to], back, wanted, values)
 	})
-	if err := ctx.Err(); err != nil {
-		return nil, &Interrupted{Stage: "solve", Done: 0, Total: count, Cause: err}
+	if err := finished("solve", done, ctx); err != nil {
+		return nil, err
 	}
 	return values, nil
 }
@@ -88,13 +92,13 @@ func (s *Symbolic) paths(rows []int32, out []int32, seen []bool) []int32 {
 	return out
 }
 
-// selectPanel solves for the right-hand sides in sequence. Its panel is all zeros on entry and left so.
-func (f *Factor) selectPanel(ctx context.Context, rhs []SparseVector, sequence, back, wanted []int32, values [][]float64) {
+// selectPanel solves for the right-hand sides in sequence and tells whether it did. Its panel is all zeros on entry and left so.
+func (f *Factor) selectPanel(ctx context.Context, rhs []SparseVector, sequence, back, wanted []int32, values [][]float64) bool {
 	s := f.symbolic
 	if ctx.Err() != nil {
-		return
+		return false
 	}
-	k := len(sequence)
+	k := panelWidth
 	p := s.blank.Get().(*panel)
 	defer s.blank.Put(p)
 	if len(p.x) < s.pattern.N*panelWidth {
@@ -125,6 +129,7 @@ func (f *Factor) selectPanel(ctx context.Context, rhs []SparseVector, sequence, 
 			clear(p.x[int(s.nodes.first[q])*k : int(s.nodes.first[q+1])*k])
 		}
 	}
+	return true
 }
 
 // selectFromWhole solves in full and picks the wanted entries.

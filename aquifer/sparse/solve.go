@@ -6,36 +6,32 @@ import (
 )
 
 // panelWidth is the number of right-hand sides that go through the factor together: a row of a panel is one cache
-// line, and the block of rows that a supernode touches stays in the first-level cache.
+// line, and the rows that a supernode touches stay in the first-level cache. The kernels are written for this number.
 const panelWidth = 8
 
-// panel is the memory of one pass through the factor.
+// pollSupernodes is the number of supernodes between two looks at the context, some milliseconds of work.
+const pollSupernodes = 4096
+
+// panel is the memory of one pass of up to panelWidth right-hand sides through the factor.
 type panel struct {
 	x    []float64 // positions x width
-	rows []float64 // rows of a supernode x width
+	rows []float64 // rows of a supernode x width, and three more rows that a kernel may touch
 	path []int32   // supernodes on the paths of sparse right-hand sides
 	seen []bool    // supernode -> it is on the path
 }
 
-func (s *Symbolic) takePanel(width int) *panel {
-	p := s.panels.Get().(*panel)
-	if len(p.x) < s.pattern.N*width {
-		p.x = make([]float64, s.pattern.N*width)
-	}
-	return p
-}
+func (s *Symbolic) newPanel() any { return &panel{rows: make([]float64, (s.tallest+3)*panelWidth)} }
 
 // Solve replaces the k right-hand sides in block, N entries each and one after the other, by the solutions of A x = b. A
 // solution does not depend, to the last bit, on the others in the block. It fails with [Interrupted] when ctx ends; the
 // block is then partly overwritten.
 func (f *Factor) Solve(ctx context.Context, block []float64, k int) error {
-	s := f.symbolic
-	n := s.pattern.N
+	n := f.symbolic.pattern.N
 	f.mustBeValid()
 	if k < 0 || len(block) != n*k {
 		panic(fmt.Sprintf("sparse: Solve of %d right-hand sides of %d rows in %d entries", k, n, len(block)))
 	}
-	if s.options.Refine {
+	if f.symbolic.options.Refine {
 		return f.solveRefined(ctx, block, k)
 	}
 	return f.solvePlain(ctx, block, k)
@@ -51,115 +47,165 @@ func (f *Factor) solvePlain(ctx context.Context, block []float64, k int) error {
 	s := f.symbolic
 	n := s.pattern.N
 	count := (k + panelWidth - 1) / panelWidth
+	done := make([]bool, count)
 	runFixed(workerCount(s.options.Workers), count, func(c int) {
 		from := c * panelWidth
 		to := min(k, from+panelWidth)
-		f.solvePanel(ctx, block[from*n:to*n], to-from)
+		done[c] = f.solvePanel(ctx, block[from*n:to*n], to-from)
 	})
-	if err := ctx.Err(); err != nil {
-		return &Interrupted{Stage: "solve", Done: 0, Total: count, Cause: err}
-	}
-	return nil
+	return finished("solve", done, ctx)
 }
 
-// solvePanel solves for up to panelWidth right-hand sides.
-func (f *Factor) solvePanel(ctx context.Context, block []float64, k int) {
-	s := f.symbolic
-	n := s.pattern.N
-	if ctx.Err() != nil {
-		return
-	}
-	p := s.takePanel(k)
-	defer s.panels.Put(p)
-	x := p.x[:n*k]
-	for c := range k {
-		column := block[c*n : (c+1)*n]
-		for i, v := range s.order {
-			x[i*k+c] = column[v]
+// finished returns nil where all steps were done, and the context's error otherwise.
+func finished(stage string, done []bool, ctx context.Context) error {
+	count := 0
+	for _, d := range done {
+		if d {
+			count++
 		}
 	}
+	if count == len(done) {
+		return nil
+	}
+	return &Interrupted{Stage: stage, Done: count, Total: len(done), Cause: ctx.Err()}
+}
+
+// solvePanel solves for up to panelWidth right-hand sides and tells whether it came to the end.
+func (f *Factor) solvePanel(ctx context.Context, block []float64, k int) bool {
+	s := f.symbolic
+	n := s.pattern.N
+	width := panelWidth
+	if k == 1 {
+		width = 1
+	}
+	p := s.panels.Get().(*panel)
+	defer s.panels.Put(p)
+	if len(p.x) < n*width {
+		p.x = make([]float64, n*width)
+	}
+	s.load(p.x[:n*width], block, k, width)
 	total := len(s.nodes.rows)
 	for q := range total {
 		if q%pollSupernodes == 0 && ctx.Err() != nil {
-			return
+			return false
 		}
-		f.forward(p, q, k)
+		f.forward(p, q, width)
 	}
 	for q := total - 1; q >= 0; q-- {
 		if q%pollSupernodes == 0 && ctx.Err() != nil {
-			return
+			return false
 		}
-		f.backward(p, q, k)
+		f.backward(p, q, width)
+	}
+	s.unload(p.x[:n*width], block, k, width)
+	return true
+}
+
+// load copies k columns into rows of width in elimination order, zeros beyond the k-th.
+func (s *Symbolic) load(x, block []float64, k, width int) {
+	n := s.pattern.N
+	if k < width {
+		clear(x)
 	}
 	for c := range k {
 		column := block[c*n : (c+1)*n]
-		for i, v := range s.order {
-			column[v] = x[i*k+c]
+		at := c
+		for _, v := range s.order {
+			x[at] = column[v]
+			at += width
 		}
 	}
 }
 
-// pollSupernodes is the number of supernodes between two looks at the context, about a millisecond of work.
-const pollSupernodes = 4096
-
-// forward solves with the columns of supernode q and takes their products from the rows below.
-func (f *Factor) forward(p *panel, q, k int) {
-	s := f.symbolic
-	nc, nr := s.shape(q)
-	front := f.panels[s.panelPtr[q]:s.panelPtr[q+1]]
-	first := int(s.nodes.first[q])
-	x := p.x
-	below := s.rowIndex[s.rowPtr[q]:s.rowPtr[q+1]]
-	for j := range nc {
-		col := front[j*nr : (j+1)*nr]
-		xj := x[(first+j)*k : (first+j+1)*k]
-		for c := range xj {
-			xj[c] /= col[j]
-		}
-		for i := j + 1; i < nc; i++ {
-			v := col[i]
-			xi := x[(first+i)*k : (first+i+1)*k]
-			for c := range xi {
-				xi[c] -= float64(v * xj[c])
-			}
-		}
-		for i, row := range below {
-			v := col[nc+i]
-			xi := x[int(row)*k : int(row+1)*k]
-			for c := range xi {
-				xi[c] -= float64(v * xj[c])
-			}
+func (s *Symbolic) unload(x, block []float64, k, width int) {
+	n := s.pattern.N
+	for c := range k {
+		column := block[c*n : (c+1)*n]
+		at := c
+		for _, v := range s.order {
+			column[v] = x[at]
+			at += width
 		}
 	}
 }
 
-// backward solves with the transposed columns of supernode q.
-func (f *Factor) backward(p *panel, q, k int) {
+// forward solves with the columns of supernode q and takes their products from the rows below. Every entry has its
+// products subtracted in the order of the columns.
+func (f *Factor) forward(p *panel, q, width int) {
 	s := f.symbolic
 	nc, nr := s.shape(q)
-	front := f.panels[s.panelPtr[q]:s.panelPtr[q+1]]
+	front := f.panels[s.panelPtr[q]:]
+	rows := p.gather(s, q, nc, nr, width)
+	for j := 0; j < nc; j += 4 {
+		w := min(4, nc-j)
+		if width == 1 {
+			forwardOne(rows[j:nr], front[j*nr+j:], nr, w)
+			continue
+		}
+		forwardTriangle(rows[j*panelWidth:], front[j*nr+j:], nr, w)
+		if m := nr - j - w; m > 0 {
+			forwardRows(rows[(j+w)*panelWidth:], front[j*nr+j+w:], nr, rows[j*panelWidth:], m, w)
+		}
+	}
+	p.scatter(s, q, nc, nr, width)
+}
+
+// backward solves with the transposed columns of supernode q. Every entry has its products subtracted in the order of
+// the rows that follow its block of four columns, then of those in the block.
+func (f *Factor) backward(p *panel, q, width int) {
+	s := f.symbolic
+	nc, nr := s.shape(q)
+	front := f.panels[s.panelPtr[q]:]
+	rows := p.gather(s, q, nc, nr, width)
+	for j := (nc - 1) &^ 3; j >= 0; j -= 4 {
+		w := min(4, nc-j)
+		if width == 1 {
+			backwardOne(rows[j:nr], front[j*nr+j:], nr, w)
+			continue
+		}
+		if m := nr - j - w; m > 0 {
+			backwardRows(rows[j*panelWidth:], front[j*nr+j+w:], nr, rows[(j+w)*panelWidth:], m, w)
+		}
+		backwardTriangle(rows[j*panelWidth:], front[j*nr+j:], nr, w)
+	}
 	first := int(s.nodes.first[q])
-	x := p.x
+	copy(p.x[first*width:(first+nc)*width], rows)
+}
+
+// gather copies the rows of supernode q side by side.
+func (p *panel) gather(s *Symbolic, q, nc, nr, width int) []float64 {
+	first := int(s.nodes.first[q])
+	rows := p.rows
+	copy(rows, p.x[first*width:(first+nc)*width])
 	below := s.rowIndex[s.rowPtr[q]:s.rowPtr[q+1]]
-	for j := nc - 1; j >= 0; j-- {
-		col := front[j*nr : (j+1)*nr]
-		xj := x[(first+j)*k : (first+j+1)*k]
+	if width == 1 {
+		out := rows[nc:nr]
 		for i, row := range below {
-			v := col[nc+i]
-			xi := x[int(row)*k : int(row+1)*k]
-			for c := range xj {
-				xj[c] -= float64(v * xi[c])
-			}
+			out[i] = p.x[row]
 		}
-		for i := j + 1; i < nc; i++ {
-			v := col[i]
-			xi := x[(first+i)*k : (first+i+1)*k]
-			for c := range xj {
-				xj[c] -= float64(v * xi[c])
-			}
+		return rows
+	}
+	out := rows[nc*panelWidth : nr*panelWidth]
+	for i, row := range below {
+		*(*[panelWidth]float64)(out[i*panelWidth:]) = *(*[panelWidth]float64)(p.x[int(row)*panelWidth:])
+	}
+	return rows
+}
+
+// scatter puts the rows of supernode q back.
+func (p *panel) scatter(s *Symbolic, q, nc, nr, width int) {
+	first := int(s.nodes.first[q])
+	copy(p.x[first*width:(first+nc)*width], p.rows)
+	below := s.rowIndex[s.rowPtr[q]:s.rowPtr[q+1]]
+	if width == 1 {
+		in := p.rows[nc:nr]
+		for i, row := range below {
+			p.x[row] = in[i]
 		}
-		for c := range xj {
-			xj[c] /= col[j]
-		}
+		return
+	}
+	in := p.rows[nc*panelWidth : nr*panelWidth]
+	for i, row := range below {
+		*(*[panelWidth]float64)(p.x[int(row)*panelWidth:]) = *(*[panelWidth]float64)(in[i*panelWidth:])
 	}
 }

@@ -30,6 +30,7 @@ type Symbolic struct {
 	plan     plan
 	nonZeros int64
 	flops    float64
+	tallest  int        // rows of the largest supernode
 	spare    *sync.Pool // *worker
 	panels   *sync.Pool // *panel
 	blank    *sync.Pool // *panel, all zeros
@@ -73,8 +74,8 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 	s.mapEntries(g, order, position, workers)
 	s.plan = newPlan(s)
 	s.spare = &sync.Pool{New: func() any { return &worker{} }}
-	s.panels = &sync.Pool{New: func() any { return &panel{} }}
-	s.blank = &sync.Pool{New: func() any { return &panel{} }}
+	s.panels = &sync.Pool{New: s.newPanel}
+	s.blank = &sync.Pool{New: s.newPanel}
 	return s, nil
 }
 
@@ -127,6 +128,7 @@ func (s *Symbolic) layout() {
 		s.panelPtr[k+1] = s.panelPtr[k] + nr*nc
 		s.nonZeros += int64(nc)*int64(nr) - int64(nc)*int64(nc-1)/2
 		s.flops += frontFlops(nr, nc)
+		s.tallest = max(s.tallest, nr)
 		p := t.parent[k]
 		if p < 0 {
 			continue

@@ -95,10 +95,10 @@ func (e *engine) longStep(gap float64) (breakpoint, bool) {
 			continue
 		}
 		best := b
-		reach := (b.slack + optimalityTolerance) / b.size
+		reach := (b.slack + e.optimal) / b.size
 		for len(e.ratio) > 0 && e.ratio[0].ratio <= reach {
 			c := e.ratio.pop()
-			reach = math.Min(reach, (c.slack+optimalityTolerance)/c.size)
+			reach = math.Min(reach, (c.slack+e.optimal)/c.size)
 			if c.size > best.size {
 				best = c
 			}

@@ -21,7 +21,7 @@ const (
 func (e *engine) makePricesRight() {
 	moved := false
 	for v := range e.place {
-		if e.place[v] == Basic || !(e.wrong(v) > optimalityTolerance) {
+		if e.place[v] == Basic || !(e.wrong(v) > e.optimal) {
 			continue
 		}
 		if e.boxed(v) {
@@ -50,7 +50,6 @@ func (e *engine) flip(v int) {
 func (e *engine) shift(v int) {
 	e.cost[v] -= e.d[v]
 	e.d[v] = 0
-	e.shifted = true
 }
 
 // perturb moves every price of a variable that can move away from zero, each by another amount, so that ties end.
@@ -66,14 +65,12 @@ func (e *engine) perturb(size float64) {
 		e.cost[v] += by
 		e.d[v] += by
 	}
-	e.shifted = true
 }
 
 // unshift goes back to the true costs.
 func (e *engine) unshift() {
 	clear(e.cost)
 	copy(e.cost, e.trueCost)
-	e.shifted = false
 	e.computePrices()
 }
 
@@ -224,7 +221,7 @@ func (e *engine) updatePrices(p, q int, direction float64) float64 {
 		if a != 0 {
 			e.d[v] -= t * a
 		}
-		if !(e.wrong(v) > optimalityTolerance) {
+		if !(e.wrong(v) > e.optimal) {
 			continue
 		}
 		if e.boxed(v) {

@@ -14,9 +14,13 @@ type engine struct {
 
 	trueCost []float64 // by column; rows cost nothing
 	cost     []float64 // by variable: working costs, shifted and perturbed
-	shifted  bool
-	lower    []float64 // by variable
+	lower    []float64 // by variable: working bounds, widened when the primal method stalls
 	upper    []float64
+	trueLow  []float64 // by variable: the bounds that are meant
+	trueUp   []float64
+	widened  bool
+	feasible float64 // violation that counts as none
+	optimal  float64 // wrong price that counts as none
 	place    []Place
 	x        []float64 // by variable
 	d        []float64 // price of each variable that is not basic
@@ -55,7 +59,9 @@ func newEngine(m *matrix, cost, lower, upper []float64) *engine {
 	n, rows := m.cols, m.rows
 	v := n + rows
 	e := &engine{
-		m: m, n: n, rows: rows, trueCost: cost, lower: lower, upper: upper,
+		m: m, n: n, rows: rows, trueCost: cost, trueLow: lower, trueUp: upper,
+		lower: append([]float64(nil), lower...), upper: append([]float64(nil), upper...),
+		feasible: feasibilityTolerance, optimal: optimalityTolerance,
 		cost: make([]float64, v), place: make([]Place, v), x: make([]float64, v), d: make([]float64, v),
 		weight: make([]float64, v), posJ: make([]int, n), posR: make([]int, rows),
 		alpha: make([]float64, v), w: make([]float64, rows), dxJ: make([]float64, rows), dr: make([]float64, rows),
@@ -103,10 +109,10 @@ func (e *engine) rest(v int) float64 {
 // the tolerance.
 func (e *engine) violation(v int) float64 {
 	x := e.x[v]
-	if lo := e.lower[v]; x < lo && lo-x > feasibilityTolerance*math.Max(1, math.Abs(lo)) {
+	if lo := e.lower[v]; x < lo && lo-x > e.feasible*math.Max(1, math.Abs(lo)) {
 		return x - lo
 	}
-	if up := e.upper[v]; x > up && x-up > feasibilityTolerance*math.Max(1, math.Abs(up)) {
+	if up := e.upper[v]; x > up && x-up > e.feasible*math.Max(1, math.Abs(up)) {
 		return x - up
 	}
 	return 0

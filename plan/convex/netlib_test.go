@@ -16,7 +16,7 @@ const (
 	// netlibShort is the largest rows x columns of the default run.
 	netlibShort = 200_000
 	// netlibLimit ends a solve that does not get anywhere; an honest "interrupted" then.
-	netlibLimit = 20 * time.Second
+	netlibLimit = 60 * time.Second
 )
 
 func long() bool { return os.Getenv("SPRINGBOUND_LONG") == "1" }

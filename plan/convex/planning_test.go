@@ -114,7 +114,7 @@ const oracleAgreement = 1e-9
 // TestPlanningAgainstDual compares optima with another solver's on the dual, and asks for a certificate of each.
 func TestPlanningAgainstDual(t *testing.T) {
 	compared, refused := 0, 0
-	for seed := uint64(0); seed < 320; seed++ {
+	for seed := uint64(0); seed < 240; seed++ {
 		rng := rand.New(rand.NewPCG(seed, 1))
 		c := planningCase{wells: 5 + rng.IntN(56), limits: 3 + rng.IntN(38), sparse: seed%4 == 1, degenerate: seed%4 == 2,
 			recharging: seed%4 == 3, seed: seed}
@@ -131,7 +131,7 @@ func TestPlanningAgainstDual(t *testing.T) {
 		}
 	}
 	t.Logf("%d compared, %d not solved by the other solver", compared, refused)
-	if compared < 280 {
+	if compared < 220 {
 		t.Errorf("only %d comparisons", compared)
 	}
 }

@@ -13,7 +13,7 @@ func (e *engine) primal(ctx context.Context, careful bool) (outcome, int, Status
 	for v := range e.weight {
 		e.weight[v] = 1
 	}
-	stall, smallest := 0, careful
+	stall, size, smallest := 0, boundPerturbation, careful
 	tabu := map[int]bool{}
 	for {
 		if s := e.stopped(ctx); s != 0 {
@@ -45,10 +45,34 @@ func (e *engine) primal(ctx context.Context, careful bool) (outcome, int, Status
 			stall = 0
 			smallest = careful
 		}
-		if stall > 10*stallLength+e.rows {
-			smallest = true
+		if stall > stallLength && !smallest {
+			if size <= perturbationLargest {
+				e.widen(size)
+				size *= 10
+			} else if stall > 10*stallLength {
+				smallest = true
+			}
 		}
 	}
+}
+
+// widen moves the bounds of every basic variable apart, each by another amount, so that ties end.
+func (e *engine) widen(size float64) {
+	for v := range e.place {
+		if e.place[v] != Basic {
+			continue
+		}
+		e.lower[v] -= size * (1 + math.Abs(e.lower[v])) * (1 + e.random())
+		e.upper[v] += size * (1 + math.Abs(e.upper[v])) * (1 + e.random())
+	}
+	e.widened = true
+}
+
+// unwiden goes back to the true bounds.
+func (e *engine) unwiden() {
+	copy(e.lower, e.trueLow)
+	copy(e.upper, e.trueUp)
+	e.widened = false
 }
 
 // entering picks the variable with the largest squared wrong price per weight, or the wrong one with the smallest index.
@@ -59,7 +83,7 @@ func (e *engine) entering(smallest bool, tabu map[int]bool) int {
 			continue
 		}
 		d := e.wrong(v)
-		if !(d > optimalityTolerance) || (len(tabu) > 0 && tabu[v]) {
+		if !(d > e.optimal) || (len(tabu) > 0 && tabu[v]) {
 			continue
 		}
 		if smallest {
@@ -126,7 +150,7 @@ func (e *engine) primalStep(q int, smallest bool) (float64, outcome) {
 // relaxes each bound by the tolerance, the second takes the largest entry within the relaxed step.
 func (e *engine) blocking(q int, direction float64, smallest bool) (p int, step float64) {
 	reach := math.Inf(1)
-	relax := feasibilityTolerance
+	relax := e.feasible
 	if smallest {
 		relax = 0
 	}

@@ -12,8 +12,19 @@ import (
 //
 // The result is a status and, for Unbounded, the entering variable.
 func (e *engine) optimise(ctx context.Context) (Status, int) {
-	for round := 0; round < maxRounds; round++ {
-		careful := round >= maxRounds/2
+	e.feasible, e.optimal = feasibilityTolerance, optimalityTolerance
+	status, q := e.rounds(ctx, maxRounds)
+	if status == Optimal && !(e.worst() <= sharpTolerance) {
+		e.sharpen(ctx)
+	}
+	return status, q
+}
+
+// rounds repeats the two methods, at most as often as given.
+func (e *engine) rounds(ctx context.Context, most int) (Status, int) {
+	for round := 0; round < most; round++ {
+		careful := round > 0 && round >= maxRounds/2
+		e.unwiden()
 		e.refactor()
 		e.makePricesRight()
 		end, _, status := e.dual(ctx, careful)
@@ -28,26 +39,62 @@ func (e *engine) optimise(ctx context.Context) (Status, int) {
 		}
 		e.unshift()
 		end, q, status := e.primal(ctx, careful)
+		if e.widened {
+			e.unwiden()
+			e.refactor()
+		}
 		switch end {
 		case halted:
 			return status, 0
 		case noEnd:
-			if e.feasible() {
+			if e.allWithin() {
 				return Unbounded, q
 			}
 			continue
 		case lostAccuracy:
 			continue
 		}
-		if e.polish() && e.feasible() && e.pricesRight() {
+		if e.polish() && e.allWithin() && e.pricesRight() {
 			return Optimal, 0
 		}
 	}
 	return NumericalTrouble, 0
 }
 
-// feasible tells that no basic value violates a bound.
-func (e *engine) feasible() bool {
+// sharpen goes on from an optimum with sharper tolerances and comes back to it when that leads nowhere.
+func (e *engine) sharpen(ctx context.Context) {
+	place := append([]Place(nil), e.place...)
+	e.feasible, e.optimal = sharpTolerance, sharpTolerance
+	status, _ := e.rounds(ctx, sharpRounds)
+	e.feasible, e.optimal = feasibilityTolerance, optimalityTolerance
+	if status == Optimal {
+		return
+	}
+	copy(e.place, place)
+	e.unwiden()
+	e.adoptPlaces()
+	copy(e.cost, e.trueCost)
+	clear(e.cost[e.n:])
+	e.refactor()
+	e.polish()
+}
+
+// worst returns the largest violation, as rated by the tolerance, or wrong price.
+func (e *engine) worst() float64 {
+	most := 0.0
+	for v := range e.place {
+		if e.place[v] != Basic {
+			most = math.Max(most, e.wrong(v))
+			continue
+		}
+		most = math.Max(most, (e.lower[v]-e.x[v])/math.Max(1, math.Abs(e.lower[v])))
+		most = math.Max(most, (e.x[v]-e.upper[v])/math.Max(1, math.Abs(e.upper[v])))
+	}
+	return most
+}
+
+// allWithin tells that no basic value violates a bound.
+func (e *engine) allWithin() bool {
 	for v := range e.place {
 		if e.place[v] == Basic && e.violation(v) != 0 {
 			return false
@@ -59,7 +106,7 @@ func (e *engine) feasible() bool {
 // pricesRight tells that no price is wrong beyond the tolerance.
 func (e *engine) pricesRight() bool {
 	for v := range e.place {
-		if e.place[v] != Basic && e.wrong(v) > optimalityTolerance {
+		if e.place[v] != Basic && e.wrong(v) > e.optimal {
 			return false
 		}
 	}

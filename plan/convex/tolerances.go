@@ -7,6 +7,11 @@ const (
 	feasibilityTolerance = 1e-9
 	// optimalityTolerance is the wrong-signed price that counts as none.
 	optimalityTolerance = 1e-9
+	// sharpTolerance replaces both once an optimum is found, so that the basis is the optimal one wherever rounding, some 1e-13,
+	// allows to tell; where it does not the optimum found before stands.
+	sharpTolerance = 1e-11
+	// sharpRounds bounds the attempt.
+	sharpRounds = 3
 	// pivotTolerance is the smallest entry that may become a pivot: below it rounding of the row, some 1e-13, would spoil the
 	// step in its fourth digit.
 	pivotTolerance = 1e-9
@@ -23,6 +28,9 @@ const (
 	// enough for the prices to stay nearly right; each further one is ten times as large, up to perturbationLargest.
 	perturbation        = 1e-7
 	perturbationLargest = 1e-3
+	// boundPerturbation is the size of the first widening of bounds relative to 1 + |bound| when the primal method stalls; each
+	// further one is ten times as large, up to perturbationLargest.
+	boundPerturbation = 1e-7
 	// refactorEvery is the number of changes of the kernel after which it is factored afresh.
 	refactorEvery = 400
 	// proofMargin is the least distance from feasible, relative to the sum of absolute terms, that a proof of infeasibility must
