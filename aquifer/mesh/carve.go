@@ -14,7 +14,7 @@ type base struct {
 	sharpQ bool
 	scaleP float64 // shell distances from p are multiplied by this, so that shells agree in the metric of the wedges
 	scaleQ float64
-	mixed  bool // at an end of it, regions of different metrics meet
+	mixed  bool    // at an end of it, regions of different metrics meet
 	size   float64 // wanted edge length on it; +Inf none [m]
 }
 
