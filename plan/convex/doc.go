@@ -1,2 +1,63 @@
-// Package convex solves the optimisation problems of a pumping plan: linear programmes with few, dense rows.
+// Package convex solves the optimisation problems of a pumping plan. Today that is the linear programme with few, dense rows:
+// which rates give the largest yield, or the least cost, within the limits, and what is each limit worth.
+//
+// # Problem
+//
+//	minimise or maximise  c'x
+//	subject to            rowLower <= A x <= rowUpper
+//	                      lower    <= x   <= upper
+//
+// Columns are wells and a few helpers, rows are limits, quotas and demand. Any bound may be missing (an infinity of the right sign);
+// equal bounds make an equation or a fixed column. Rows are dense and copied in; nothing about their number is assumed.
+//
+// # Method
+//
+// With r = A x as further variables a basis has one variable for each row. A row whose r is basic says nothing, so that only the
+// block K of the active rows by the basic columns is factored: as large as the number of binding limits, not as the number of
+// limits. K is kept as Q'K = R under plane rotations (kernel). A pivot costs rows x |K| + |K| x columns + |K|².
+//
+// Solve runs the bounded dual simplex method from any basis. Prices of boxed columns are righted by moving the column to its
+// other bound; other wrong prices are shifted away for the time being. Leaving rows are chosen by steepest edge (Forrest &
+// Goldfarb 1992), the step passes over the bounds of boxed columns while that pays (Fourer 1994; Maros 2003) and ends with the
+// largest entry among nearly equal breakpoints (Harris 1973). Once no bound is violated the true costs come back and a bounded
+// primal simplex method removes the wrong prices that are left; it is not needed when nothing was shifted. Stalls are met by small
+// perturbations, of costs in the dual and of bounds in the primal method, which are taken back before the end; when that does not
+// help smallest indices are used, which cannot cycle (Bland 1977). The last basis is factored afresh (LU), its values and prices
+// refined with residuals in about 32 digits, and looked at again with tolerances near rounding.
+//
+// All of this happens in a scaled problem; the factors are powers of two, so that scaling rounds nothing. There is no randomness
+// that is not a fixed sequence and no parallel work: the same problem gives the same bytes.
+//
+// # Symbols, units, signs
+//
+//	symbol  identifier              meaning
+//	c       Column.Cost             objective per unit of a column
+//	A       Row.Coefficients        row value per unit of a column
+//	x, r    X, RowValue             values
+//	y       RowPrice                change of the objective per unit of the row's active bound
+//	d       ReducedCost             the same for a column's active bound; c - A'y
+//
+// Prices are in the problem's own sense: raising the binding upper limit of a maximisation by one unit raises the objective by its
+// price, which is not negative; raising a binding demand of a minimisation raises the cost by its price. The price of a bound that
+// does not bind is zero. Units are those of the caller; the package knows none.
+//
+// # What an answer means
+//
+// Status is never more than the arithmetic supports, and Certify recomputes from the data alone what it claims: violations, signs,
+// stationarity, slackness and gap of an optimum, the proof of infeasibility (Farkas 1902), the direction of an unbounded problem.
+// Where prices or plan are not the only ones Solution.PrimalDegenerate or DualDegenerate says so. Conflict and LeastRelaxation
+// explain what cannot be met.
+//
+// # Not done
+//
+// Sparse storage and presolve: problems with thousands of rows that are mostly zero work, slowly. Quadratic cost and on/off
+// columns. Left and right prices at a degenerate optimum. Exact arithmetic: a problem infeasible by less than 1e-9 of its scale may
+// be called feasible.
+//
+// # Sources
+//
+// Forrest & Goldfarb (1992) Mathematical Programming 57, 341-374. Fourer (1994) Notes on the dual simplex method. Maros (2003) European
+// Journal of Operational Research 149, 1-16. Harris (1973) Mathematical Programming 5, 1-28. Bland (1977) Mathematics of Operations
+// Research 2, 103-107. Gill, Golub, Murray & Saunders (1974) Mathematics of Computation 28, 505-535. Chinneck & Dravnieks (1991) ORSA
+// Journal on Computing 3, 157-168. Ogita, Rump & Oishi (2005) SIAM Journal on Scientific Computing 26, 1955-1988. Ruiz (2001) RAL-TR-2001-034.
 package convex

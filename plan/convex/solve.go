@@ -59,21 +59,21 @@ func report(t *session, status Status) *Solution {
 	}
 	var objective twofold
 	for j := range sol.X {
-		sol.X[j] = e.x[j] * s.col[j]
+		sol.X[j] = plain(e.x[j] * s.col[j])
 		c := p.anyColumn(j)
 		if e.place[j] == AtLower && finite(c.Lower) {
-			sol.X[j] = c.Lower
+			sol.X[j] = plain(c.Lower)
 		}
 		if e.place[j] == AtUpper && finite(c.Upper) {
-			sol.X[j] = c.Upper
+			sol.X[j] = plain(c.Upper)
 		}
-		sol.ReducedCost[j] = e.d[j] / (s.col[j] * s.costFactor)
+		sol.ReducedCost[j] = plain(e.d[j] / (s.col[j] * s.costFactor))
 		objective.addProduct(c.Cost, sol.X[j])
 	}
-	sol.Objective = objective.value()
+	sol.Objective = plain(objective.value())
 	for i := range sol.RowValue {
-		sol.RowValue[i] = e.x[n+i] / s.row[i]
-		sol.RowPrice[i] = e.d[n+i] * s.row[i] / s.costFactor
+		sol.RowValue[i] = plain(e.x[n+i] / s.row[i])
+		sol.RowPrice[i] = plain(e.d[n+i] * s.row[i] / s.costFactor)
 	}
 	e.markDegenerate(sol)
 	switch status {
@@ -83,6 +83,14 @@ func report(t *session, status Status) *Solution {
 		sol.Ray = directionRay(s, e, t.q)
 	}
 	return sol
+}
+
+// plain turns a negative zero, which would print as -0, into zero.
+func plain(v float64) float64 {
+	if v == 0 {
+		return 0
+	}
+	return v
 }
 
 // markDegenerate sets the two flags that warn of prices or values that are not the only ones.
