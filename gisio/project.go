@@ -9,6 +9,7 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"github.com/paulmach/orb"
@@ -81,7 +82,7 @@ const maxProjectBytes = 4 << 20
 // ReadProject reads a project file with its layers and tables. It goes on after an error, so that the findings hold every
 // problem of every file that can be known; the project is nil when one of them is an error.
 func ReadProject(ctx context.Context, path string) (*Project, Findings) {
-	b := &builder{p: &Project{File: filepath.Base(path), Dir: filepath.Dir(path)}, hashed: map[string]bool{}, names: map[string]string{}}
+	b := &builder{p: &Project{File: filepath.Base(path), Dir: filepath.Dir(path)}, hashed: map[string]bool{}, names: map[string]string{}, broken: map[string]bool{}}
 	b.read(ctx)
 	if b.findings.Err() != nil {
 		return nil, b.findings
@@ -100,6 +101,7 @@ type builder struct {
 	layers   map[string]*layerData
 	tables   map[string]*tableData
 
+	broken      map[string]bool // layers and tables that could not be read to the end: names may be missing through no fault of those who use them
 	extentKnown bool
 	tolerance   float64           // what counts as on the outline [m]
 	names       map[string]string // of edges, rivers, lakes and springs, which results tell apart by name
@@ -227,6 +229,11 @@ func (b *builder) fileSpecs(section *Section) []fileSpec {
 		}
 		specs = append(specs, spec)
 	}
+	for _, f := range section.Fields {
+		if rec.has(f.Name) && !slices.ContainsFunc(specs, func(s fileSpec) bool { return s.name == f.Name }) {
+			b.broken[f.Name] = true
+		}
+	}
 	return specs
 }
 
@@ -269,6 +276,7 @@ func (b *builder) readLayers() {
 	for _, spec := range b.fileSpecs(&layersSection) {
 		data, ok := b.file(spec.file, spec.name, DefaultMaxLayerBytes)
 		if !ok {
+			b.broken[spec.name] = true
 			continue
 		}
 		opt := LayerOptions{Layer: spec.name}
@@ -277,6 +285,7 @@ func (b *builder) readLayers() {
 		}
 		layer, findings := ReadLayer(spec.file, data, opt)
 		b.findings = append(b.findings, findings...)
+		b.broken[spec.name] = findings.Err() != nil
 		system := spec.system
 		if layer.CRS != "" {
 			if s, err := ParseEPSG(layer.CRS); err == nil {
@@ -297,10 +306,14 @@ func (b *builder) readTables() {
 	for _, spec := range b.fileSpecs(&tablesSection) {
 		data, ok := b.file(spec.file, spec.name, DefaultMaxTableBytes)
 		if !ok {
+			b.broken[spec.name] = true
 			continue
 		}
 		grid, findings := ReadGrid(spec.file, data, TableOptions{Name: spec.name, Sheet: spec.sheet, Delimiter: spec.delimiter, Decimal: spec.decimal})
 		b.findings = append(b.findings, findings...)
+		if findings.Err() != nil || len(grid.Rows) == 0 {
+			b.broken[spec.name] = true
+		}
 		rows := b.rows(grid, tableSections[spec.name], maps[spec.name], b.p.File)
 		b.tables[spec.name] = &tableData{file: spec.file, system: spec.system, rows: rows}
 	}

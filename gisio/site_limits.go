@@ -13,6 +13,9 @@ import (
 // rowsOf makes records of a table that has no layer.
 func (b *builder) rowsOf(section *Section) []placed {
 	if t := b.tables[section.Name]; t != nil {
+		if len(t.rows) == 0 && !b.broken[section.Name] {
+			b.warn(Finding{File: t.file, Layer: section.Name, Found: "a table without rows"})
+		}
 		return b.tableRecords(section, t.rows)
 	}
 	return nil
@@ -43,7 +46,6 @@ func (b *builder) buildStates() {
 		last = p
 	}
 	switch n := len(b.p.States); {
-	case n == 0 && b.named("tables", "states"):
 	case n == 0:
 		b.p.States = []wells.OperatingState{{Name: "average", Default: true, RechargeFactor: 1}}
 	case n == 1:
@@ -86,7 +88,7 @@ func (b *builder) buildLimits() {
 
 // checkState reports an operating state that does not exist.
 func (b *builder) checkState(p placed, name string) {
-	if name == "" {
+	if name == "" || b.broken["states"] {
 		return
 	}
 	var names []string
@@ -110,7 +112,7 @@ func (b *builder) limitReceptor(p placed, id string) (wells.Receptor, bool) {
 		}
 		ids = append(ids, r.ID)
 	}
-	if id != "" {
+	if id != "" && !b.broken["receptors"] {
 		p.fail(Finding{Property: "receptor", Found: quoted(id) + ", no receptor of the project", Allowed: listSome(ids), Hint: nearestHint(id, ids)})
 	}
 	return wells.Receptor{}, false
@@ -225,7 +227,7 @@ func (b *builder) checkWellIDs(rec *record, property string, ids []string) {
 		known = append(known, w.ID)
 	}
 	for _, id := range ids {
-		if !contains(known, id) {
+		if !contains(known, id) && !b.broken["wells"] {
 			rec.fail(Finding{Property: property, Found: quoted(id) + ", no well of the project", Allowed: listSome(known), Hint: nearestHint(id, known)})
 		}
 	}

@@ -91,7 +91,7 @@ func (b *builder) mustName(p placed, name, what string, names []string) {
 		p.missing("feature", "name of the "+what)
 		return
 	}
-	if contains(names, name) {
+	if contains(names, name) || b.broken[what+"s"] {
 		return
 	}
 	hint := nearestHint(name, names)

@@ -86,12 +86,27 @@ func (rd *reader) newRecord(section *Section, at Finding, list []written) *recor
 		}
 		rec.written++
 		if old := rec.find(res.field.Name, res.role); old != nil {
-			rec.fail(Finding{Property: w.key, Line: w.line, Found: "stated twice", Hint: "it stands under " + old.key + " too; leave one out"})
+			rec.statedTwice(w, old)
 			continue
 		}
 		rec.entries = append(rec.entries, entry{w, res})
 	}
 	return rec
+}
+
+// statedTwice reports a value that stands in two places. The same text in a layer and in its table is let pass.
+func (rec *record) statedTwice(w written, old *entry) {
+	text, isText := w.value.(string)
+	if oldText, ok := old.value.(string); ok && isText && w.at != nil && strings.TrimSpace(text) == strings.TrimSpace(oldText) {
+		return
+	}
+	f := Finding{Property: w.key, Line: w.line, Found: "stated twice", Hint: "it stands under " + old.key + " too; leave one out"}
+	if w.at == nil {
+		rec.fail(f)
+		return
+	}
+	f.Hint = "it stands in " + rec.at.File + " too; leave one out"
+	rec.rd.fail(place(*w.at, f))
 }
 
 // needAlways reports fields that are needed in every record and are missing.

@@ -203,6 +203,7 @@ func (rd *reader) columns(head Row, section *Section, maps []columnMap, at Findi
 			for _, other := range columns {
 				if other.res != nil && other.res.field == res.field && other.res.role == res.role {
 					rd.fail(place(at, Finding{Property: c.Text, Found: "a second column for " + res.field.Name, Hint: "the first is " + quoted(other.header)}))
+					col.res = nil
 				}
 			}
 		}
