@@ -47,8 +47,7 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	if err != nil {
 		return nil, err
 	}
-	field := r.makeField(d, o)
-	expected := r.integrate(field).nodes(field.coarsest)
+	field, expected := r.makeField(d, o)
 	r.maxNodes = o.MaxNodes
 	if r.maxNodes == 0 {
 		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, largestBudget))
@@ -57,7 +56,10 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	if err := r.run(ctx); err != nil {
 		return nil, err
 	}
-	r.smooth(smoothPasses)
+	r.reorder()
+	if err := r.smooth(ctx, smoothPasses); err != nil {
+		return nil, err
+	}
 	r.queueSegments()
 	r.queueTriangles()
 	if err := r.run(ctx); err != nil {
@@ -77,8 +79,8 @@ func EstimateNodes(d Domain, o Options) float64 {
 	if err != nil {
 		return 0
 	}
-	field := r.makeField(d, o)
-	return r.integrate(field).nodes(field.coarsest)
+	_, expected := r.makeField(d, o)
+	return expected
 }
 
 // prepare makes the planar graph, carves the domain and cuts the segments so that none is encroached.
@@ -158,15 +160,16 @@ func (c *carved) sizeBases(d Domain) {
 	}
 }
 
-// makeField makes the size field and finds its coarsest size.
-func (r *refiner) makeField(d Domain, o Options) *sizeField {
+// makeField makes the size field, finds its coarsest size and the number of nodes to expect.
+func (r *refiner) makeField(d Domain, o Options) (*sizeField, float64) {
 	x0, y0, x1, y1 := bounds(r.p)
 	f := newSizeField(r.sources(d.Points, o.Tolerance), o.Growth, x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
+	in := r.integrate(f)
 	if !(o.Coarsest > 0) {
-		f.coarsest = r.integrate(f).coarsestFor(float64(o.Nodes))
+		f.coarsest = in.coarsestFor(float64(o.Nodes))
 	}
-	return f
+	return f, in.nodes(f.coarsest)
 }
 
 // start enters the second stage: sizes at all vertices, segments cut to size, rings around points, all triangles queued.

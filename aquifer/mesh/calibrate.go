@@ -3,9 +3,9 @@ package mesh
 import "math"
 
 const (
-	sampleVariation = 0.35 // an integration sample is cut while the size may vary across it by more than this share
-	sampleDepth     = 30   // halvings at most
-	nodesPerIdeal   = 1.0  // nodes made for each node of a mesh of equilateral triangles of the wanted size, measured
+	sampleVariation = 0.5 // an integration sample is cut while the size may vary across it by more than this share
+	sampleDepth     = 30  // halvings at most
+	nodesPerIdeal   = 1.0 // nodes made for each node of a mesh of equilateral triangles of the wanted size, measured
 )
 
 // sample is a part of the domain or of its outline over which the size is about the same.
@@ -41,10 +41,12 @@ func (c *carved) integrate(f *sizeField) *integral {
 
 // area samples a triangle, cutting its longest side until the size is even enough.
 func (in *integral) area(f *sizeField, ax, ay, bx, by, cx, cy float64, depth int) {
-	la, lb, lc := math.Hypot(bx-cx, by-cy), math.Hypot(cx-ax, cy-ay), math.Hypot(ax-bx, ay-by)
+	la := (bx-cx)*(bx-cx) + (by-cy)*(by-cy)
+	lb := (cx-ax)*(cx-ax) + (cy-ay)*(cy-ay)
+	lc := (ax-bx)*(ax-bx) + (ay-by)*(ay-by)
 	h := f.free((ax+bx+cx)/3, (ay+by+cy)/3)
-	longest := max(la, lb, lc)
-	if depth == 0 || f.growth*longest < sampleVariation*h {
+	longest := max(la, lb, lc) // squared
+	if vary := sampleVariation * h; depth == 0 || f.growth*f.growth*longest < vary*vary {
 		in.areas = append(in.areas, sample{h, ((bx-ax)*(cy-ay) - (by-ay)*(cx-ax)) / 2})
 		return
 	}

@@ -1,10 +1,5 @@
 package mesh
 
-import (
-	"cmp"
-	"slices"
-)
-
 // hilbertBits is the resolution of the curve in each direction: 65,536 cells a side, finer than a million nodes need.
 const hilbertBits = 16
 
@@ -59,10 +54,33 @@ func hilbertOrder(n int, at func(i int) (x, y float64)) []int32 {
 		x, y := at(i)
 		keys[i] = uint64(hilbertKey(uint32((x-x0)*scale), uint32((y-y0)*scale)))<<32 | uint64(i)
 	}
-	slices.SortFunc(keys, cmp.Compare[uint64])
 	order := make([]int32, n)
-	for i, k := range keys {
+	for i, k := range sortKeys(keys) {
 		order[i] = int32(uint32(k))
 	}
 	return order
+}
+
+// sortKeys sorts by the upper 32 bits, equal ones in their order: a radix sort with digits of 11 bits.
+func sortKeys(keys []uint64) []uint64 {
+	const bits, size = 11, 1 << 11
+	other := make([]uint64, len(keys))
+	for shift := 32; shift < 64; shift += bits {
+		var start [size]int
+		for _, k := range keys {
+			start[k>>shift&(size-1)]++
+		}
+		sum := 0
+		for i, c := range start {
+			start[i] = sum
+			sum += c
+		}
+		for _, k := range keys {
+			d := k >> shift & (size - 1)
+			other[start[d]] = k
+			start[d]++
+		}
+		keys, other = other, keys
+	}
+	return keys
 }

@@ -46,9 +46,8 @@ func (s *shape) shortest() int32 {
 
 // faults says by how much a triangle is larger than wanted (0 when it is not), and whether an angle is too small that can be
 // helped.
-func (r *refiner) faults(t int32) (tooLarge float64, thin bool) {
+func (r *refiner) faults(t int32, s *shape) (tooLarge float64, thin bool) {
 	tr := &r.t[t]
-	s := r.shapeOf(t)
 	h := (r.p[tr.v[0]].h + r.p[tr.v[1]].h + r.p[tr.v[2]].h) / 3
 	if over2 := 3 * s.radius / (h * h); !(over2 <= oversize*oversize) {
 		tooLarge = math.Sqrt(over2)
@@ -103,8 +102,8 @@ func (r *refiner) sharedCorner(a, b int32) int32 {
 // the circumcentre. Where the vertex would encroach upon a segment, that segment is cut instead.
 func (r *refiner) improve(t int32, central bool) {
 	tr := &r.t[t]
-	tooLarge, thin := r.faults(t)
 	s := r.shapeOf(t)
+	tooLarge, thin := r.faults(t, &s)
 	base := int32(-1)
 	for k := range int32(3) {
 		e := tr.n[k]

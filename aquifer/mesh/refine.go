@@ -217,7 +217,8 @@ func (r *refiner) queueTriangles() {
 // classify sets the state of a new triangle, queues it when bad, and wakes waiting neighbours when good.
 func (r *refiner) classify(t int32) {
 	tr := &r.t[t]
-	if tooLarge, thin := r.faults(t); tooLarge > 0 || thin {
+	s := r.shapeOf(t)
+	if tooLarge, thin := r.faults(t, &s); tooLarge > 0 || thin {
 		tr.state = stateQueued
 		r.triangles.push(item{t, tr.stamp})
 		return

@@ -21,6 +21,7 @@ type sizeField struct {
 	x, y, side       float64 // lower left corner and side of the root
 	cells            []fieldCell
 	lists            []source
+	scratch          []source // while the tree is made: a stack of kept sources
 }
 
 // fieldCell is a quadtree cell: an inner one with four children in a row, or a leaf with a list.
@@ -34,42 +35,50 @@ func newSizeField(sources []source, growth, x0, y0, x1, y1 float64) *sizeField {
 	side := max(x1-x0, y1-y0) * 1.001
 	f := &sizeField{coarsest: math.Inf(1), growth: growth, x: x0, y: y0, side: side}
 	f.cells = append(f.cells, fieldCell{child: -1})
-	f.split(0, sources, x0+side/2, y0+side/2, side/2, 0)
+	f.scratch = append(make([]source, 0, 8*len(sources)), sources...)
+	f.split(0, 0, x0+side/2, y0+side/2, side/2, 0)
+	f.scratch = nil
 	return f
 }
 
-// split fills cell c, whose centre and half side are given, from the sources of its parent.
-func (f *sizeField) split(c int32, sources []source, cx, cy, half float64, depth int) {
+// split fills cell c, whose centre and half side are given, from the sources of its parent, which are f.scratch[from:]. What it
+// keeps for its own children goes on top and is taken off again.
+func (f *sizeField) split(c int32, from int, cx, cy, half float64, depth int) {
 	r := half * math.Sqrt2
+	to := len(f.scratch)
 	upper, best := math.Inf(1), source{}
-	for _, s := range sources {
-		if u := s.size + f.growth*math.Hypot(s.x-cx, s.y-cy); u < upper {
+	for _, s := range f.scratch[from:to] {
+		dx, dy := s.x-cx, s.y-cy
+		if u := s.size + f.growth*math.Sqrt(dx*dx+dy*dy); u < upper {
 			upper, best = u, s
 		}
 	}
-	var keep []source
-	for _, s := range sources {
-		if s.size+f.growth*(math.Hypot(s.x-cx, s.y-cy)-r) <= upper+f.growth*r {
-			keep = append(keep, s)
+	for i := from; i < to; i++ {
+		s := f.scratch[i]
+		dx, dy := s.x-cx, s.y-cy
+		if s.size+f.growth*(math.Sqrt(dx*dx+dy*dy)-r) <= upper+f.growth*r {
+			f.scratch = append(f.scratch, s)
 		}
 	}
-	if 2*f.growth*r < leafVariation*upper && len(keep) > 1 {
-		keep = append(keep[:0], best)
+	if 2*f.growth*r < leafVariation*upper && len(f.scratch) > to+1 {
+		f.scratch = append(f.scratch[:to], best)
 	}
-	if len(keep) <= leafSources || depth == fieldDepth {
+	if len(f.scratch) <= to+leafSources || depth == fieldDepth {
 		f.cells[c].from = int32(len(f.lists))
-		f.lists = append(f.lists, keep...)
+		f.lists = append(f.lists, f.scratch[to:]...)
 		f.cells[c].to = int32(len(f.lists))
+		f.scratch = f.scratch[:to]
 		return
 	}
 	child := int32(len(f.cells))
 	f.cells[c].child = child
 	f.cells = append(f.cells, fieldCell{child: -1}, fieldCell{child: -1}, fieldCell{child: -1}, fieldCell{child: -1})
 	q := half / 2
-	f.split(child, keep, cx-q, cy-q, q, depth+1)
-	f.split(child+1, keep, cx+q, cy-q, q, depth+1)
-	f.split(child+2, keep, cx-q, cy+q, q, depth+1)
-	f.split(child+3, keep, cx+q, cy+q, q, depth+1)
+	f.split(child, to, cx-q, cy-q, q, depth+1)
+	f.split(child+1, to, cx+q, cy-q, q, depth+1)
+	f.split(child+2, to, cx-q, cy+q, q, depth+1)
+	f.split(child+3, to, cx+q, cy+q, q, depth+1)
+	f.scratch = f.scratch[:to]
 }
 
 // free is the size at (x, y) without the cap.

@@ -1,6 +1,10 @@
 package mesh
 
-import "math"
+import (
+	"context"
+	"fmt"
+	"math"
+)
 
 const (
 	smoothPasses = 2 // most of the gain comes with the first two
@@ -22,9 +26,12 @@ type smoother struct {
 }
 
 // smooth makes the passes and restores the Delaunay property after each.
-func (r *refiner) smooth(passes int) {
+func (r *refiner) smooth(ctx context.Context, passes int) error {
 	s := &smoother{refiner: r, at: make([]int32, len(r.p))}
-	for range passes {
+	for pass := range passes {
+		if ctx.Err() != nil {
+			return fmt.Errorf("mesh: stopped at smoothing pass %d of %d nodes: %w", pass+1, len(r.p), ctx.Err())
+		}
 		for t := range r.t {
 			if r.t[t].v[0] >= 0 {
 				for _, v := range r.t[t].v {
@@ -39,6 +46,7 @@ func (r *refiner) smooth(passes int) {
 		}
 		r.delaunayAll()
 	}
+	return nil
 }
 
 // delaunayAll flips until every edge is locally Delaunay.
