@@ -100,12 +100,9 @@ func (r *layerReader) polygons(parts [][]path) orb.Geometry {
 // judgeShape records the faults of the shape.
 func (r *layerReader) judgeShape(parts [][]path, m orb.MultiPolygon) {
 	s := newShape(m)
-	for _, f := range s.check() {
-		severity := Error
-		if f.warning {
-			severity = Warning
-		}
-		r.add(severity, r.ringOffset(parts, m, s, f.ring), s.ringName(f.ring), f.found, f.allowed, f.hint)
+	for _, fault := range s.check() {
+		f := fault.finding(s)
+		r.add(f.Severity, r.ringOffset(parts, m, s, fault.ring), f.Property, f.Found, f.Allowed, f.Hint)
 	}
 }
 
@@ -160,4 +157,42 @@ func onOneLine(ring []orb.Point) bool {
 		}
 	}
 	return true
+}
+
+// CheckShape examines a Polygon or MultiPolygon as ReadLayer does and gives its faults as findings without a place;
+// other geometries have none. It is for shapes that were projected: a straight edge between two positions is another
+// line on the plane than in degrees, so that what lay a hair apart may cross. Rings must be closed, with finite points
+// none of which repeats the one before. Method: see shape.check (OGC simple features), exact signs.
+func CheckShape(g orb.Geometry) Findings {
+	var m orb.MultiPolygon
+	switch g := g.(type) {
+	case orb.Polygon:
+		m = orb.MultiPolygon{g}
+	case orb.MultiPolygon:
+		m = g
+	default:
+		return nil
+	}
+	ready := make(orb.MultiPolygon, len(m))
+	var out Findings
+	for i, p := range m {
+		if len(p) == 0 {
+			out = append(out, Finding{Severity: Error, Property: ringName(len(m), i, 0), Found: "missing", Allowed: "a ring around an area"})
+		}
+		for j, ring := range p {
+			if onOneLine(ring) {
+				out = append(out, Finding{Severity: Error, Property: ringName(len(m), i, j), Found: "of zero area: all its positions lie on one line", Allowed: "a ring around an area"})
+				continue
+			}
+			ready[i] = append(ready[i], turned(ring, j == 0))
+		}
+	}
+	if len(out) > 0 {
+		return out
+	}
+	s := newShape(ready)
+	for _, f := range s.check() {
+		out = append(out, f.finding(s))
+	}
+	return out
 }

@@ -88,6 +88,35 @@ func TestShapeRules(t *testing.T) {
 	}
 }
 
+// A hole 0.1 mm from a meridian four degrees long is inside in degrees, but crosses the chord on the plane.
+func TestCheckShapeAfterProjection(t *testing.T) {
+	layer, findings := readText(polygonText(box4, "[[1e-9,1],[1e-9,3],[2,3],[2,1],[1e-9,1]]"), LayerOptions{})
+	if findings.Err() != nil {
+		t.Fatal(findings)
+	}
+	g := layer.Features[0].Geometry
+	if got := CheckShape(g); len(got) != 0 {
+		t.Errorf("in degrees: %v", got)
+	}
+	plane, err := Transform(WGS84, System{code: 32631}, g)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := CheckShape(plane); got.Err() == nil || !strings.Contains(got[0].String(), "hole 1 is crossing the outer ring") {
+		t.Errorf("on the plane: %v", got)
+	}
+	flat := orb.Polygon{{{0, 0}, {1, 1}, {2, 2}, {0, 0}}}
+	if got := CheckShape(orb.MultiPolygon{flat}); got.Err() == nil {
+		t.Error("flat ring: want an error")
+	}
+	if got := CheckShape(orb.MultiPolygon{layer.Features[0].Geometry.(orb.Polygon), {}}); got.Err() == nil {
+		t.Error("a part without rings: want an error")
+	}
+	if got := CheckShape(orb.Point{}); got != nil {
+		t.Errorf("point: %v", got)
+	}
+}
+
 // What is not a polygon, and the frame around geometries.
 func TestReadLayerRules(t *testing.T) {
 	for name, c := range map[string]struct {

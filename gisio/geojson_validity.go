@@ -21,6 +21,15 @@ type shapeFault struct {
 	hint           string
 }
 
+// finding gives a fault of s as a finding without a place.
+func (f shapeFault) finding(s *shape) Finding {
+	severity := Error
+	if f.warning {
+		severity = Warning
+	}
+	return Finding{Severity: severity, Property: s.ringName(f.ring), Found: f.found, Allowed: f.allowed, Hint: f.hint}
+}
+
 // shape is a polygon, or several parts, under examination. Rings are closed, without repeated consecutive points and
 // not all on one line; outer rings run counterclockwise, holes clockwise.
 type shape struct {
