@@ -1,0 +1,103 @@
+package sparse
+
+import (
+	"context"
+	"fmt"
+	"os"
+	"testing"
+)
+
+// benchmarkSides are the sides of square meshes of about 20,000, 100,000 and a million nodes; the last runs only where
+// SPRINGBOUND_LONG=1.
+var benchmarkSides = []int{141, 316, 1000}
+
+func forSides(b *testing.B, run func(b *testing.B, p problem)) {
+	for _, side := range benchmarkSides {
+		b.Run(fmt.Sprint(side*side), func(b *testing.B) {
+			if side > 500 && os.Getenv("SPRINGBOUND_LONG") != "1" {
+				b.Skip("a million nodes only where SPRINGBOUND_LONG=1")
+			}
+			p := jitteredMesh(side, side, 1, 1)
+			b.ReportAllocs()
+			run(b, p)
+		})
+	}
+}
+
+func BenchmarkAnalyse(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		var s *Symbolic
+		for b.Loop() {
+			s = mustAnalyse(b, p, Options{})
+		}
+		b.ReportMetric(float64(s.NonZeros()), "nnz(L)")
+		b.ReportMetric(s.Flops(), "flops")
+		b.ReportMetric(float64(s.PeakBytes()), "peak-bytes")
+	})
+}
+
+func BenchmarkFactor(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		s := mustAnalyse(b, p, Options{})
+		for b.Loop() {
+			if _, err := s.Factor(context.Background(), p.Values); err != nil {
+				b.Fatal(err)
+			}
+		}
+		b.ReportMetric(s.Flops()/1e9*float64(b.N)/b.Elapsed().Seconds(), "Gflop/s")
+		b.ReportMetric(float64(s.FactorBytes()), "factor-bytes")
+	})
+}
+
+func BenchmarkRefactor(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		f := mustFactor(b, p, Options{})
+		for b.Loop() {
+			if err := f.Refactor(context.Background(), p.Values); err != nil {
+				b.Fatal(err)
+			}
+		}
+	})
+}
+
+func BenchmarkSolve(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		f := mustFactor(b, p, Options{})
+		for _, k := range []int{1, 16, 100} {
+			b.Run(fmt.Sprint(k), func(b *testing.B) {
+				right := randomVector(p.Pattern.N*k, 1)
+				block := make([]float64, len(right))
+				for b.Loop() {
+					copy(block, right)
+					if err := f.Solve(context.Background(), block, k); err != nil {
+						b.Fatal(err)
+					}
+				}
+				b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*k), "ns/rhs")
+			})
+		}
+	})
+}
+
+// BenchmarkSelected solves for the influence of 40 places at 300 places spread over the mesh, the costly case.
+func BenchmarkSelected(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		f := mustFactor(b, p, Options{})
+		n := int32(p.Pattern.N)
+		rhs := make([]SparseVector, 40)
+		for r := range rhs {
+			rhs[r] = SparseVector{[]int32{int32(r) * 7919 % n}, []float64{1}}
+		}
+		wanted := make([]int32, 300)
+		for w := range wanted {
+			wanted[w] = int32(int64(w) * 104729 % int64(n))
+		}
+		b.ResetTimer()
+		for b.Loop() {
+			if _, err := f.SolveSelected(context.Background(), rhs, wanted); err != nil {
+				b.Fatal(err)
+			}
+		}
+		b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*len(rhs)), "ns/rhs")
+	})
+}
