@@ -270,7 +270,7 @@ func (c *Certificate) checkProof(p *Problem, ray *Ray, u yardstick) {
 		column := p.anyColumn(j)
 		take(z[j].value(), column.Lower, column.Upper, math.Max(own[j], size/u.col[j]))
 	}
-	c.ProofMargin = -share(top.value(), terms)
+	c.ProofMargin = -share(top.value(), math.Max(terms, size*u.value))
 	c.require("the part of the proof that meets an infinite bound", stray, CertifiedNegligible)
 	if !(c.ProofMargin >= CertifiedProof) && c.Reason == "" {
 		c.Reason = fmt.Sprintf("the margin of the proof %.3g is below %.3g", c.ProofMargin, CertifiedProof)

@@ -79,7 +79,7 @@ func (e *engine) gatherBreakpoints(direction float64) {
 }
 
 // longStep picks the entering variable: it walks over the breakpoints, from one bound to the other for each boxed variable, as
-// long as the leaving value stays short of its bound by gap > 0, and then takes the largest entry among the breakpoints that lie
+// long as the leaving value stays short of its bound (gap > 0 is what it lacks, less the tolerance), and then takes the largest entry among the breakpoints that lie
 // within the tolerance of the last one (Harris). The second result is false when the walk never ends, which proves that the bound
 // cannot be met.
 //
@@ -115,10 +115,25 @@ func (e *engine) longStep(gap float64) (breakpoint, bool) {
 
 // firstStep picks the nearest breakpoint, the smallest index among equals: with the smallest leaving index it cannot cycle
 // (Bland 1977).
-func (e *engine) firstStep() (breakpoint, bool) {
+func (e *engine) firstStep(float64) (breakpoint, bool) {
 	e.passed = e.passed[:0]
 	if len(e.ratio) == 0 {
 		return breakpoint{}, false
 	}
 	return e.ratio.pop(), true
+}
+
+// retreat takes the largest entry among the breakpoints that a long step walks over. It serves a row that seems to prove that there
+// is no point while the proof is too thin to be believed.
+func (e *engine) retreat(gap float64) (breakpoint, bool) {
+	if b, ok := e.longStep(gap); ok {
+		return b, true
+	}
+	best := breakpoint{}
+	for _, b := range e.passed {
+		if b.size > best.size {
+			best = b
+		}
+	}
+	return best, best.size > 0
 }

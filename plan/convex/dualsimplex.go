@@ -95,15 +95,19 @@ func (e *engine) dual(ctx context.Context, careful bool) (outcome, int, Status) 
 			}
 			return reached, 0, 0
 		}
-		step, verdict := e.dualStep(p, by, smallest)
-		switch verdict {
-		case noPoint:
+		pick := e.longStep
+		if smallest {
+			pick = e.firstStep
+		}
+		step, verdict := e.dualStep(p, by, pick)
+		if verdict == noPoint {
 			if e.proves(p, by) {
 				return noPoint, p, 0
 			}
-			tabu[p] = true
-			continue
-		case lostAccuracy:
+			step, verdict = e.dualStep(p, by, e.retreat)
+		}
+		switch verdict {
+		case noPoint, lostAccuracy:
 			tabu[p] = true
 			continue
 		case 0:
@@ -158,18 +162,14 @@ func (e *engine) leaving(smallest bool, tabu map[int]bool) (p int, by float64) {
 
 // dualStep makes one pivot with p leaving, whose violation is by. It returns the length of the step in prices and reached, or
 // noPoint, lostAccuracy, or zero after a new factorisation.
-func (e *engine) dualStep(p int, by float64, smallest bool) (float64, outcome) {
+func (e *engine) dualStep(p int, by float64, pick func(gap float64) (breakpoint, bool)) (float64, outcome) {
 	e.pivotRow(p)
 	direction := 1.0 // the value must rise
 	if by > 0 {
 		direction = -1
 	}
 	e.gatherBreakpoints(direction)
-	pick := func() (breakpoint, bool) { return e.longStep(math.Abs(by)) }
-	if smallest {
-		pick = e.firstStep
-	}
-	b, ok := pick()
+	b, ok := pick(math.Abs(by) - e.slackOf(p, by))
 	if !ok {
 		if !e.fresh {
 			e.refactor()
@@ -204,6 +204,15 @@ func (e *engine) dualStep(p int, by float64, smallest bool) (float64, outcome) {
 	e.exchange(p, q)
 	e.iterations++
 	return t, reached
+}
+
+// slackOf returns the tolerance of the bound that p violates.
+func (e *engine) slackOf(p int, by float64) float64 {
+	bound := e.lower[p]
+	if by > 0 {
+		bound = e.upper[p]
+	}
+	return e.feasible * math.Max(1, math.Abs(bound))
 }
 
 // updatePrices takes the step in prices that makes the price of q zero and lists the boxed variables that it sends to their other

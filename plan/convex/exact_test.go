@@ -4,6 +4,8 @@ import (
 	"math"
 	"math/big"
 	"math/rand/v2"
+	"os"
+	"strconv"
 	"testing"
 )
 
@@ -248,15 +250,23 @@ func randomInteger(t testing.TB, rng *rand.Rand) *Problem {
 	return p
 }
 
+// exactStream is 5 unless SPRINGBOUND_EXACT_STREAM names another stream of random problems.
+func exactStream() uint64 {
+	if v, err := strconv.ParseUint(os.Getenv("SPRINGBOUND_EXACT_STREAM"), 10, 64); err == nil {
+		return v
+	}
+	return 5
+}
+
 // TestExactSmall compares status and optimum with rational arithmetic on problems full of ties.
 func TestExactSmall(t *testing.T) {
 	count := map[Status]int{}
 	cases := 2000
 	if long() {
-		cases = 200_000
+		cases = 100_000
 	}
 	for seed := 0; seed < cases; seed++ {
-		rng := rand.New(rand.NewPCG(uint64(seed), 5))
+		rng := rand.New(rand.NewPCG(uint64(seed), exactStream()))
 		p := randomInteger(t, rng)
 		want, value := exactSolve(p)
 		s := mustSolve(t, p, Options{})
@@ -280,6 +290,16 @@ func TestExactSmall(t *testing.T) {
 		if count[s] < cases/20 {
 			t.Errorf("only %d cases are %v", count[s], s)
 		}
+	}
+}
+
+// TestTieOfLastFlip has a row that is met exactly when a well goes from its cap to zero; with rounding in the last digit the walk
+// over the caps ends a hair short of the limit, which is no proof of infeasibility.
+func TestTieOfLastFlip(t *testing.T) {
+	p := mustProblem(t, Maximise, []Column{{Lower: -inf, Upper: inf}, {Cost: 1, Upper: 1}, {Cost: 2, Upper: inf}},
+		equal(0, 2, 0, -2), atMost(2, 0, 1, -2), equal(2, 1, 1, 1), atMost(1, -2, -2, 1), atMost(0, -2, -2, 1), equal(0, -2, 1, 2))
+	if s := mustOptimal(t, p, Options{}); !near(s.Objective, 2, rounding) {
+		t.Errorf("objective %v", s.Objective)
 	}
 }
 

@@ -20,9 +20,10 @@ func (e *engine) proves(p int, by float64) bool {
 	return e.proofOf(y) > proofMargin
 }
 
-// proofOf returns minus the largest value of y'r - (A'y)'x within all bounds, relative to the sum of the absolute terms: positive
-// when y is a proof (Farkas 1902). Multipliers of rows that meet an infinite bound are rounding and are set to zero; what meets an
-// infinite bound of a column must be negligible against the largest multiplier, entries being near one.
+// proofOf returns minus the largest value of y'r - (A'y)'x within all bounds, relative to the sum of the absolute terms, or to the
+// largest multiplier where the terms are only rounding, bounds being near one: positive when y is a proof (Farkas 1902).
+// Multipliers of rows that meet an infinite bound are rounding and are set to zero; what meets an infinite bound of a column must
+// be negligible against the largest multiplier, entries being near one.
 func (e *engine) proofOf(y []float64) float64 {
 	for i := range y {
 		if !finite(e.edge(e.n+i, y[i])) {
@@ -57,10 +58,10 @@ func (e *engine) proofOf(y []float64) float64 {
 		}
 		take(j, z)
 	}
-	if !(terms > 0) {
+	if !(size > 0) {
 		return 0
 	}
-	return -top.value() / terms
+	return -top.value() / math.Max(terms, size)
 }
 
 // edge returns the bound of v that makes z times v largest; zero when z is zero.

@@ -22,8 +22,9 @@ func (e *engine) optimise(ctx context.Context) (Status, int) {
 
 // rounds repeats the two methods, at most as often as given.
 func (e *engine) rounds(ctx context.Context, most int) (Status, int) {
+	careful := false
 	for round := 0; round < most; round++ {
-		careful := round > 0 && round >= maxRounds/2
+		careful = careful || round >= maxRounds/2
 		e.unwiden()
 		e.refactor()
 		e.makePricesRight()
@@ -35,6 +36,7 @@ func (e *engine) rounds(ctx context.Context, most int) (Status, int) {
 			return Infeasible, 0
 		case lostAccuracy:
 			e.unshift()
+			careful = true
 			continue
 		}
 		e.unshift()
@@ -52,6 +54,7 @@ func (e *engine) rounds(ctx context.Context, most int) (Status, int) {
 			}
 			continue
 		case lostAccuracy:
+			careful = true
 			continue
 		}
 		if e.polish() && e.allWithin() && e.pricesRight() {
