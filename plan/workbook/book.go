@@ -134,10 +134,22 @@ func (b *book) asPlanned() string {
 	return "Rates as planned."
 }
 
+// warnWidth is about the width of the longest warning, in digits.
+const warnWidth = 76
+
 // warnState marks the two lines on the state of the rates where they warn.
 func (s *sheet) warnState(column int) {
-	first := cellName(changedRow, column)
-	s.marks = append(s.marks, mark{first + ":" + cellName(validRow, column), fmt.Sprintf(`LEFT(%s,1)="▲"`, first), warnMark})
+	last, wide := column, s.width(column)
+	for ; wide < warnWidth; last++ {
+		wide += s.width(last + 1)
+	}
+	for row := changedRow; row <= validRow; row++ {
+		first := cellName(row, column)
+		s.marks = append(s.marks, mark{first + ":" + cellName(row, last), fmt.Sprintf(`LEFT($%s,1)="▲"`, first), warnMark})
+		for c := column + 1; c <= last; c++ {
+			s.blank(row, c, banner)
+		}
+	}
 }
 
 func joinFilled(between string, parts ...string) string {

@@ -25,6 +25,9 @@ func (b *book) fillCapture() {
 	first := summary + 1
 	total := first + len(r.Capture)
 	table := total + 2
+	if len(r.CaptureWells) > longTable {
+		s.page.titleRows = [2]int{table + 1, table + 2}
+	}
 	b.captureByWell(table, leading)
 	lower := table + 3
 	last := lower + len(r.CaptureWells) - 1

@@ -23,6 +23,9 @@ func (b *book) fillContributions() {
 	}
 	last := leading + len(receptors)
 	row := s.sectionHead(firstRow+1, last, "Contributions")
+	if len(b.report.Wells) > longTable {
+		s.page.titleRows = [2]int{row, row + 1}
+	}
 	row = b.receptorHeads(s, row, leading, true)
 	first := row
 	formats := b.contributionFormats()

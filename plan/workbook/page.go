@@ -16,6 +16,8 @@ type pageSetup struct {
 	freezeRow    int // rows above stay in view
 	freezeColumn int // columns left of it stay in view
 	rowBreaks    []int
+	lastRow      int // of what is printed; 0 prints all
+	lastColumn   int
 }
 
 // Inches: A4 is 8.27 x 11.69, Letter 8.5 x 11; the printable widths leave the side margins off the narrower one.

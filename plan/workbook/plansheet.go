@@ -40,9 +40,9 @@ func (b *book) layPlan() {
 	converted := b.unit.factor != 1
 	place(&p.id, 9)
 	place(&p.name, 17)
-	place(&p.owner, 15)
+	place(&p.owner, 17)
 	place(&p.mode, 8.5)
-	place(&p.whose, 9)
+	place(&p.whose, 12.5)
 	place(&p.planned, 10)
 	place(&p.now, 10.5)
 	if converted {
@@ -58,7 +58,7 @@ func (b *book) layPlan() {
 	place(&p.volume, 11)
 	place(&p.least, 8.5)
 	place(&p.most, 8.5)
-	place(&p.within, 16)
+	place(&p.within, 20)
 	p.rates = column
 	place(&p.idAgain, 9)
 	place(&p.price, 10)
@@ -77,11 +77,11 @@ func (b *book) layPlan() {
 	place(&p.lowest, 9.5)
 	place(&p.reason, 19)
 	place(&p.margin, 9)
-	place(&p.levelStatus, 13)
+	place(&p.levelStatus, 15)
 	place(&p.levelPrice, 10.5)
 	place(&p.top, 9)
 	place(&p.overTop, 9)
-	place(&p.valid, 9)
+	place(&p.valid, 9.5)
 	p.end = column
 	s.page = pageSetup{landscape: true, groupEnds: []int{p.rates, prices, column}, titleRows: [2]int{planHeadRow - 1, planHeadRow},
 		freezeRow: planHeadRow + 1, freezeColumn: p.name + 1}

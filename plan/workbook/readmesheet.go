@@ -23,6 +23,7 @@ func (b *book) fillReadMe() {
 	if len(b.report.Findings) > 0 {
 		row = b.listPart(row+1, "Found in the input", b.report.Findings, "")
 	}
+	s.page.rowBreaks = append(s.page.rowBreaks, row+1)
 	row = b.guidePart(row + 1)
 	row = b.unitPart(row + 1)
 	row = b.recordPart(row + 1)

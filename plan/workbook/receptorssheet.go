@@ -43,7 +43,7 @@ type limitLine struct {
 // fillReceptors writes effects on levels and effects on flows, each as receptors and then their limits.
 func (b *book) fillReceptors() {
 	s := b.receptors
-	s.setWidths(1, 10, 19, 17, 17, 6.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 12.5, 11, 36, 22)
+	s.setWidths(1, 10, 19, 17, 17, 6.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 16, 11, 36, 22)
 	s.page = pageSetup{landscape: true, wide: 1, freezeRow: changedRow + 2, freezeColumn: recName + 1}
 	row := firstRow
 	for _, part := range []struct {

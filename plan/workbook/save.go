@@ -185,6 +185,12 @@ func (b *book) saveProperties() error {
 		}
 	}
 	for _, s := range b.sheets() {
+		if s.page.lastRow > 0 {
+			area := s.blockText(nil, 1, 1, s.page.lastRow, s.page.lastColumn)
+			if err := f.SetDefinedName(&excelize.DefinedName{Name: "_xlnm.Print_Area", RefersTo: area, Scope: s.name}); err != nil {
+				return err
+			}
+		}
 		if t := s.printTitles(); t != "" {
 			if err := f.SetDefinedName(&excelize.DefinedName{Name: "_xlnm.Print_Titles", RefersTo: t, Scope: s.name}); err != nil {
 				return err

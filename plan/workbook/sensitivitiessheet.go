@@ -60,6 +60,10 @@ func (b *book) fillSensitivities() {
 	if len(b.facts.assessed) == 0 {
 		s.text(sensHeadRow, sensLeading+1, "No receptor was assessed.", under)
 	}
+	if n > longTable {
+		s.page.titleRows = [2]int{sensHeadRow, sensHeadRow + 2}
+		s.page.lastRow, s.page.lastColumn = l.last+2, sensLeading+max(1, len(b.facts.assessed))
+	}
 	b.fillWellMatrix(l.last + 2)
 }
 
@@ -109,16 +113,23 @@ func value(x *float64) float64 {
 	return *x
 }
 
+// longTable is the number of wells from which a table runs over several pages: its heads repeat, and matrices of wells by wells stay
+// on the screen.
+const longTable = 25
+
 // fillWellMatrix writes the drawdown per rate at the wells' nodes.
 func (b *book) fillWellMatrix(row int) {
 	s, l := b.sensitivities, &b.sens
 	nodes := b.facts.wellDrop
-	row = s.sectionHead(row, sensLeading+max(1, len(nodes)), "Wells: drawdown in the aquifer at each well per rate (head of a column: the well where the level falls)")
+	row = s.sectionHead(row+1, sensLeading+max(1, len(nodes)), "Wells: drawdown in the aquifer at each well per rate (head of a column: the well where the level falls)")
 	if len(nodes) == 0 {
 		s.nothing(row, sensLeading, "Not known: levels in wells do not follow the rates in this workbook.")
 		return
 	}
 	s.heads(row, 1, "Pumping well", "Name")
+	if s.page.lastRow > 0 {
+		s.text(row-2, 1, "Not printed: the drawdown per rate at the wells, below on this sheet.", under)
+	}
 	for c := 3; c <= sensLeading; c++ {
 		s.blank(row, c, head)
 		s.blank(row+1, c, head)

@@ -86,7 +86,7 @@ func rateFormat(values ...float64) string {
 	case top >= 100:
 		return "#,##0.0"
 	case top >= 10:
-		return "0.00"
+		return "#,##0.00"
 	}
 	return decimals(figuresOf(top, 3))
 }
