@@ -1,8 +1,8 @@
 package mesh
 
-// Bisect cuts every triangle into four similar ones at its edge midpoints and carries all provenance over: triangle t becomes
-// 4t..4t+3, the last one the inner; the first nodes keep their numbers. Angles, and with them the Delaunay property of interior
-// pairs that a constraint does not separate, stay as they are; Quality is that of the coarse mesh but for the counts.
+// Bisect cuts every triangle into four similar ones at its edge midpoints and carries all provenance over; triangle t becomes
+// 4t..4t+3, the last one the inner, and the first nodes keep their numbers. An obtuse triangle's inner edge faces twice the
+// obtuse angle, so edges are then flipped until all are Delaunay again (Lawson 1977), never across a constrained edge.
 func (m *Mesh) Bisect() *Mesh {
 	n := len(m.Region)
 	f := &Mesh{X: append([]float64(nil), m.X...), Y: append([]float64(nil), m.Y...)}
@@ -21,6 +21,8 @@ func (m *Mesh) Bisect() *Mesh {
 		}
 	}
 	f.cutInFour(m, middle)
+	f.metrics = m.metrics
+	sharp := f.flipObtuse(m)
 	f.PointNode = append([]int32(nil), m.PointNode...)
 	f.Regions = append([]Region(nil), m.Regions...)
 	for i := range f.Regions {
@@ -29,11 +31,7 @@ func (m *Mesh) Bisect() *Mesh {
 	f.Parts = m.Parts
 	f.Notes = append([]Note(nil), m.Notes...)
 	f.Quality = m.Quality
-	f.Quality.Nodes, f.Quality.Triangles = len(f.X), 4*n
-	f.Quality.PoorAtSharpInput *= 4
-	f.Quality.PoorOther *= 4
-	f.Quality.EncroachedLeft *= 2
-	f.Quality.EncroachedAtSharp *= 2
+	f.measure(func(t int32) bool { return sharp[t] })
 	f.incidence()
 	f.halveEdges(m, middle)
 	return f
@@ -72,6 +70,49 @@ func (f *Mesh) cutInFour(m *Mesh, middle []int32) {
 			f.Region[4*t+k] = m.Region[t]
 		}
 	}
+}
+
+// flipObtuse restores the Delaunay property and tells which triangles come from ones at sharp corners.
+func (f *Mesh) flipObtuse(m *Mesh) (sharp []bool) {
+	g := &triangulation{p: make([]vertex, len(f.X)), t: make([]triangle, len(f.Region)), metrics: f.metrics}
+	for i := range f.X {
+		g.p[i] = vertex{x: f.X[i], y: f.Y[i]}
+	}
+	sharp = make([]bool, len(f.Region))
+	for t := range g.t {
+		sharp[t] = m.sharp[t/4]
+		tr := &g.t[t]
+		tr.region = f.Region[t]
+		for k := range 3 {
+			tr.v[k], tr.n[k], tr.s[k] = f.Triangles[3*t+k], -1, -1
+			if e := f.Neighbours[3*t+k]; e >= 0 {
+				tr.n[k] = 4*e + int32(f.backEdge(e, t, k))
+			}
+			if f.Constraint[t]>>k&1 == 1 {
+				tr.s[k] = 0
+			}
+		}
+	}
+	g.delaunayAll()
+	for t := range g.t {
+		tr := &g.t[t]
+		f.Constraint[t] = 0
+		for k := range 3 {
+			if f.Triangles[3*t+k] != tr.v[k] {
+				for _, e := range tr.n { // flipped: what was sharp next to it may lie here now
+					sharp[t] = sharp[t] || e >= 0 && m.sharp[e>>4]
+				}
+			}
+			f.Triangles[3*t+k], f.Neighbours[3*t+k] = tr.v[k], -1
+			if tr.n[k] >= 0 {
+				f.Neighbours[3*t+k] = tr.n[k] >> 2
+			}
+			if tr.s[k] >= 0 {
+				f.Constraint[t] |= 1 << k
+			}
+		}
+	}
+	return sharp
 }
 
 // halfNeighbour is the fine triangle across the half of coarse edge k of t that touches corner c of t.

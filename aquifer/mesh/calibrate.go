@@ -3,9 +3,9 @@ package mesh
 import "math"
 
 const (
-	sampleVariation = 0.5 // an integration sample is cut while the size may vary across it by more than this share
-	sampleDepth     = 30  // halvings at most
-	nodesPerIdeal   = 1.0 // nodes made for each node of a mesh of equilateral triangles of the wanted size, measured
+	sampleVariation = 0.5  // an integration sample is cut while the size may vary across it by more than this share
+	sampleDepth     = 30   // halvings at most
+	nodesPerIdeal   = 0.98 // nodes made for each node of a mesh of equilateral triangles of the wanted size: at least, measured
 )
 
 // sample is a part of the domain or of its outline over which the size is about the same.

@@ -9,45 +9,42 @@ import (
 
 // finish turns the refined triangulation into a Mesh.
 func (r *refiner) finish(d Domain, o Options, g *planar) *Mesh {
-	m := &Mesh{Notes: g.notes}
-	r.pack(m)
+	m := &Mesh{Notes: g.notes, metrics: r.metrics}
+	m.Quality = Quality{WantedAngleDeg: o.MinAngleDeg, BudgetHit: r.budgetHit, Coarsest: r.field.coarsest, Tolerance: o.Tolerance}
+	slot := r.pack(m)
 	m.PointNode = append([]int32(nil), r.point...)
 	m.fillRegions(r)
 	m.incidence()
 	m.provenance(r, d)
 	m.noteDropped(d, o.Tolerance)
-	m.measure(r, o)
+	m.measure(func(t int32) bool { return r.atSharp(slot[t]) })
 	return m
 }
 
-// pack copies nodes and triangles, leaving out free slots.
-func (r *refiner) pack(m *Mesh) {
+// pack copies nodes and triangles, leaving out free slots, and gives the slot of each triangle.
+func (r *refiner) pack(m *Mesh) (slot []int32) {
 	number := make([]int32, len(r.t))
-	n := int32(0)
 	for t := range r.t {
 		number[t] = -1
 		if r.t[t].v[0] >= 0 {
-			number[t] = n
-			n++
+			number[t] = int32(len(slot))
+			slot = append(slot, int32(t))
 		}
 	}
+	n := len(slot)
 	m.X, m.Y = make([]float64, len(r.p)), make([]float64, len(r.p))
 	for i := range r.p {
 		m.X[i], m.Y[i] = r.p[i].x, r.p[i].y
 	}
 	m.Triangles, m.Neighbours = make([]int32, 3*n), make([]int32, 3*n)
 	m.Constraint, m.Region = make([]uint8, n), make([]int32, n)
-	for t := range r.t {
-		i := number[t]
-		if i < 0 {
-			continue
-		}
+	for i, t := range slot {
 		tr := &r.t[t]
 		for k := range 3 {
-			m.Triangles[3*int(i)+k] = tr.v[k]
-			m.Neighbours[3*int(i)+k] = -1
+			m.Triangles[3*i+k] = tr.v[k]
+			m.Neighbours[3*i+k] = -1
 			if tr.n[k] >= 0 {
-				m.Neighbours[3*int(i)+k] = number[tr.n[k]>>2]
+				m.Neighbours[3*i+k] = number[tr.n[k]>>2]
 			}
 			if tr.s[k] >= 0 {
 				m.Constraint[i] |= 1 << k
@@ -55,6 +52,7 @@ func (r *refiner) pack(m *Mesh) {
 		}
 		m.Region[i] = tr.region
 	}
+	return slot
 }
 
 // fillRegions sums the regions and finds the connected parts of the domain.

@@ -10,20 +10,22 @@ type shape struct {
 	radius float64    // squared circumradius
 }
 
+// newShape measures a triangle by its second and third corner, seen from the first.
+func newShape(bx, by, cx, cy float64) shape {
+	s := shape{x: [3]float64{0, bx, cx}, y: [3]float64{0, by, cy}}
+	dx, dy := cx-bx, cy-by
+	s.l2 = [3]float64{dx*dx + dy*dy, cx*cx + cy*cy, bx*bx + by*by}
+	s.cross = bx*cy - by*cx
+	s.radius = s.l2[0] * s.l2[1] * s.l2[2] / (4 * s.cross * s.cross)
+	return s
+}
+
 // shapeOf measures a triangle.
 func (m *triangulation) shapeOf(t int32) shape {
 	tr := &m.t[t]
-	var s shape
-	s.x[1], s.y[1] = m.vector(tr.region, tr.v[0], tr.v[1])
-	s.x[2], s.y[2] = m.vector(tr.region, tr.v[0], tr.v[2])
-	for k := range 3 {
-		i, j := next3[k], prev3[k]
-		dx, dy := s.x[j]-s.x[i], s.y[j]-s.y[i]
-		s.l2[k] = dx*dx + dy*dy
-	}
-	s.cross = s.x[1]*s.y[2] - s.y[1]*s.x[2]
-	s.radius = s.l2[0] * s.l2[1] * s.l2[2] / (4 * s.cross * s.cross)
-	return s
+	bx, by := m.vector(tr.region, tr.v[0], tr.v[1])
+	cx, cy := m.vector(tr.region, tr.v[0], tr.v[2])
+	return newShape(bx, by, cx, cy)
 }
 
 // centre is the circumcentre relative to corner 0.

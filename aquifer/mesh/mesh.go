@@ -64,6 +64,8 @@ type Mesh struct {
 	nodeStart []int32 // NodeTriangles: start per node in nodeTris, length nodes+1
 	nodeTris  []int32
 	locator   locator
+	metrics   []metric // per region; nil = Euclidean everywhere
+	sharp     []bool   // per triangle: at a sharp corner of the input; told for poor and encroaching ones only
 }
 
 // Region is a connected set of triangles bounded by lines and outline.

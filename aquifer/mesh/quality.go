@@ -15,52 +15,68 @@ func dropText(name string, out, total float64) string {
 	return fmt.Sprintf("%s: %.4g m of its %.4g m lie outside the domain and were dropped", name, out, total)
 }
 
-// measure fills in the Quality. Angles are those in the metric of each region.
-func (m *Mesh) measure(r *refiner, o Options) {
+// measure fills in the Quality's counts. Angles are those in the metric of each region. atSharp is asked for poor triangles and
+// for those that face a segment with an obtuse angle; the answers are kept.
+func (m *Mesh) measure(atSharp func(t int32) bool) {
 	q := &m.Quality
-	*q = Quality{Nodes: len(m.X), Triangles: len(m.Region), WantedAngleDeg: o.MinAngleDeg, BudgetHit: r.budgetHit,
-		Coarsest: r.field.coarsest, Tolerance: o.Tolerance, MinAngleDeg: 180, MinAngleFreeDeg: 180}
-	obtuse := 0
-	sinWanted := math.Sin(o.MinAngleDeg * math.Pi / 180)
-	sin2All, sin2Free := 1.0, 1.0
-	for t := range r.t {
-		tr := &r.t[t]
-		if tr.v[0] < 0 {
-			continue
-		}
-		s := r.shapeOf(int32(t))
-		k := s.shortest()
-		sin2 := s.l2[k] / (4 * s.radius) // of the smallest angle: edge = 2 R sin
-		sin2All = min(sin2All, sin2)
-		if sin2 < sinWanted*sinWanted || sin2 < sin2Free {
-			sharp := r.atSharp(int32(t))
-			if !sharp {
-				sin2Free = min(sin2Free, sin2)
-			}
-			switch {
-			case !(sin2 < sinWanted*sinWanted):
-			case sharp:
-				q.PoorAtSharpInput++
-			default:
-				q.PoorOther++
+	q.Nodes, q.Triangles = len(m.X), len(m.Region)
+	q.PoorAtSharpInput, q.PoorOther, q.EncroachedLeft, q.EncroachedAtSharp = 0, 0, 0, 0
+	m.sharp = make([]bool, len(m.Region))
+	sin := math.Sin(q.WantedAngleDeg * math.Pi / 180)
+	all, free, obtuse := 1.0, 1.0, 0
+	for t := range m.Region {
+		s := m.shapeOf(t)
+		sin2 := s.l2[s.shortest()] / (4 * s.radius) // of the smallest angle: edge = 2 R sin
+		all = min(all, sin2)
+		poor := !(sin2 >= sin*sin)
+		widest := 0
+		for k := range 3 {
+			if s.l2[k] > s.l2[widest] {
+				widest = k
 			}
 		}
-		longest := max(s.l2[0], s.l2[1], s.l2[2])
-		if s.l2[0]+s.l2[1]+s.l2[2]-2*longest < -rightAngleSlack*longest {
+		wide := s.l2[0]+s.l2[1]+s.l2[2]-2*s.l2[widest] < -rightAngleSlack*s.l2[widest]
+		encroached := wide && m.Constraint[t]>>widest&1 == 1
+		if poor || encroached {
+			m.sharp[t] = atSharp(int32(t))
+		}
+		if !m.sharp[t] {
+			free = min(free, sin2)
+		}
+		if wide {
 			obtuse++
 		}
-		for k := int32(0); k < 3; k++ {
-			if tr.s[k] >= 0 && r.encroached(int32(t), k) {
-				q.EncroachedLeft++
-				if r.atSharp(int32(t)) {
-					q.EncroachedAtSharp++
-				}
-			}
+		count(poor, m.sharp[t], &q.PoorAtSharpInput, &q.PoorOther)
+		if encroached {
+			q.EncroachedLeft++
+			count(m.sharp[t], true, &q.EncroachedAtSharp, nil)
 		}
 	}
-	q.MinAngleDeg = math.Asin(math.Sqrt(sin2All)) * 180 / math.Pi
-	q.MinAngleFreeDeg = math.Asin(math.Sqrt(sin2Free)) * 180 / math.Pi
+	q.MinAngleDeg = math.Asin(math.Sqrt(all)) * 180 / math.Pi
+	q.MinAngleFreeDeg = math.Asin(math.Sqrt(free)) * 180 / math.Pi
 	q.ObtuseShare = float64(obtuse) / float64(q.Triangles)
+}
+
+// count adds one to yes or no when something holds.
+func count(holds, which bool, yes, no *int) {
+	switch {
+	case !holds:
+	case which:
+		*yes++
+	default:
+		*no++
+	}
+}
+
+// shapeOf measures triangle t in the metric of its region.
+func (m *Mesh) shapeOf(t int) shape {
+	a, b, c := m.Triangles[3*t], m.Triangles[3*t+1], m.Triangles[3*t+2]
+	bx, by, cx, cy := m.X[b]-m.X[a], m.Y[b]-m.Y[a], m.X[c]-m.X[a], m.Y[c]-m.Y[a]
+	if m.metrics != nil {
+		bx, by = m.metrics[m.Region[t]].to(bx, by)
+		cx, cy = m.metrics[m.Region[t]].to(cx, cy)
+	}
+	return newShape(bx, by, cx, cy)
 }
 
 // atSharp says whether a triangle lies at a sharp corner of the input: a corner of it is that vertex, or two of its corners lie
