@@ -185,3 +185,14 @@ func (f *Field) Receptor(row int) (wells.Receptor, bool) {
 	}
 	return wells.Receptor{}, false
 }
+
+// FixedFunctionals returns the functionals of the rows that are fixed, in order: what Solve takes.
+func (f *Field) FixedFunctionals() []Functional {
+	var out []Functional
+	for _, x := range f.watched {
+		if x.worst == nil {
+			out = append(out, x.functional)
+		}
+	}
+	return out
+}

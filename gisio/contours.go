@@ -34,12 +34,41 @@ type ContourLine struct {
 //
 // Method: crossing points by linear interpolation on edges, joined through the edges that triangles share.
 func Contours(x, y []float64, triangles []int32, values, levels []float64) ([]Contour, error) {
-	if len(y) != len(x) || len(values) != len(x) || len(triangles)%3 != 0 {
-		panic(fmt.Sprintf("gisio: Contours: %d x, %d y, %d values, %d corners", len(x), len(y), len(values), len(triangles)))
+	m, err := NewContourMesh(x, y, triangles)
+	if err != nil {
+		return nil, err
+	}
+	return m.Contours(values, levels)
+}
+
+// ContourMesh is a mesh that many fields are contoured on: its edges are found once. It is not for use by several goroutines at
+// once.
+type ContourMesh struct{ tracer contourTracer }
+
+// NewContourMesh prepares a mesh as Contours takes it, with the same errors and panics.
+func NewContourMesh(x, y []float64, triangles []int32) (*ContourMesh, error) {
+	if len(y) != len(x) || len(triangles)%3 != 0 {
+		panic(fmt.Sprintf("gisio: Contours: %d x, %d y, %d corners", len(x), len(y), len(triangles)))
 	}
 	for i := range x {
-		if !finite(x[i]) || !finite(y[i]) || !finite(values[i]) {
-			return nil, fmt.Errorf("contours: node %d at (%v, %v) has the value %v: all three must be finite", i, x[i], y[i], values[i])
+		if !finite(x[i]) || !finite(y[i]) {
+			return nil, fmt.Errorf("contours: node %d is at (%v, %v): both must be finite", i, x[i], y[i])
+		}
+	}
+	m := &ContourMesh{contourTracer{x: x, y: y, triangles: triangles}}
+	m.tracer.findEdges()
+	return m, nil
+}
+
+// Contours is the function of the same name for one field over the mesh.
+func (m *ContourMesh) Contours(values, levels []float64) ([]Contour, error) {
+	t := &m.tracer
+	if len(values) != len(t.x) {
+		panic(fmt.Sprintf("gisio: Contours: %d nodes, %d values", len(t.x), len(values)))
+	}
+	for i, v := range values {
+		if !finite(v) {
+			return nil, fmt.Errorf("contours: node %d at (%v, %v) has the value %v: it must be finite", i, t.x[i], t.y[i], v)
 		}
 	}
 	levels = slices.Clone(levels)
@@ -50,7 +79,7 @@ func Contours(x, y []float64, triangles []int32, values, levels []float64) ([]Co
 	}
 	slices.Sort(levels)
 	levels = slices.Compact(levels)
-	t := newContourTracer(x, y, triangles, values)
+	t.take(values)
 	out := make([]Contour, len(levels))
 	for i, level := range levels {
 		out[i] = Contour{Level: level + 0, Lines: t.lines(level)}
@@ -78,46 +107,72 @@ type contourSegment struct {
 	used     bool
 }
 
-func newContourTracer(x, y []float64, triangles []int32, values []float64) *contourTracer {
-	n := len(triangles) / 3
-	t := &contourTracer{x: x, y: y, values: values, triangles: triangles,
-		ofTriangle: make([][3]int32, n), lowest: make([]float64, n), highest: make([]float64, n)}
+// findEdges numbers the edges in order of their nodes: half edges are put into buckets by the smaller node, each bucket then sorted.
+func (t *contourTracer) findEdges() {
+	n := len(t.triangles) / 3
+	t.ofTriangle = make([][3]int32, n)
+	t.lowest, t.highest = make([]float64, n), make([]float64, n)
 	type half struct {
-		a, b int32
-		slot int32 // 3 triangle + corner opposite
+		b, slot int32 // the larger node; 3 triangle + corner opposite
 	}
-	halves := make([]half, 0, 3*n)
-	for k := range n {
-		c := triangles[3*k : 3*k+3]
-		for i := range 3 {
-			if c[i] < 0 || int(c[i]) >= len(x) {
-				panic(fmt.Sprintf("gisio: Contours: triangle %d has the node %d of %d", k, c[i], len(x)))
+	start := make([]int32, len(t.x)+1)
+	ends := func(slot int) (a, b int32) {
+		k, i := slot/3, slot%3
+		p, q := t.triangles[3*k+(i+1)%3], t.triangles[3*k+(i+2)%3]
+		return min(p, q), max(p, q)
+	}
+	for i, c := range t.triangles {
+		if c < 0 || int(c) >= len(t.x) {
+			panic(fmt.Sprintf("gisio: Contours: triangle %d has the node %d of %d", i/3, c, len(t.x)))
+		}
+	}
+	for slot := range t.triangles {
+		a, _ := ends(slot)
+		start[a+1]++
+	}
+	for a := range t.x {
+		start[a+1] += start[a]
+	}
+	next := slices.Clone(start)
+	halves := make([]half, len(t.triangles))
+	for slot := range t.triangles {
+		a, b := ends(slot)
+		halves[next[a]] = half{b, int32(slot)}
+		next[a]++
+	}
+	for a := range t.x {
+		bucket := halves[start[a]:start[a+1]]
+		slices.SortFunc(bucket, func(p, q half) int {
+			if p.b != q.b {
+				return int(p.b) - int(q.b)
 			}
-			a, b := c[(i+1)%3], c[(i+2)%3]
-			halves = append(halves, half{min(a, b), max(a, b), int32(3*k + i)})
+			return int(p.slot) - int(q.slot)
+		})
+		shared := 0
+		for i, h := range bucket {
+			if i == 0 || h.b != bucket[i-1].b {
+				t.edges = append(t.edges, [2]int32{int32(a), h.b})
+				shared = 0
+			}
+			if shared++; shared > 2 {
+				panic(fmt.Sprintf("gisio: Contours: the edge between nodes %d and %d has more than two triangles", a, h.b))
+			}
+			t.ofTriangle[h.slot/3][h.slot%3] = int32(len(t.edges) - 1)
 		}
-		v0, v1, v2 := values[c[0]], values[c[1]], values[c[2]]
-		t.lowest[k], t.highest[k] = min(v0, v1, v2), max(v0, v1, v2)
-	}
-	slices.SortFunc(halves, func(p, q half) int {
-		return cmp.Or(cmp.Compare(p.a, q.a), cmp.Compare(p.b, q.b), cmp.Compare(p.slot, q.slot))
-	})
-	shared := 0
-	for i, h := range halves {
-		if i == 0 || h.a != halves[i-1].a || h.b != halves[i-1].b {
-			t.edges = append(t.edges, [2]int32{h.a, h.b})
-			shared = 0
-		}
-		if shared++; shared > 2 {
-			panic(fmt.Sprintf("gisio: Contours: the edge between nodes %d and %d has more than two triangles", h.a, h.b))
-		}
-		t.ofTriangle[h.slot/3][h.slot%3] = int32(len(t.edges) - 1)
 	}
 	t.meeting = make([][2]int32, len(t.edges))
 	for i := range t.meeting {
 		t.meeting[i] = [2]int32{-1, -1}
 	}
-	return t
+}
+
+// take makes the tracer ready for a field.
+func (t *contourTracer) take(values []float64) {
+	t.values = values
+	for k := range t.ofTriangle {
+		v0, v1, v2 := values[t.triangles[3*k]], values[t.triangles[3*k+1]], values[t.triangles[3*k+2]]
+		t.lowest[k], t.highest[k] = min(v0, v1, v2), max(v0, v1, v2)
+	}
 }
 
 // lines gives the lines of one level in their order.

@@ -14,6 +14,7 @@ const contourCount = 10
 // maps gathers the contour files of a run.
 type maps struct {
 	job   *job
+	mesh  *gisio.ContourMesh
 	files []outputFile
 }
 
@@ -21,13 +22,20 @@ func newMaps(j *job) *maps { return &maps{job: j} }
 
 // add contours a nodal field and writes it in longitude and latitude. unitKey is the property that holds the level, with its unit.
 func (m *maps) add(name, unitKey string, field []float64) error {
-	mesh := m.job.field.Model.Mesh
+	if m.mesh == nil {
+		msh := m.job.field.Model.Mesh
+		prepared, err := gisio.NewContourMesh(msh.X, msh.Y, msh.Triangles)
+		if err != nil {
+			return fmt.Errorf("%s: %w", name, err)
+		}
+		m.mesh = prepared
+	}
 	low, high := math.Inf(1), math.Inf(-1)
 	for _, v := range field {
 		low, high = math.Min(low, v), math.Max(high, v)
 	}
 	levels := gisio.NiceLevels(low, high, contourCount)
-	contours, err := gisio.Contours(mesh.X, mesh.Y, mesh.Triangles, field, levels)
+	contours, err := m.mesh.Contours(field, levels)
 	if err != nil {
 		return fmt.Errorf("%s: %w", name, err)
 	}
