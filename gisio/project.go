@@ -82,7 +82,16 @@ const maxProjectBytes = 4 << 20
 // ReadProject reads a project file with its layers and tables. It goes on after an error, so that the findings hold every
 // problem of every file that can be known; the project is nil when one of them is an error.
 func ReadProject(ctx context.Context, path string) (*Project, Findings) {
-	b := &builder{p: &Project{File: filepath.Base(path), Dir: filepath.Dir(path)}, hashed: map[string]bool{}, names: map[string]string{}, broken: map[string]bool{}}
+	dir := filepath.Dir(path)
+	return readProject(ctx, dir, filepath.Base(path), func(name string, limit int64) ([]byte, string) {
+		return readFile(filepath.Join(dir, filepath.FromSlash(name)), limit)
+	})
+}
+
+// readProject reads a project whose files come from fetch: the bytes of a file by its name in the project, or in words why it cannot
+// be read.
+func readProject(ctx context.Context, dir, file string, fetch func(name string, limit int64) ([]byte, string)) (*Project, Findings) {
+	b := &builder{p: &Project{File: file, Dir: dir}, fetch: fetch, hashed: map[string]bool{}, names: map[string]string{}, broken: map[string]bool{}}
 	b.read(ctx)
 	if b.findings.Err() != nil {
 		return nil, b.findings
@@ -95,6 +104,7 @@ func ReadProject(ctx context.Context, path string) (*Project, Findings) {
 type builder struct {
 	reader
 	p        *Project
+	fetch    func(name string, limit int64) ([]byte, string)
 	settings *settings
 	hashed   map[string]bool
 	stated   System // working plane where it is stated
@@ -149,27 +159,9 @@ func (b *builder) read(ctx context.Context) {
 
 // file reads a file relative to the project's directory and notes its hash.
 func (b *builder) file(name, layer string, limit int64) ([]byte, bool) {
-	full := filepath.Join(b.p.Dir, filepath.FromSlash(name))
-	info, err := os.Stat(full)
-	f := Finding{File: name, Layer: layer}
-	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		f.Found, f.Hint = "no such file", "paths count from the project file"
-	case err != nil:
-		f.Found = "a file that cannot be read: " + plainError(err)
-	case !info.Mode().IsRegular():
-		f.Found = "not a plain file"
-	case info.Size() > limit:
-		f.Found, f.Allowed = fmt.Sprintf("a file of %d bytes", info.Size()), fmt.Sprintf("up to %d bytes", limit)
-	}
-	if f.Found != "" {
-		b.fail(f)
-		return nil, false
-	}
-	data, err := os.ReadFile(full)
-	if err != nil {
-		f.Found = "a file that cannot be read: " + plainError(err)
-		b.fail(f)
+	data, problem := b.fetch(name, limit)
+	if problem != "" {
+		b.fail(Finding{File: name, Layer: layer, Found: problem, Hint: "paths count from the project file"})
 		return nil, false
 	}
 	if !b.hashed[name] {
@@ -178,6 +170,26 @@ func (b *builder) file(name, layer string, limit int64) ([]byte, bool) {
 		b.p.Inputs = append(b.p.Inputs, plan.InputFile{File: name, SHA256: hex.EncodeToString(sum[:])})
 	}
 	return data, true
+}
+
+// readFile reads a plain file of limited size; problem says in words why it cannot.
+func readFile(path string, limit int64) (data []byte, problem string) {
+	info, err := os.Stat(path)
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		return nil, "no such file"
+	case err != nil:
+		return nil, "a file that cannot be read: " + plainError(err)
+	case !info.Mode().IsRegular():
+		return nil, "not a plain file"
+	case info.Size() > limit:
+		return nil, fmt.Sprintf("a file of %d bytes, more than the %d that are read", info.Size(), limit)
+	}
+	data, err = os.ReadFile(path)
+	if err != nil {
+		return nil, "a file that cannot be read: " + plainError(err)
+	}
+	return data, ""
 }
 
 // plainError leaves the path out of a file error: it is named already.
@@ -286,6 +298,9 @@ func (b *builder) readLayers() {
 		layer, findings := ReadLayer(spec.file, data, opt)
 		b.findings = append(b.findings, findings...)
 		b.broken[spec.name] = findings.Err() != nil
+		if len(layer.Features) == 0 && len(findings) == 0 {
+			b.warn(Finding{File: spec.file, Layer: spec.name, Found: "a layer without features"})
+		}
 		system := spec.system
 		if layer.CRS != "" {
 			if s, err := ParseEPSG(layer.CRS); err == nil {
@@ -313,6 +328,9 @@ func (b *builder) readTables() {
 		b.findings = append(b.findings, findings...)
 		if findings.Err() != nil || len(grid.Rows) == 0 {
 			b.broken[spec.name] = true
+		}
+		if len(grid.Rows) == 0 && findings.Err() == nil {
+			b.fail(Finding{File: spec.file, Layer: spec.name, Found: "an empty table", Allowed: "a row of headers and rows of values"})
 		}
 		rows := b.rows(grid, tableSections[spec.name], maps[spec.name], b.p.File)
 		b.tables[spec.name] = &tableData{file: spec.file, system: spec.system, rows: rows}

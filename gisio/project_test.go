@@ -4,7 +4,6 @@ import (
 	"context"
 	"flag"
 	"os"
-	"path/filepath"
 	"strings"
 	"testing"
 )
@@ -14,31 +13,38 @@ type edit struct {
 	file, old, new string
 }
 
-// apply writes the starter project with edits into a fresh directory and returns the project file's path. An edit whose text is not
-// there fails the test, so that no row tests nothing.
-func apply(t *testing.T, edits ...edit) string {
+// files is a project in memory.
+type files map[string]string
+
+// read reads the project.
+func (f files) read() (*Project, Findings) {
+	return readProject(context.Background(), ".", "project.toml", func(name string, limit int64) ([]byte, string) {
+		text, ok := f[name]
+		if !ok {
+			return nil, "no such file"
+		}
+		return []byte(text), ""
+	})
+}
+
+// apply makes the starter project with edits. An edit whose text is not there fails the test, so that no row tests nothing.
+func apply(t *testing.T, edits ...edit) files {
 	t.Helper()
-	dir := t.TempDir()
-	files := map[string]string{}
+	all := files{}
 	for _, f := range StarterFiles() {
-		files[f.Name] = string(f.Data)
+		all[f.Name] = string(f.Data)
 	}
 	for _, e := range edits {
 		if e.old == "" {
-			files[e.file] = e.new
+			all[e.file] = e.new
 			continue
 		}
-		if !strings.Contains(files[e.file], e.old) {
+		if !strings.Contains(all[e.file], e.old) {
 			t.Fatalf("%s does not hold %q", e.file, e.old)
 		}
-		files[e.file] = strings.Replace(files[e.file], e.old, e.new, 1)
+		all[e.file] = strings.Replace(all[e.file], e.old, e.new, 1)
 	}
-	for name, text := range files {
-		if err := os.WriteFile(filepath.Join(dir, name), []byte(text), 0o644); err != nil {
-			t.Fatal(err)
-		}
-	}
-	return filepath.Join(dir, "project.toml")
+	return all
 }
 
 // rule is one message rule: edits of the starter project that break it.
@@ -51,6 +57,9 @@ var update = flag.Bool("update", false, "rewrite the golden files")
 
 // golden is where the findings of every rule stand, under their labels.
 const golden = "testdata/messages.golden"
+
+// mostFindings is how many findings one mistake may give: where it stands, and in the few places that depend on it.
+const mostFindings = 4
 
 func TestMessageRules(t *testing.T) {
 	want := map[string]string{}
@@ -67,7 +76,7 @@ func TestMessageRules(t *testing.T) {
 		if strings.Contains(strings.Join(all, "\n"), "## "+r.label+"\n") {
 			t.Errorf("%s: a second row with this label", r.label)
 		}
-		p, findings := ReadProject(context.Background(), apply(t, r.edits...))
+		p, findings := apply(t, r.edits...).read()
 		got := findingLines(findings)
 		all = append(all, "## "+r.label+"\n"+got)
 		if got == "" {
@@ -78,6 +87,9 @@ func TestMessageRules(t *testing.T) {
 		}
 		if (p == nil) != (findings.Err() != nil) {
 			t.Errorf("%s: project %v with error %v", r.label, p != nil, findings.Err())
+		}
+		if len(findings) > mostFindings && r.label != "too many cells" { // a shifted row is wrong in every column
+			t.Errorf("%s: %d findings for one mistake", r.label, len(findings))
 		}
 		for _, leak := range []string{"map[", "struct", "float64", "interface", "gisio.", "%!", "<nil>"} {
 			if strings.Contains(got, leak) {
