@@ -197,7 +197,7 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 			c.DualViolationScaled = largest(c.DualViolationScaled, share(math.Abs(price), terms[j]))
 		}
 	}
-	scale := math.Max(t.objective, d.terms)
+	scale := math.Max(math.Max(t.objective, d.terms), u.cost*u.value)
 	c.DualObjective = sign * d.sum.value()
 	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective), scale)
 	c.Complementarity = share(d.slackness, scale)
