@@ -34,14 +34,22 @@ func (f *Factor) SmallestPivot() (row int, share float64) {
 	return int(f.symbolic.order[f.smallest.position]), f.smallest.share
 }
 
-// kernelReach is the number of entries beyond the last panel that a kernel may read.
-const kernelReach = 3
+// Updates of a front with at least sharedWork operations are shared between idle workers in groups of sharedColumns
+// columns: about a millisecond altogether, and groups of some tens of microseconds.
+const (
+	sharedWork    = 10e6
+	sharedColumns = 32
+)
+
+// kernelReach is the number of entries beyond the last panel that a kernel may read: it works on four columns and on rows
+// in fours, whether a supernode has them or not.
+func kernelReach(tallest int) int { return 3*tallest + 3 }
 
 // Factor computes L for the given values, one for each entry of the pattern. It fails with [NotPositiveDefinite] where
 // a pivot is not positive (within rounding of the diagonal entry that it came from) or a value is not finite, and with
 // [Interrupted] when ctx ends. Of several bad rows the one eliminated first is named.
 func (s *Symbolic) Factor(ctx context.Context, values []float64) (*Factor, error) {
-	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1]+kernelReach)}
+	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1]+kernelReach(s.tallest))}
 	if err := f.Refactor(ctx, values); err != nil {
 		return nil, err
 	}
@@ -282,7 +290,6 @@ func extendAdd(front, rest []float64, nr, nc int, u []float64, up []int32) {
 // eliminateFront computes the first nc columns of the factor of a front and subtracts their products from the rest. It
 // returns the first refused pivot's column and value, or -1.
 func (r *numeric) eliminateFront(w *worker, front []float64, nr, nc int, rest []float64) (int, float64) {
-	m := nr - nc
 	for b := 0; b < nc; b += blockColumns {
 		e := min(b+blockColumns, nc)
 		for j := b; j < e; j += 4 {
@@ -294,14 +301,39 @@ func (r *numeric) eliminateFront(w *worker, front []float64, nr, nc int, rest []
 				return j + q, pivot
 			}
 		}
-		for j := e; j < nc; j += 4 {
-			w.update(front[j*nr+j:], nr, nr-j, front[b*nr:], nr, j, e-b, min(4, nc-j))
-		}
-		for j := 0; j < m; j += 4 {
-			w.update(rest[j*m+j:], m, m-j, front[b*nr:], nr, nc+j, e-b, min(4, m-j))
-		}
+		r.updateRest(w, front, nr, nc, rest, b, e)
 	}
 	return -1, 0
+}
+
+// updateRest subtracts the products of the columns from b to e-1 from the columns of the front and the rest that follow.
+// Large fronts share the work: each group of columns is the same sum whoever forms it.
+func (r *numeric) updateRest(w *worker, front []float64, nr, nc int, rest []float64, b, e int) {
+	m, depth := nr-nc, e-b
+	do := func(w *worker, from, to int) {
+		for j := from; j < min(to, nc); j += 4 {
+			w.update(front[j*nr+j:], nr, nr-j, front[b*nr:], nr, j, depth, min(4, nc-j))
+		}
+		for j := max(0, from-nc); j < to-nc; j += 4 {
+			w.update(rest[j*m+j:], m, m-j, front[b*nr:], nr, nc+j, depth, min(4, m-j))
+		}
+	}
+	inner := (nc - e + sharedColumns - 1) / sharedColumns
+	outer := (m + sharedColumns - 1) / sharedColumns
+	if float64(nr-e)*float64(nr-e)*float64(depth) < sharedWork || r.crew.workers == 1 {
+		do(w, e, nc)
+		do(w, nc, nr)
+		return
+	}
+	r.crew.share(w, inner+outer, func(w *worker, k int) {
+		if k < inner {
+			from := e + k*sharedColumns
+			do(w, from, min(from+sharedColumns, nc))
+			return
+		}
+		from := nc + (k-inner)*sharedColumns
+		do(w, from, min(from+sharedColumns, nr))
+	})
 }
 
 // update subtracts from width columns of c, rows entries each, the products of the rows of a from row r on with its rows

@@ -26,3 +26,15 @@ func forwardAVX(y, l *float64, ld int, x *float64, m, depth int)
 
 //go:noescape
 func backwardAVX(x, l *float64, ld int, y *float64, m int)
+
+//go:noescape
+func gatherAVX(y, x *float64, rows *int32, m int)
+
+//go:noescape
+func scatterAVX(x, y *float64, rows *int32, m int)
+
+//go:noescape
+func forwardTriangleAVX(x, l *float64, ld, w int)
+
+//go:noescape
+func backwardTriangleAVX(x, l *float64, ld, w int)

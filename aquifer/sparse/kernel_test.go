@@ -28,34 +28,56 @@ func TestUpdateEqualsPlain(t *testing.T) {
 }
 
 func TestSubstitutionEqualsPlain(t *testing.T) {
+	if !wide {
+		t.Skip("no AVX: only the portable code exists here")
+	}
 	for m := 1; m <= 21; m++ {
 		for w := 1; w <= 4; w++ {
 			ld := m + w
-			l := append(randomVector(ld*4, uint64(m)), 0, 0, 0)
+			l := randomVector(ld*w+kernelReach(ld), uint64(m))
 			x := randomVector((ld+3)*panelWidth, uint64(w))
-			forward, backward := slices.Clone(x), slices.Clone(x)
-			forwardRows(forward[w*panelWidth:], l[w:], ld, forward, m, w)
-			backwardRows(backward, l[w:], ld, backward[w*panelWidth:], m, w)
-			for c := range panelWidth {
-				for i := range m {
-					want := x[(w+i)*panelWidth+c]
-					for k := range w {
-						want -= float64(l[w+k*ld+i] * x[k*panelWidth+c])
-					}
-					if got := forward[(w+i)*panelWidth+c]; got != want {
-						t.Fatalf("forward, %d rows, %d columns: %v, want %v", m, w, got, want)
-					}
-				}
-				for j := range w {
-					want := x[j*panelWidth+c]
-					for i := range m {
-						want -= float64(l[w+j*ld+i] * x[(w+i)*panelWidth+c])
-					}
-					if got := backward[j*panelWidth+c]; got != want {
-						t.Fatalf("backward, %d rows, %d columns: %v, want %v", m, w, got, want)
-					}
+			for name, both := range map[string][2]func(x []float64){
+				"forward rows": {
+					func(x []float64) { forwardRows(x[w*panelWidth:], l[w:], ld, x, m, w) },
+					func(x []float64) { forwardRowsPlain(x[w*panelWidth:], l[w:], ld, x, m, w) }},
+				"backward rows": {
+					func(x []float64) { backwardRows(x, l[w:], ld, x[w*panelWidth:], m, w) },
+					func(x []float64) { backwardRowsPlain(x, l[w:], ld, x[w*panelWidth:], m, w) }},
+				"forward triangle": {
+					func(x []float64) { forwardTriangle(x, l, ld, w) },
+					func(x []float64) { forwardTrianglePlain(x, l, ld, w) }},
+				"backward triangle": {
+					func(x []float64) { backwardTriangle(x, l, ld, w) },
+					func(x []float64) { backwardTrianglePlain(x, l, ld, w) }},
+			} {
+				got, want := slices.Clone(x), slices.Clone(x)
+				both[0](got)
+				both[1](want)
+				if !sameBits(got[:ld*panelWidth], want[:ld*panelWidth]) {
+					t.Errorf("%s: %d rows, %d columns: assembly and portable code differ", name, m, w)
 				}
 			}
+		}
+	}
+}
+
+func TestGatherAndScatterRows(t *testing.T) {
+	x := randomVector(9*panelWidth, 1)
+	rows := []int32{0, 3, 4, 8}
+	y := make([]float64, len(rows)*panelWidth)
+	gatherRows(y, x, rows)
+	out := make([]float64, len(x))
+	scatterRows(out, y, rows)
+	for i := range int32(9) {
+		want := make([]float64, panelWidth)
+		if k := slices.Index(rows, i); k >= 0 {
+			copy(want, x[i*panelWidth:])
+			if !sameBits(y[k*panelWidth:(k+1)*panelWidth], want) {
+				t.Errorf("row %d is not gathered", i)
+			}
+		}
+		if !sameBits(out[i*panelWidth:(i+1)*panelWidth], want) {
+			t.Errorf("row %d is not scattered", i)
 		}
 	}
 }

@@ -9,6 +9,10 @@ import (
 // line, and the rows that a supernode touches stay in the first-level cache. The kernels are written for this number.
 const panelWidth = 8
 
+// panelsTogether is the largest number of panels that one worker takes through the factor side by side, so that an entry
+// of the factor comes from memory once for all of them.
+const panelsTogether = 4
+
 // pollSupernodes is the number of supernodes between two looks at the context, some milliseconds of work.
 const pollSupernodes = 4096
 
@@ -46,12 +50,15 @@ func (f *Factor) mustBeValid() {
 func (f *Factor) solvePlain(ctx context.Context, block []float64, k int) error {
 	s := f.symbolic
 	n := s.pattern.N
+	workers := workerCount(s.options.Workers)
 	count := (k + panelWidth - 1) / panelWidth
-	done := make([]bool, count)
-	runFixed(workerCount(s.options.Workers), count, func(c int) {
-		from := c * panelWidth
-		to := min(k, from+panelWidth)
-		done[c] = f.solvePanel(ctx, block[from*n:to*n], to-from)
+	together := max(1, min(panelsTogether, count/workers))
+	groups := (count + together - 1) / together
+	done := make([]bool, groups)
+	runFixed(workers, groups, func(c int) {
+		from := c * together * panelWidth
+		to := min(k, from+together*panelWidth)
+		done[c] = f.solveGroup(ctx, block[from*n:to*n], to-from)
 	})
 	return finished("solve", done, ctx)
 }
@@ -70,61 +77,85 @@ func finished(stage string, done []bool, ctx context.Context) error {
 	return &Interrupted{Stage: stage, Done: count, Total: len(done), Cause: ctx.Err()}
 }
 
-// solvePanel solves for up to panelWidth right-hand sides and tells whether it came to the end.
-func (f *Factor) solvePanel(ctx context.Context, block []float64, k int) bool {
+// solveGroup solves for up to panelsTogether panels of right-hand sides and tells whether it came to the end.
+func (f *Factor) solveGroup(ctx context.Context, block []float64, k int) bool {
 	s := f.symbolic
 	n := s.pattern.N
+	var panels [panelsTogether]*panel
+	count := (k + panelWidth - 1) / panelWidth
 	width := panelWidth
 	if k == 1 {
 		width = 1
 	}
-	p := s.panels.Get().(*panel)
-	defer s.panels.Put(p)
-	if len(p.x) < n*width {
-		p.x = make([]float64, n*width)
+	for c := range count {
+		p := s.panels.Get().(*panel)
+		defer s.panels.Put(p)
+		if len(p.x) < n*width {
+			p.x = make([]float64, n*width)
+		}
+		from, to := c*panelWidth, min(k, (c+1)*panelWidth)
+		s.load(p.x[:n*width], block[from*n:to*n], to-from, width)
+		panels[c] = p
 	}
-	s.load(p.x[:n*width], block, k, width)
 	total := len(s.nodes.rows)
 	for q := range total {
 		if q%pollSupernodes == 0 && ctx.Err() != nil {
 			return false
 		}
-		f.forward(p, q, width)
+		for _, p := range panels[:count] {
+			f.forward(p, q, width)
+		}
 	}
 	for q := total - 1; q >= 0; q-- {
 		if q%pollSupernodes == 0 && ctx.Err() != nil {
 			return false
 		}
-		f.backward(p, q, width)
+		for _, p := range panels[:count] {
+			f.backward(p, q, width)
+		}
 	}
-	s.unload(p.x[:n*width], block, k, width)
+	for c, p := range panels[:count] {
+		from, to := c*panelWidth, min(k, (c+1)*panelWidth)
+		s.unload(p.x[:n*width], block[from*n:to*n], to-from, width)
+	}
 	return true
 }
 
 // load copies k columns into rows of width in elimination order, zeros beyond the k-th.
 func (s *Symbolic) load(x, block []float64, k, width int) {
 	n := s.pattern.N
-	if k < width {
-		clear(x)
-	}
-	for c := range k {
-		column := block[c*n : (c+1)*n]
-		at := c
-		for _, v := range s.order {
-			x[at] = column[v]
-			at += width
+	if width == 1 {
+		for i, v := range s.order {
+			x[i] = block[v]
 		}
+		return
+	}
+	for i, v := range s.order {
+		row := (*[panelWidth]float64)(x[i*panelWidth:])
+		at := int(v)
+		for c := range k {
+			row[c] = block[at]
+			at += n
+		}
+		clear(row[k:])
 	}
 }
 
+// unload copies the rows back into k columns.
 func (s *Symbolic) unload(x, block []float64, k, width int) {
 	n := s.pattern.N
-	for c := range k {
-		column := block[c*n : (c+1)*n]
-		at := c
-		for _, v := range s.order {
-			column[v] = x[at]
-			at += width
+	if width == 1 {
+		for i, v := range s.order {
+			block[v] = x[i]
+		}
+		return
+	}
+	for i, v := range s.order {
+		row := (*[panelWidth]float64)(x[i*panelWidth:])
+		at := int(v)
+		for c := range k {
+			block[at] = row[c]
+			at += n
 		}
 	}
 }
@@ -185,10 +216,7 @@ func (p *panel) gather(s *Symbolic, q, nc, nr, width int) []float64 {
 		}
 		return rows
 	}
-	out := rows[nc*panelWidth : nr*panelWidth]
-	for i, row := range below {
-		*(*[panelWidth]float64)(out[i*panelWidth:]) = *(*[panelWidth]float64)(p.x[int(row)*panelWidth:])
-	}
+	gatherRows(rows[nc*panelWidth:], p.x, below)
 	return rows
 }
 
@@ -204,8 +232,5 @@ func (p *panel) scatter(s *Symbolic, q, nc, nr, width int) {
 		}
 		return
 	}
-	in := p.rows[nc*panelWidth : nr*panelWidth]
-	for i, row := range below {
-		*(*[panelWidth]float64)(p.x[int(row)*panelWidth:]) = *(*[panelWidth]float64)(in[i*panelWidth:])
-	}
+	scatterRows(p.x, p.rows[nc*panelWidth:], below)
 }

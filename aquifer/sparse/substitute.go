@@ -1,10 +1,19 @@
 package sparse
 
 // The kernels of substitution. l points at column-major entries of a supernode, ld apart; y and x hold rows of
-// panelWidth entries. The forms for one right-hand side make the same operations on each entry in the same order.
+// panelWidth entries. Each has a portable form that gives the same bits. The forms for one right-hand side make the same operations on each entry in the same order.
 
 // forwardTriangle solves with the w x w triangle at l.
 func forwardTriangle(x, l []float64, ld, w int) {
+	if !wide {
+		forwardTrianglePlain(x, l, ld, w)
+		return
+	}
+	_, _ = x[w*panelWidth-1], l[(w-1)*ld+w-1]
+	forwardTriangleAVX(&x[0], &l[0], ld, w)
+}
+
+func forwardTrianglePlain(x, l []float64, ld, w int) {
 	for j := range w {
 		xj := (*[panelWidth]float64)(x[j*panelWidth:])
 		pivot := l[j*ld+j]
@@ -19,6 +28,15 @@ func forwardTriangle(x, l []float64, ld, w int) {
 
 // backwardTriangle solves with the transposed w x w triangle at l.
 func backwardTriangle(x, l []float64, ld, w int) {
+	if !wide {
+		backwardTrianglePlain(x, l, ld, w)
+		return
+	}
+	_, _ = x[w*panelWidth-1], l[(w-1)*ld+w-1]
+	backwardTriangleAVX(&x[0], &l[0], ld, w)
+}
+
+func backwardTrianglePlain(x, l []float64, ld, w int) {
 	for j := w - 1; j >= 0; j-- {
 		xj := (*[panelWidth]float64)(x[j*panelWidth:])
 		for i := j + 1; i < w; i++ {
@@ -45,12 +63,16 @@ func subtract(y, x *[panelWidth]float64, v float64) {
 // forwardRows subtracts Σk l[i+ld k] x[k], k < w, from m rows y[i]. y has room for m rounded up to a multiple of four
 // rows, l may be read as far; the rows beyond m are spoilt.
 func forwardRows(y, l []float64, ld int, x []float64, m, w int) {
-	if wide {
-		m = (m + 3) &^ 3
-		_, _, _ = y[m*panelWidth-1], l[(w-1)*ld+m-1], x[w*panelWidth-1]
-		forwardAVX(&y[0], &l[0], ld, &x[0], m, w)
+	if !wide {
+		forwardRowsPlain(y, l, ld, x, m, w)
 		return
 	}
+	m = (m + 3) &^ 3
+	_, _, _ = y[m*panelWidth-1], l[(w-1)*ld+m-1], x[w*panelWidth-1]
+	forwardAVX(&y[0], &l[0], ld, &x[0], m, w)
+}
+
+func forwardRowsPlain(y, l []float64, ld int, x []float64, m, w int) {
 	for i := range m {
 		yi := (*[panelWidth]float64)(y[i*panelWidth:])
 		for k := range w {
@@ -59,19 +81,59 @@ func forwardRows(y, l []float64, ld int, x []float64, m, w int) {
 	}
 }
 
-// backwardRows subtracts Σi l[i+ld j] y[i], i < m, from w rows x[j].
+// backwardRows subtracts Σi l[i+ld j] y[i], i < m, from w rows x[j]. l may be read as if w were four.
 func backwardRows(x, l []float64, ld int, y []float64, m, w int) {
-	if wide && w == 4 {
-		_, _, _ = x[4*panelWidth-1], l[3*ld+m-1], y[m*panelWidth-1]
+	if !wide {
+		backwardRowsPlain(x, l, ld, y, m, w)
+		return
+	}
+	_, _, _ = x[w*panelWidth-1], l[3*ld+m-1], y[m*panelWidth-1]
+	if w == 4 {
 		backwardAVX(&x[0], &l[0], ld, &y[0], m)
 		return
 	}
+	var four [4 * panelWidth]float64
+	copy(four[:], x[:w*panelWidth])
+	backwardAVX(&four[0], &l[0], ld, &y[0], m)
+	copy(x[:w*panelWidth], four[:])
+}
+
+func backwardRowsPlain(x, l []float64, ld int, y []float64, m, w int) {
 	for j := range w {
-		sum := *(*[panelWidth]float64)(x[j*panelWidth:])
+		sum := (*[panelWidth]float64)(x[j*panelWidth:])
 		for i, v := range l[j*ld : j*ld+m] {
-			subtract(&sum, (*[panelWidth]float64)(y[i*panelWidth:]), v)
+			subtract(sum, (*[panelWidth]float64)(y[i*panelWidth:]), v)
 		}
-		*(*[panelWidth]float64)(x[j*panelWidth:]) = sum
+	}
+}
+
+// gatherRows copies the listed rows of x side by side into y.
+func gatherRows(y, x []float64, rows []int32) {
+	if len(rows) == 0 {
+		return
+	}
+	_, _ = y[len(rows)*panelWidth-1], x[int(rows[len(rows)-1])*panelWidth+panelWidth-1]
+	if wide {
+		gatherAVX(&y[0], &x[0], &rows[0], len(rows))
+		return
+	}
+	for i, row := range rows {
+		copy(y[i*panelWidth:(i+1)*panelWidth], x[int(row)*panelWidth:])
+	}
+}
+
+// scatterRows puts rows that stand side by side in y back into the listed rows of x.
+func scatterRows(x, y []float64, rows []int32) {
+	if len(rows) == 0 {
+		return
+	}
+	_, _ = y[len(rows)*panelWidth-1], x[int(rows[len(rows)-1])*panelWidth+panelWidth-1]
+	if wide {
+		scatterAVX(&x[0], &y[0], &rows[0], len(rows))
+		return
+	}
+	for i, row := range rows {
+		copy(x[int(row)*panelWidth:int(row+1)*panelWidth], y[i*panelWidth:])
 	}
 }
 

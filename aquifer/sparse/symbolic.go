@@ -223,7 +223,9 @@ func (s *Symbolic) NonZeros() int64 { return s.nonZeros }
 func (s *Symbolic) Flops() float64 { return s.flops }
 
 // FactorBytes returns the memory of one Factor [bytes].
-func (s *Symbolic) FactorBytes() int64 { return 8 * int64(s.panelPtr[len(s.panelPtr)-1]) }
+func (s *Symbolic) FactorBytes() int64 {
+	return 8 * int64(s.panelPtr[len(s.panelPtr)-1]+kernelReach(s.tallest))
+}
 
 // PeakBytes returns a bound on the memory that a factorisation needs at once beside the Symbolic: factor, update
 // matrices and the stacks of its workers [bytes]. The stacks grow with the number of workers.
