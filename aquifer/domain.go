@@ -20,6 +20,7 @@ type domainPlan struct {
 	growth     float64
 	nodes      int
 	areaOfSite float64
+	layer      []layerSize
 }
 
 // plan turns a site into the mesher's domain.
@@ -50,20 +51,49 @@ func (d *domainPlan) addLines(s *Site) {
 			add(name, append(path, o[0]))
 		}
 	}
-	for _, z := range s.Zones {
+	for i := range s.Zones {
+		z := &s.Zones[i]
+		first := len(d.domain.Lines)
 		for _, p := range z.Area {
 			rings("zone "+z.Name, p)
+		}
+		if z.LeakageResistance != nil && len(d.domain.Lines) > first {
+			d.resolveLayer(s, first, z.LeakageResistance.Best)
 		}
 	}
 	for _, r := range s.Rivers {
 		d.riverLine = append(d.riverLine, add("river "+r.Name, r.Path))
 	}
 	for _, l := range s.Lakes {
+		first := len(d.domain.Lines)
 		rings("lake "+l.Name, l.Area)
+		d.resolveLayer(s, first, l.BedResistance.Best)
 	}
 	for _, a := range s.Outlines {
 		rings(a.Name, a.Area)
 	}
+}
+
+// resolveLayer sets the edge length along the border of a lake or leaky zone, the lines from first on, by the leakage length there.
+func (d *domainPlan) resolveLayer(s *Site, first int, resistance float64) {
+	for i := first; i < len(d.domain.Lines); i++ {
+		line := &d.domain.Lines[i]
+		shortest := math.Inf(1)
+		for _, p := range line.Path {
+			if r, _ := s.properties(p); r.mean > 0 {
+				shortest = math.Min(shortest, math.Sqrt(r.mean*resistance))
+			}
+		}
+		if shortest > 0 && !math.IsInf(shortest, 0) {
+			d.layer = append(d.layer, layerSize{i, shortest / lengthsPerLayer})
+		}
+	}
+}
+
+// layerSize is the edge length wanted along a line [m].
+type layerSize struct {
+	line int
+	size float64
 }
 
 // addPoints asks for one node a place; requests at exactly one place share it (a receptor on a well), but two wells or two
@@ -131,16 +161,19 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 			size := math.Min(f, near[k]/ringsBetween) * scale
 			d.domain.Points[k].Size = math.Max(size, floor[k])
 		}
+		for _, l := range d.layer {
+			d.domain.Lines[l.line].Size = math.Max(l.size, f) * scale
+		}
 		d.domain.Points = d.domain.Points[:len(near)]
 		for _, c := range corners {
-			d.domain.Points = append(d.domain.Points, mesh.Point{At: c.at, Size: math.Max(f*c.share, c.least) * scale, Name: "corner"})
+			d.domain.Points = append(d.domain.Points, mesh.Point{At: c.at, Size: math.Max(f*c.share, c.least) * scale, Name: cornerName})
 		}
 	}
 	set(finest)
 	if o.Finest > 0 {
 		return
 	}
-	allowed := float64(max(d.nodes, nodesPerPlace*(len(near)+len(corners))))
+	allowed := float64(max(d.nodes, min(defaultMost, nodesPerPlace*(len(near)+len(corners)))))
 	if o.Nodes > 0 {
 		allowed = float64(d.nodes)
 	}
@@ -235,6 +268,9 @@ const (
 	manyCorners = 120
 )
 
+// cornerName marks the points that are ours, not the user's.
+const cornerName = "corner"
+
 // corner is a place where the gradient of head may be singular.
 type corner struct {
 	at    orb.Point
@@ -297,12 +333,75 @@ func (d *domainPlan) corners(s *Site) []corner {
 			}
 		}
 	}
+	single := func(v orb.Point) {
+		if !taken[v] && inPolygon(v, s.Extent) {
+			taken[v] = true
+			out = append(out, corner{at: v, share: 1})
+		}
+	}
+	for _, r := range s.Rivers { // a line that takes water in ends like a crack: a is one half
+		single(r.Path[0])
+		single(r.Path[len(r.Path)-1])
+	}
+	for _, v := range d.crossings(s) {
+		if !taken[v] {
+			taken[v] = true
+			out = append(out, corner{at: v, share: 1})
+		}
+	}
 	if bends > manyCorners {
 		for i := range out {
 			out[i].least *= math.Min(float64(bends)/manyCorners, 1/(4*cornerShare))
 		}
 	}
 	return out
+}
+
+// mostCrossings is from how many crossings of zone borders with the outline on none is refined: a border that follows the outline crosses it
+// at every vertex, and those are no corners of the flow.
+const mostCrossings = 60
+
+// crossings lists where a border between transmissivities meets the outline.
+func (d *domainPlan) crossings(s *Site) []orb.Point {
+	var out []orb.Point
+	for _, z := range s.Zones {
+		if z.Transmissivity == nil && z.Anisotropy == nil {
+			continue
+		}
+		for _, poly := range z.Area {
+			for _, ring := range poly {
+				r := openRing(ring)
+				for i := range r {
+					for _, o := range d.outline.rings {
+						for k := range o {
+							if p, ok := crossing(r[i], r[(i+1)%len(r)], o[k], o[(k+1)%len(o)]); ok {
+								out = append(out, p)
+							}
+						}
+					}
+				}
+			}
+		}
+	}
+	if len(out) > mostCrossings {
+		return nil
+	}
+	return out
+}
+
+// crossing is where two segments cross within both; segments that are nearly parallel do not count.
+func crossing(a, b, c, d orb.Point) (orb.Point, bool) {
+	ux, uy, vx, vy := b[0]-a[0], b[1]-a[1], d[0]-c[0], d[1]-c[1]
+	det := ux*vy - uy*vx
+	if !(math.Abs(det) > 1e-3*math.Hypot(ux, uy)*math.Hypot(vx, vy)) { // below a twentieth of a degree they run together
+		return orb.Point{}, false
+	}
+	f := ((c[0]-a[0])*vy - (c[1]-a[1])*vx) / det
+	g := ((c[0]-a[0])*uy - (c[1]-a[1])*ux) / det
+	if !(f >= 0 && f <= 1 && g >= 0 && g <= 1) {
+		return orb.Point{}, false
+	}
+	return orb.Point{a[0] + f*ux, a[1] + f*uy}, true
 }
 
 // turnAt is by how much a ring turns left at a vertex [°].

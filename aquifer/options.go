@@ -46,8 +46,14 @@ const (
 	defaultGrowth = 0.10
 	// finestShare of the square root of the area is the default edge length at wells and receptors: 1 m a kilometre.
 	finestShare = 1e-3
-	// nodesPerPlace caps what the default spends around each well or receptor before the finest size is raised.
-	nodesPerPlace = 700
+	// nodesPerPlace is what the default spends around each well or receptor before the finest size is raised: a circle that grows from the
+	// finest size at 0.1 a distance to a thousand times that takes about 1,500.
+	nodesPerPlace = 1500
+	// defaultMost bounds what the default spends in all; a job with hundreds of places that needs more says so in [mesh].
+	defaultMost = 150000
+	// lengthsPerLayer is how many edge lengths resolve the leakage length sqrt(T c) beside the border of a lake or a leaky zone, where the
+	// head bends within that length: its exponential is then off by less than a thousandth.
+	lengthsPerLayer = 5
 	// ringsBetween is how many edge lengths lie between a place and its nearest neighbour or line: the discrete logarithm differs from the
 	// exact one by about (edge length/distance)²/8 of 1/(2 pi T), a thousandth of a well's drawdown at twelve.
 	ringsBetween = 12

@@ -74,6 +74,8 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 		j.progress.clear()
 		printWarnings(findings, s)
 	}
+	limitSources(p)
+	scaleRecharge(p)
 	p.Site.Nodes, p.Site.Outlines = adjoint.Requests(p.Wells, p.Receptors)
 	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
 		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: c.Workers, Progress: j.progress.report,
@@ -90,6 +92,28 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 		return nil, err
 	}
 	return j, switched(model, base, "without pumping")
+}
+
+// scaleRecharge applies the default operating state's recharge factor.
+func scaleRecharge(p *gisio.Project) {
+	for _, s := range p.States {
+		if !s.Default || s.RechargeFactor == 1 {
+			continue
+		}
+		scaled := func(r *aquifer.Parameter) *aquifer.Parameter {
+			if r == nil {
+				return nil
+			}
+			out := *r
+			out.Best *= s.RechargeFactor
+			return &out
+		}
+		p.Site.Background.Recharge = scaled(p.Site.Background.Recharge)
+		for i := range p.Site.Zones {
+			p.Site.Zones[i].Recharge = scaled(p.Site.Zones[i].Recharge)
+		}
+		p.Assumptions = append(p.Assumptions, plan.Assumption{What: "recharge factor of operating state " + s.Name, Value: fmt.Sprintf("%g", s.RechargeFactor), Basis: "not stated"})
+	}
 }
 
 // switched names the features that a state takes past the level where their exchange would change: the linear model does not hold.

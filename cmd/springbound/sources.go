@@ -1,0 +1,28 @@
+package main
+
+import (
+	"fmt"
+
+	"springbound/gisio"
+	"springbound/wells"
+)
+
+// limitSources turns every stated available flow of an edge or river into a receptor with a limit: what pumping draws from it may
+// not pass it. A lake's is compared after the plan, since no receptor kind watches a lake.
+func limitSources(p *gisio.Project) {
+	add := func(kind wells.Kind, what, feature string, available *float64, source string, number int) {
+		if available == nil {
+			return
+		}
+		id := fmt.Sprintf("source-%s-%d", what, number+1)
+		p.Receptors = append(p.Receptors, wells.Receptor{ID: id, Name: "available flow of " + what + " " + feature, Kind: kind, Feature: feature, Source: source})
+		p.Limits = append(p.Limits, wells.Limit{ID: id, Receptor: id, Quantity: wells.Change, Sense: wells.AtMost, Value: *available,
+			Entered: fmt.Sprintf("%.6g m3/d", *available), Baseline: wells.NoPumping, Counts: wells.Cumulative, Source: "available_flow of the layer"})
+	}
+	for i, e := range p.Site.Edges {
+		add(wells.EdgeFlow, "edge", e.Name, e.AvailableFlow, e.Source, i)
+	}
+	for i, r := range p.Site.Rivers {
+		add(wells.RiverReach, "river", r.Name, r.AvailableFlow, r.Source, i)
+	}
+}
