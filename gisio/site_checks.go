@@ -2,8 +2,6 @@ package gisio
 
 import (
 	"fmt"
-	"math"
-	"sort"
 	"strings"
 
 	"github.com/paulmach/orb"
@@ -14,11 +12,46 @@ import (
 
 // checkSite looks at the whole site for what no single record shows. It reports suspicions as warnings: each may be meant.
 func (b *builder) checkSite() {
+	b.checkSize()
 	b.checkWaters()
 	b.checkZoneOverlaps()
 	b.checkLevelScale()
 	b.checkRateScale()
 	b.checkLinearLoss()
+	b.checkDemand()
+}
+
+// Sizes of an extent's diagonal that are suspicious: smaller is a garden, or degrees taken for metres; larger goes beyond one zone of
+// the plane and beyond what one steady layer describes.
+const (
+	smallestSite = 100.0 // [m]
+	largestSite  = 3e5   // [m]
+)
+
+// checkSize warns of an extent of an unlikely size.
+func (b *builder) checkSize() {
+	if d := b.tolerance / outlineShare; b.extentKnown && !(d >= smallestSite && d <= largestSite) {
+		b.warn(Finding{File: b.layers["extent"].file, Layer: "extent", Found: "an extent of " + roundMetres(d) + " m from corner to corner", Allowed: fmt.Sprintf("usually %v to %v m", smallestSite, largestSite), Hint: "are the coordinates right?"})
+	}
+}
+
+// checkDemand warns of a demand that the wells cannot give.
+func (b *builder) checkDemand() {
+	sum := 0.0
+	for _, w := range b.p.Wells {
+		if w.Mode == wells.Decided && w.Max > 0 && !w.Outage {
+			sum += w.Max
+		}
+	}
+	rate := Inside(Rate)
+	if d := b.p.Brief.Demand; d != nil && *d > sum {
+		b.warn(Finding{File: b.p.File, Line: b.settings.line("brief", "demand"), Property: "demand", Found: rate.show(*d), Allowed: "at most " + rate.show(sum) + ", what the decided wells can give together"})
+	}
+	for _, s := range b.p.States {
+		if s.Demand != nil && *s.Demand > sum {
+			b.warn(Finding{File: b.tables["states"].file, Layer: "states", Property: "demand of " + s.Name, Found: rate.show(*s.Demand), Allowed: "at most " + rate.show(sum) + ", what the decided wells can give together"})
+		}
+	}
 }
 
 // alongShare is the share of a line's points from which two lines count as one water: less is a crossing or a confluence.
@@ -140,145 +173,4 @@ func changes(a, b aquifer.Zone) []string {
 	level("top", a.Top, b.Top)
 	parameter("storage", a.Storage, b.Storage)
 	return out
-}
-
-// siteLevel is one level of the site's waters.
-type siteLevel struct {
-	p        placed
-	property string
-	value    float64
-}
-
-// waterLevels collects the levels of edges, rivers, lakes and springs.
-func (b *builder) waterLevels() []siteLevel {
-	var out []siteLevel
-	add := func(kind string, i int, property string, values ...float64) {
-		for _, v := range values {
-			out = append(out, siteLevel{b.recordOf(kind, i), property, v})
-		}
-	}
-	for i, e := range b.p.Site.Edges {
-		add("edge", i, "level", e.Levels...)
-	}
-	for i, r := range b.p.Site.Rivers {
-		add("river", i, "water_level", r.WaterLevels...)
-	}
-	for i, l := range b.p.Site.Lakes {
-		if l.Area != nil {
-			add("lake", i, "water_level", l.WaterLevel)
-		}
-	}
-	for i, s := range b.p.Site.Springs {
-		add("spring", i, "outlet_level", s.OutletLevel)
-	}
-	return out
-}
-
-// Bounds of the suspicion that a level is in feet. Levels of one aquifer lie within some tens of metres; one that stands apart from all
-// the others by more than their own range and this much, and among them once it is taken for feet, is suspicious.
-const (
-	leastApart    = 20.0 // [m]
-	fewestToJudge = 2    // other levels
-)
-
-// checkLevelScale warns of a water level that stands apart from the others and would be among them if it were in feet.
-func (b *builder) checkLevelScale() {
-	all := b.waterLevels()
-	for i, l := range all {
-		low, high, n := math.Inf(1), math.Inf(-1), 0
-		for j, o := range all {
-			if j == i || o.p.record == l.p.record {
-				continue
-			}
-			low, high, n = math.Min(low, o.value), math.Max(high, o.value), n+1
-		}
-		span := math.Max(high-low, leastApart)
-		taken := l.value * foot
-		if n >= fewestToJudge && (l.value > high+span || l.value < low-span) && taken >= low-span/2 && taken <= high+span/2 {
-			l.p.warn(Finding{Property: l.property, Found: fmt.Sprintf("%v m, while the other waters stand at %v to %v m", l.value, low, high), Hint: "is it in feet?"})
-		}
-	}
-	for i, w := range b.p.Wells {
-		for _, item := range []struct {
-			name  string
-			value *float64
-		}{{"lowest_level", w.LowestLevel}, {"intake", w.Intake}} {
-			if item.value == nil || len(all) == 0 {
-				continue
-			}
-			highest := math.Inf(-1)
-			for _, l := range all {
-				highest = math.Max(highest, l.value)
-			}
-			if *item.value > highest {
-				b.recordOf("well", i).warn(Finding{Property: item.name, Found: fmt.Sprintf("%v m, above every water of the site (highest %v m)", *item.value, highest), Hint: "is it a depth given as an elevation?"})
-			}
-		}
-	}
-}
-
-// Bounds of the suspicion that a rate is in another unit than it says.
-const (
-	smallestMax   = 5.0  // a decided well below this [m³/d] is a garden well, or L/s taken for m³/d
-	litreFactor   = 86.4 // m³/d in a litre per second
-	litreFactorBy = 3.0  // how far from the factor a ratio may be and still suggest it
-)
-
-// checkRateScale warns of rates that look like litres per second taken for cubic metres per day.
-func (b *builder) checkRateScale() {
-	for i, w := range b.p.Wells {
-		if w.Mode != wells.Decided || !(w.Max > 0) {
-			continue
-		}
-		var others []float64
-		for j, o := range b.p.Wells {
-			if j != i && o.Mode == wells.Decided && o.Max > 0 {
-				others = append(others, o.Max)
-			}
-		}
-		p := b.recordOf("well", i)
-		shown := Inside(Rate).show(w.Max)
-		if w.Max < smallestMax {
-			p.warn(Finding{Property: "max", Found: shown, Hint: "very little for a well: is it in L/s?"})
-			continue
-		}
-		if len(others) < fewestToJudge {
-			continue
-		}
-		sort.Float64s(others)
-		ratio := others[len(others)/2] / w.Max
-		if ratio > litreFactor/litreFactorBy && ratio < litreFactor*litreFactorBy {
-			p.warn(Finding{Property: "max", Found: fmt.Sprintf("%s, about %.0f times less than the other wells", shown, ratio), Hint: "is it in L/s?"})
-		}
-	}
-}
-
-// stepTestRadius is the distance to which a step test's linear term reaches [m]: drawdown there is small within a day.
-const stepTestRadius = 100.0
-
-// checkLinearLoss warns of a linear loss that is as large as the aquifer's own drawdown around the well: a step test's whole linear term,
-// B >= ln(100 m/rw)/(2 pi T), which the model already holds (Jacob 1947).
-func (b *builder) checkLinearLoss() {
-	for i, w := range b.p.Wells {
-		p := b.recordOf("well", i)
-		if !(w.LinearLoss > 0) || !(w.Radius > 0) || p.geometry == nil {
-			continue
-		}
-		t := b.p.Site.Background.Transmissivity
-		for _, z := range b.p.Site.Zones {
-			for _, area := range z.Area {
-				if z.Transmissivity != nil && polygonContains(area, w.At) {
-					t = z.Transmissivity
-				}
-			}
-		}
-		if t == nil {
-			continue
-		}
-		own := math.Log(stepTestRadius/w.Radius) / (2 * math.Pi * t.Best)
-		if own > 0 && w.LinearLoss >= own {
-			p.warn(Finding{Property: "linear_loss", Found: Inside(LinearLoss).show(w.LinearLoss), Allowed: fmt.Sprintf("usually well below %.2g d/m2, the aquifer's own drawdown to %v m", own, stepTestRadius),
-				Hint: "is it the whole linear term of a step test? The model adds the aquifer's part itself"})
-		}
-	}
 }

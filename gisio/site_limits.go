@@ -80,6 +80,7 @@ func (b *builder) buildLimits() {
 			p.warn(Finding{Property: "source", Found: "not stated", Hint: "a reviewer will ask where the limit comes from"})
 		}
 		b.p.Limits = append(b.p.Limits, l)
+		b.keepPlace(len(b.p.Limits)-1, "limit", p)
 	}
 	if len(b.p.Limits) == 0 && !b.named("tables", "limits") {
 		b.warn(Finding{File: b.p.File, Property: "limits", Found: "no table of limits", Hint: "only rates, quotas and pumping levels bound the plan"})
@@ -178,6 +179,9 @@ func (b *builder) limitValue(p placed, l *wells.Limit, receptor wells.Kind) {
 	}
 	if l.Quantity == wells.ShareOfBase && receptor.Unit() == "m" {
 		p.fail(Finding{Property: "quantity", Found: "a share of a level", Allowed: "change or value", Hint: "a level has no natural zero to take a share of"})
+	}
+	if l.Quantity == wells.Change && l.Sense == wells.AtMost && v < 0 {
+		p.warn(Finding{Property: e.key, Found: l.Entered + ", a negative change", Hint: "it asks for more than there was without pumping; a fall is positive"})
 	}
 	if l.Quantity == wells.ShareOfBase && !(v >= 0 && v <= 1) {
 		p.fail(Finding{Property: e.key, Found: l.Entered, Allowed: "a share from 0 to 100 %"})

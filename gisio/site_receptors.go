@@ -42,8 +42,12 @@ func (b *builder) receptorPlace(p placed, r *wells.Receptor) {
 		b.frontReceptor(p, r)
 	case wells.SpringFlow:
 		for _, s := range b.p.Site.Springs {
-			if s.Name == r.Feature {
-				r.At = s.At
+			if s.Name != r.Feature {
+				continue
+			}
+			r.At = s.At
+			if at, ok := single(p.geometry).(orb.Point); ok && b.extentKnown && planar.Distance(at, s.At) > b.tolerance {
+				p.warn(Finding{Property: p.spot(), Found: "a point " + roundMetres(planar.Distance(at, s.At)) + " m from the spring " + quoted(s.Name), Hint: "the spring's own place is used"})
 			}
 		}
 		b.mustName(p, r.Feature, "spring", b.springNames())

@@ -211,6 +211,9 @@ func (b *builder) wellRates(p placed, w *wells.Well) {
 		missing = int(wells.Fixed)
 	}
 	w.Mode = wells.Mode(p.word("mode", missing))
+	if w.Others && w.Mode == wells.Decided {
+		p.warn(Finding{Property: "mode", Found: "decided for an existing user's well", Hint: "the plan may then set the rate of somebody else"})
+	}
 	w.Outage = p.flag("outage", false)
 	w.Present, w.Recent, w.Licensed, w.Requested = p.optional("present"), p.optional("recent"), p.optional("licensed"), p.optional("requested")
 	w.DutyHours = 24
