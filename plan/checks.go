@@ -134,7 +134,7 @@ func (p *planner) check(r *Report, rates []float64, resolved *lines) {
 				assessed++
 			}
 			if l.Passed {
-				passed = append(passed, fmt.Sprintf("limit %s at %s is passed by %s", l.ID, s.receptorName(rec.ID), amountText(-l.Headroom, l.Unit)))
+				passed = append(passed, fmt.Sprintf("limit %s at %s is passed by %s", l.ID, s.receptorName(rec.ID), limitAmount(&l, -l.Headroom)))
 			}
 		}
 	}

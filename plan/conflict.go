@@ -11,6 +11,10 @@ import (
 // relaxedShare is the relaxation, as a share of a limit's size, that counts as none.
 const relaxedShare = 1e-9
 
+// relaxedTolerance is by how much a relaxed limit on a row that is not linear may be passed, as a share of its size, before another
+// cut is added: a relaxation is read, not run.
+const relaxedTolerance = 1e-6
+
 // conflictRounds bounds how often the set is looked for again after relaxations added cuts; the second round usually adds none.
 const conflictRounds = 20
 
@@ -121,7 +125,7 @@ func (p *planner) conflict(ctx context.Context) (*Conflict, error) {
 			return nil, err
 		}
 		c.ExistingAlone = len(existing) > 0
-		c.Sentence = conflictSentence(set, relaxed, existing, fixed)
+		c.Sentence = p.conflictSentence(set, relaxed, existing, fixed)
 		return c, nil
 	}
 }
@@ -146,12 +150,30 @@ func (p *planner) irreducible(ctx context.Context, problem *convex.Problem, memb
 	case set.Status == convex.Interrupted:
 		return nil, fmt.Errorf("plan: stopped while explaining a conflict: %w", ctx.Err())
 	case set.Status != convex.Infeasible:
-		return nil, &NumericalError{Status: StatusNumericalFailure, Reason: "the search for a conflict ended as " + set.Status.String()}
+		return p.proofSet(ctx, problem, members)
 	}
 	p.conflictVerified = set.Verified
 	in := make([]bool, len(members))
 	for _, b := range set.Rows {
 		in[memberOfRow[b.Index]] = true
+	}
+	return in, nil
+}
+
+// proofSet is what is left where rounding ended the search: the members that a proof of infeasibility uses. They cannot all be kept;
+// whether each of them is needed is open.
+func (p *planner) proofSet(ctx context.Context, problem *convex.Problem, members []member) ([]bool, error) {
+	in := make([]bool, len(members))
+	sol, err := convex.Solve(ctx, problem, convex.Options{})
+	if err != nil {
+		return nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
+	}
+	p.conflictVerified = false
+	if sol.Status != convex.Infeasible {
+		return in, nil
+	}
+	for k, m := range members {
+		in[k] = sol.Ray.Rows[m.row] != 0
 	}
 	return in, nil
 }
@@ -165,7 +187,7 @@ func (m *member) amount(by float64) string {
 }
 
 // conflictSentence says in words what cannot be kept.
-func conflictSentence(set, relaxed, existing, fixed []string) string {
+func (p *planner) conflictSentence(set, relaxed, existing, fixed []string) string {
 	var parts []string
 	switch {
 	case len(existing) > 0:
@@ -175,10 +197,15 @@ func conflictSentence(set, relaxed, existing, fixed []string) string {
 	}
 	switch len(set) {
 	case 0:
+		parts = append(parts, "Which limits are in conflict was not settled.")
 	case 1:
 		parts = append(parts, "This cannot be kept: "+set[0]+".")
 	default:
-		parts = append(parts, "These cannot all be kept, while any one left out the others can: "+strings.Join(set, "; ")+".")
+		also := ", while any one left out the others can"
+		if !p.conflictVerified {
+			also = ", though perhaps not each of them is needed for that"
+		}
+		parts = append(parts, "These cannot all be kept"+also+": "+strings.Join(set, "; ")+".")
 	}
 	if len(relaxed) > 0 {
 		parts = append(parts, "The least relaxation that makes a plan possible: "+strings.Join(relaxed, "; ")+".")

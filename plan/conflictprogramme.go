@@ -66,7 +66,10 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 	for k, i := range s.decided {
 		lower, upper := 0.0, math.Inf(1)
 		if s.Wells[i].Min < 0 {
-			lower, upper = math.Inf(-1), 0
+			lower = math.Inf(-1)
+		}
+		if s.Wells[i].Max <= 0 {
+			upper = 0
 		}
 		add(nil, "sign of "+s.Wells[i].ID, lower, upper, func(a []float64) { a[k] = 1 })
 		for _, m := range rangeEnds(s.Wells[i]) {

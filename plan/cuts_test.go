@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"math"
+	"math/rand/v2"
 	"testing"
 
 	"springbound/wells"
@@ -74,8 +75,51 @@ func TestConflictWithCuts(t *testing.T) {
 	if r.Status != StatusInfeasible || len(r.Conflict.Members) != 2 {
 		t.Fatalf("%s %+v", r.Status, r.Conflict)
 	}
-	near(t, "limit alone", *r.Conflict.Members[1].Alone, 3.4, 10*cutTolerance*10)
-	near(t, "demand alone", *r.Conflict.Members[0].Alone, 12-(5+5/1.2), 10*cutTolerance*10)
+	near(t, "limit alone", *r.Conflict.Members[1].Alone, 3.4, 10*relaxedTolerance)
+	near(t, "demand alone", *r.Conflict.Members[0].Alone, 12-(5+5/1.2), 10*relaxedTolerance)
+}
+
+// A worst place among several, against one linear limit for each place: the same plan, total and sum of prices; for conflicts the
+// same relaxation of the limit alone.
+func TestCutsAgainstAllPieces(t *testing.T) {
+	random := rand.New(rand.NewPCG(14, 15))
+	for trial := 0; trial < 40; trial++ {
+		all := randomSite(random, 5, 6)
+		worst := &site{brief: all.brief}
+		worst.brief.Receptors = []wells.Receptor{{ID: "R", Name: "R", Kind: wells.WetlandWorst}}
+		worst.brief.Limits = nil
+		worst.limit("L", "R", 0.3)
+		m := &pieces{ids: all.table.response.Wells, offset: make([]float64, 6)}
+		for k := range all.brief.Limits {
+			all.brief.Limits[k].Value, all.brief.Limits[k].Reserve = 0.3, 0
+			m.slopes = append(m.slopes, all.table.response.Rows[k].Slope)
+		}
+		want := all.plan(t)
+		got, err := Make(context.Background(), worst.brief, m, Options{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		price := 0.0
+		for _, rec := range want.Receptors {
+			price += rec.Limits[0].ShadowPrice
+		}
+		exact(t, "total", got.TotalRate, want.TotalRate)
+		exact(t, "price", limitOf(t, got, "L").ShadowPrice, price)
+
+		worst.brief.Demand = number(1.3 * want.TotalRate)
+		if got, err = Make(context.Background(), worst.brief, m, Options{}); err != nil {
+			t.Fatal(err)
+		}
+		for _, member := range got.Conflict.Members {
+			if member.Receptor != "R" || member.Alone == nil {
+				continue
+			}
+			for k := range all.brief.Limits {
+				all.brief.Limits[k].Value = 0.3 + *member.Alone
+			}
+			near(t, "total with the limit relaxed alone", all.plan(t).TotalRate, 1.3*want.TotalRate, 10*relaxedTolerance*want.TotalRate)
+		}
+	}
 }
 
 // bowl is a receptor with the smooth convex change (x² + 2 y²)/100 + 0.1 x + 0.1 y.

@@ -181,3 +181,18 @@ func TestExtremeData(t *testing.T) {
 		}
 	}
 }
+
+// Influence that has died out (1e-36 beside 1e-3) neither stops the programme nor shows in the plan.
+func TestInfluenceThatDiesOut(t *testing.T) {
+	s := newSite(MostYield, decidedWell("A", 0, 1000), decidedWell("B", 0, 1000))
+	s.receptor("R", wells.PointLevel, 10, 1e-3, 1e-36)
+	s.receptor("U", wells.PointLevel, 10, 1e-30, 1e-3)
+	s.limit("LR", "R", 0.2)
+	s.limit("LU", "U", 0.3)
+	r := s.plan(t)
+	exact(t, "A", r.Wells[0].Rate, 200)
+	exact(t, "B", r.Wells[1].Rate, 300)
+	if r.Sensitivities.Values[0][1] != 1e-36 {
+		t.Errorf("the table holds %v", r.Sensitivities.Values[0][1])
+	}
+}

@@ -80,6 +80,9 @@ func (e *elastic) relax(ctx context.Context, p *planner, takes func(k int) bool)
 	shares = make([]float64, len(e.members))
 	for round := 1; ; round++ {
 		sol, err := convex.Solve(ctx, e.problem, convex.Options{Start: e.basis})
+		if err == nil && e.basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
+			sol, err = convex.Solve(ctx, e.problem, convex.Options{})
+		}
 		switch {
 		case err != nil:
 			return nil, false, fmt.Errorf("plan: the programme of the relaxation: %w", err)
@@ -88,7 +91,9 @@ func (e *elastic) relax(ctx context.Context, p *planner, takes func(k int) bool)
 		case sol.Status == convex.Infeasible:
 			return shares, false, nil
 		case sol.Status != convex.Optimal:
-			return nil, false, &NumericalError{Status: StatusNumericalFailure, Reason: "the search for a relaxation ended as " + sol.Status.String()}
+			p.setup.cautions.addf("rounding left part of the explanation open: relaxations may be missing from it")
+			e.basis = nil
+			return make([]float64, len(e.members)), false, nil
 		}
 		p.iterations += sol.Iterations
 		e.basis = sol.Basis
@@ -117,17 +122,19 @@ func (e *elastic) addCuts(ctx context.Context, p *planner, shares, x []float64) 
 	s := p.setup
 	rates := append([]float64(nil), s.standing...)
 	for k, i := range s.decided {
-		rates[i] = tidy(x[k])
+		if !(math.Abs(x[k]) <= rateTolerance*s.rateScale(i)) {
+			rates[i] = x[k]
+		}
 	}
 	for k, m := range e.members {
-		if m.bound == nil || m.bound.linear || m.bound.side < 0 {
+		if m.bound == nil || m.bound.linear || !m.bound.kept {
 			continue
 		}
 		tan, counted, err := p.oracle.tangentOf(ctx, m.bound, rates)
 		if err != nil {
 			return 0, ctx.Err()
 		}
-		if m.bound.slack(tan.at(counted), 0)+shares[k]*m.effect >= -cutTolerance*m.bound.scale(s, tan.slope) {
+		if m.bound.slack(tan.at(counted), 0)+shares[k]*m.effect >= -relaxedTolerance*m.bound.scale(s, tan.slope) {
 			continue
 		}
 		p.cuts = append(p.cuts, cut{bound: m.bound, tangent: tan})

@@ -64,8 +64,8 @@ func (p *planner) hasOther(ctx context.Context, g *programme, sol *convex.Soluti
 	scale := make([]float64, n)
 	for j := range scale {
 		scale[j] = 1
-		if j < len(p.setup.decided) {
-			scale[j] = math.Max(p.setup.rateScale(p.setup.decided[j]), math.SmallestNonzeroFloat64)
+		if j < len(p.setup.decided) && p.setup.rateScale(p.setup.decided[j]) > 0 {
+			scale[j] = p.setup.rateScale(p.setup.decided[j])
 		}
 	}
 	aim := p.aimScale()

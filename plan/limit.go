@@ -25,6 +25,7 @@ type bound struct {
 	target   target
 	counted  []bool
 	linear   bool    // the change is linear in the decided rates
+	kept     bool    // where it is not: tangents never allow too little, so that they are kept as cuts
 	value    bool    // a bound on the value, not on its change
 	side     float64 // +1: the change may not be larger than edge; -1: not smaller
 	edge     float64
@@ -109,27 +110,26 @@ func (p *planner) limitBound(ctx context.Context, index int, l wells.Limit) (b *
 	case l.Quantity == wells.ShareOfBase && row.Base == 0:
 		return nil, "the value without pumping is 0, of which a share has no meaning", nil
 	}
-	b = &bound{limit: index, target: target{receptor: r, well: -1}, linear: row.Linear, side: 1, reserve: l.Reserve, unit: 1, bore: -1,
+	b = &bound{limit: index, target: target{receptor: r, well: -1}, side: 1, reserve: l.Reserve, unit: 1,
 		counted: make([]bool, len(s.Wells))}
 	own := l.Counts == wells.Own && l.Quantity != wells.Value
 	for i, w := range s.Wells {
 		b.counted[i] = !(own && w.Others)
 	}
+	bore := -1
 	if i, known := s.wellIndex[s.Receptors[r].Feature]; known && s.Receptors[r].Kind == wells.PumpingLevel {
-		s.setBore(b, i)
+		bore = i
 	}
+	if (l.Quantity == wells.Value) == (l.Sense == wells.AtMost) {
+		b.side = -1
+	}
+	s.setCurvature(b, row, bore)
 	if l.Quantity == wells.Value {
-		if l.Sense == wells.AtMost {
-			b.side = -1
-		}
 		b.value = true
 		b.edge = row.Base - l.Value
 		b.size = math.Abs(b.edge)
 		b.grow = sign(b.side * b.edge)
 		return b, "", nil
-	}
-	if l.Sense == wells.AtLeast {
-		b.side = -1
 	}
 	if l.Quantity == wells.ShareOfBase {
 		b.unit = math.Abs(row.Base)
@@ -169,16 +169,19 @@ func (p *planner) baselineChange(ctx context.Context, l wells.Limit, b *bound) (
 	return tan.at(counted), nil
 }
 
-// setBore makes the turbulent loss of well i part of a bound. It is convex in the rate of a well that pumps, so that the bound is
-// kept by cuts. Where the well recharges it is concave and relieves the bound: the programme then leaves it out.
-func (s *setup) setBore(b *bound, i int) {
-	if s.Wells[i].QuadraticLoss == 0 || !b.counted[i] {
-		return
+// setCurvature makes the turbulent loss of well i (-1: none) part of a bound and says how the bound is to be kept. A row that is not
+// linear is convex, and so is the loss of a well that pumps; that of a well that recharges is concave. A convex change bounded from
+// above and a concave one from below are kept by cuts; the others by their latest tangent, which stays on the safe side.
+func (s *setup) setCurvature(b *bound, row *Row, i int) {
+	convex, concave := !row.Linear, false
+	b.bore = -1
+	if i >= 0 && s.Wells[i].QuadraticLoss != 0 && b.counted[i] {
+		b.bore = i
+		convex = convex || s.isYield(i)
+		concave = s.column[i] >= 0 && !s.isYield(i)
 	}
-	b.bore = i
-	if s.isYield(i) {
-		b.linear = false
-	}
+	b.linear = !convex && !concave
+	b.kept = b.side > 0 && !concave || b.side < 0 && !convex
 }
 
 // levelBound makes the bound on the level in a well; nil when the well has none.
@@ -194,12 +197,11 @@ func (p *planner) levelBound(i int) *bound {
 		s.notAssessed.addf("level in well %s: the response has no row for it", w.ID)
 		return nil
 	}
-	b := &bound{limit: -1, target: target{receptor: -1, well: i}, linear: row.Linear, value: true, side: 1, unit: 1, bore: -1,
-		counted: make([]bool, len(s.Wells))}
+	b := &bound{limit: -1, target: target{receptor: -1, well: i}, value: true, side: 1, unit: 1, counted: make([]bool, len(s.Wells))}
 	for k := range b.counted {
 		b.counted[k] = true
 	}
-	s.setBore(b, i)
+	s.setCurvature(b, row, i)
 	b.edge = s.WellTerms[i].StaticLevel - *lowest
 	b.size = math.Abs(b.edge)
 	b.grow = sign(b.edge)

@@ -22,7 +22,7 @@ const (
 // It linearises the aquifer at the present rates, solves the linear programme of the aim (response matrix method: Maddock 1972,
 // Water Resources Research 8), and linearises again at the plan. Where every row is linear that second response only supplies the
 // re-solved figures. Where a row is not, the tangent at the plan is added as a cut and kept (Kelley 1960, J. SIAM 8), until no
-// limit is passed by more than cutTolerance of its size. A limit that bounds such a row from below is kept by its latest tangent
+// limit is passed by more than cutTolerance of its size. A limit that bounds a convex row from below is kept by its latest tangent
 // instead, which stays on the safe side; the plan is then locally best, and a caution says so.
 //
 // The limits mean:
@@ -113,6 +113,9 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			return nil, err
 		}
 		sol, err := convex.Solve(ctx, g.problem, convex.Options{Start: basis})
+		if err == nil && basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
+			sol, err = convex.Solve(ctx, g.problem, convex.Options{})
+		}
 		if sol != nil {
 			p.iterations += sol.Iterations
 		}
@@ -170,7 +173,7 @@ func outcome(sol *convex.Solution, err error) string {
 func (p *planner) addCuts(ctx context.Context, rates []float64, start bool) (int, error) {
 	added := 0
 	for _, b := range p.bounds {
-		if b.linear || (b.side < 0 && !start) {
+		if b.linear || (!b.kept && !start) {
 			continue
 		}
 		tan, counted, err := p.oracle.tangentOf(ctx, b, rates)
@@ -180,7 +183,7 @@ func (p *planner) addCuts(ctx context.Context, rates []float64, start bool) (int
 		if !start && b.slack(tan.at(counted), p.share) >= -cutTolerance*b.scale(p.setup, tan.slope) {
 			continue
 		}
-		if b.side < 0 {
+		if !b.kept {
 			p.local = true
 		}
 		p.cuts = append(p.cuts, cut{bound: b, tangent: tan})
@@ -197,7 +200,7 @@ const localTolerance = 1e-9
 func (p *planner) moveTangents(ctx context.Context, rates []float64, gain float64) (moved int, err error) {
 	for k := range p.cuts {
 		c := &p.cuts[k]
-		if c.bound.side > 0 {
+		if c.bound.kept {
 			continue
 		}
 		if c.tangent, _, err = p.oracle.tangentOf(ctx, c.bound, rates); err != nil {

@@ -99,6 +99,11 @@ func (p *planner) addBound(g *programme, k int, tan tangent) error {
 	return g.add(owner{ofBound, k}, p.setup.boundWords(b), a, math.Inf(-1), upper)
 }
 
+// negligibleShare is the change by a well's largest rate, as a share of the limit's size or of the largest such change in its row,
+// that the programme takes for none. Influence dies out like exp(-distance/length) over leaky ground, and entries of 1e-30 beside
+// others of 1e-3 would leave the programme without a sensible scale; this is a thousandth of what the solver's tolerance is.
+const negligibleShare = 1e-12
+
 // boundRow returns the coefficients of the decided wells in a bound's row, and what the standing wells leave.
 func (p *planner) boundRow(b *bound, tan tangent) (a []float64, upper float64) {
 	s := p.setup
@@ -112,6 +117,15 @@ func (p *planner) boundRow(b *bound, tan tangent) (a []float64, upper float64) {
 		default:
 			standing += slope * s.standing[i]
 			terms += math.Abs(slope * s.standing[i])
+		}
+	}
+	largest := b.size
+	for k, i := range s.decided {
+		largest = math.Max(largest, math.Abs(a[k])*s.rateScale(i))
+	}
+	for k, i := range s.decided {
+		if math.Abs(a[k])*s.rateScale(i) <= negligibleShare*largest {
+			a[k] = 0
 		}
 	}
 	return a, remainder(b.slack(standing, 0), terms)

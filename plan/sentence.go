@@ -21,19 +21,17 @@ const mostContributors = 3
 func (p *planner) sentence(b *bound, r *LimitResult, contributions []float64, byRecharge []string) string {
 	s := p.setup
 	l := s.Limits[b.limit]
-	unit := r.Unit
-	amount := func(v float64) string {
-		if l.Quantity == wells.ShareOfBase {
-			return percentText(v) + " of the undisturbed value"
-		}
-		return amountText(v, unit)
+	amount := func(v float64) string { return limitAmount(r, v) }
+	of := " of the limit)"
+	if l.Quantity == wells.Value {
+		of = " of the room)"
 	}
 	var parts []string
 	switch {
 	case r.Passed:
 		parts = append(parts, "Passed by "+amount(-r.Headroom)+".", contributors(s, contributions))
 	case r.Binds && p.share > 0 && b.size > 0:
-		parts = append(parts, "Sets the smallest headroom: "+amount(r.Headroom)+" ("+percentText(*r.RoomShare)+" of the limit) is left.",
+		parts = append(parts, "Sets the smallest headroom: "+amount(r.Headroom)+" ("+percentText(*r.RoomShare)+of+" is left.",
 			contributors(s, contributions), p.worth(b, r, l))
 	case r.Binds && b.reserve > 0 && b.size > 0:
 		parts = append(parts, "Binds with its reserve of "+percentText(b.reserve)+" kept back.", contributors(s, contributions), p.worth(b, r, l))
@@ -42,10 +40,6 @@ func (p *planner) sentence(b *bound, r *LimitResult, contributions []float64, by
 	default:
 		text := "Holds with " + amount(r.Headroom) + " to spare"
 		if r.RoomShare != nil {
-			of := " of the limit)"
-			if l.Quantity == wells.Value {
-				of = " of the room)"
-			}
 			text += " (" + percentText(*r.RoomShare) + of
 		}
 		if b.reserve > 0 && r.RoomShare != nil && *r.RoomShare < b.reserve {
@@ -57,6 +51,14 @@ func (p *planner) sentence(b *bound, r *LimitResult, contributions []float64, by
 		parts = append(parts, "Holds only because "+list(byRecharge)+plural(len(byRecharge), " recharges.", " recharge."))
 	}
 	return strings.Join(nonEmpty(parts), " ")
+}
+
+// limitAmount writes a headroom in the limit's unit.
+func limitAmount(r *LimitResult, v float64) string {
+	if r.Quantity == wells.ShareOfBase.String() {
+		return percentText(v) + " of the undisturbed value"
+	}
+	return amountText(v, r.Unit)
 }
 
 // worth is the part of a sentence about the shadow price; empty when nothing was optimised.
