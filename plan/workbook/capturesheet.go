@@ -22,14 +22,19 @@ func (b *book) fillCapture() {
 		return
 	}
 	summary := row
-	first := summary + 1
-	total := first + len(r.Capture)
-	table := total + 2
+	table := summary + 1 + len(r.Capture) + 2
 	if len(r.CaptureWells) > longTable {
 		s.page.titleRows = [2]int{table + 1, table + 2}
 	}
 	b.captureByWell(table, leading)
-	lower := table + 3
+	b.captureSummary(summary, table+3, leading)
+}
+
+// captureSummary writes each feature's flow and share; the shares by well begin at the row lower.
+func (b *book) captureSummary(summary, lower, leading int) {
+	s, r := b.capture, b.report
+	first := summary + 1
+	total := first + len(r.Capture)
 	last := lower + len(r.CaptureWells) - 1
 	s.heads(summary, 1, "Feature", "", "Kind", ">Flow at the plan\nm³/d", ">Share at the plan", ">Flow now\nm³/d", ">Share now")
 	s.heads(summary, 8, ">Available flow\nm³/d")

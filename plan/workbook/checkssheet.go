@@ -38,15 +38,6 @@ func (b *book) checkTable(row int) int {
 		s.nothing(row, checksEnd, "Not done: the report holds no checks.")
 		return row + 1
 	}
-	passed, failed := 0, 0
-	for _, c := range b.report.Checks {
-		switch c.Result {
-		case resultPass:
-			passed++
-		case resultFail:
-			failed++
-		}
-	}
 	s.across(row, 1, checksEnd, b.checkCount(), label)
 	row++
 	s.heads(row, 1, "Check", "Result", "Detail", "", "")

@@ -45,7 +45,13 @@ func (b *book) fillContributions() {
 		b.agreeContributions(rec)
 		b.agree("contributions to "+b.report.Receptors[rec].ID, s.at(row, leading+1+k).number, b.report.Receptors[rec].Change, b.gross(rec))
 	}
-	row += 2
+	b.contributionShares(row+2, leading, first, total)
+}
+
+// contributionShares writes each part over the whole change; the parts begin at the row first and their sums stand in total.
+func (b *book) contributionShares(row, leading, first, total int) {
+	s, receptors := b.contributions, b.facts.assessed
+	last := leading + len(receptors)
 	if row > rowsOnPage/2 {
 		s.page.rowBreaks = append(s.page.rowBreaks, row)
 	}

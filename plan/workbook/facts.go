@@ -21,6 +21,30 @@ func readFacts(r *plan.Report) (facts, error) {
 	f := facts{well: map[string]int{}, slope: make([][]float64, len(r.Receptors)), ofFeature: make([]int, len(r.Receptors))}
 	var faults []string
 	add := func(format string, args ...any) { faults = append(faults, fmt.Sprintf(format, args...)) }
+	f.readWells(r, add)
+	receptor := map[string]int{}
+	for i, rec := range r.Receptors {
+		if _, twice := receptor[rec.ID]; twice {
+			add("receptor %q stands twice", rec.ID)
+		}
+		receptor[rec.ID] = i
+		f.ofFeature[i] = -1
+		if k, known := f.well[rec.Feature]; known && rec.Kind == kindPumpingLevel {
+			f.ofFeature[i] = k
+		}
+	}
+	f.readSensitivities(r, receptor, add)
+	f.checkNamedWells(r, add)
+	if len(faults) > maxErrors {
+		faults = append(faults[:maxErrors], "and more")
+	}
+	if len(faults) > 0 {
+		return f, fmt.Errorf("the report does not fit together: %s", strings.Join(faults, "; "))
+	}
+	return f, nil
+}
+
+func (f *facts) readWells(r *plan.Report, add func(string, ...any)) {
 	for i, w := range r.Wells {
 		if _, twice := f.well[w.ID]; twice {
 			add("well %q stands twice", w.ID)
@@ -40,18 +64,10 @@ func readFacts(r *plan.Report) (facts, error) {
 	if len(r.Wells) == 0 {
 		add("there are no wells")
 	}
-	receptor := map[string]int{}
-	for i, rec := range r.Receptors {
-		if _, twice := receptor[rec.ID]; twice {
-			add("receptor %q stands twice", rec.ID)
-		}
-		receptor[rec.ID] = i
-		f.ofFeature[i] = -1
-		if k, known := f.well[rec.Feature]; known && rec.Kind == kindPumpingLevel {
-			f.ofFeature[i] = k
-		}
-	}
-	f.readSensitivities(r, receptor, add)
+}
+
+// checkNamedWells checks the wells that quotas and capture name.
+func (f *facts) checkNamedWells(r *plan.Report, add func(string, ...any)) {
 	for _, q := range r.Quotas {
 		for _, id := range q.Wells {
 			if _, known := f.well[id]; !known {
@@ -71,13 +87,6 @@ func readFacts(r *plan.Report) (facts, error) {
 			add("the capture of %q has shares for %d of %d wells", c.Feature, len(c.ShareByWell), len(r.CaptureWells))
 		}
 	}
-	if len(faults) > maxErrors {
-		faults = append(faults[:maxErrors], "and more")
-	}
-	if len(faults) > 0 {
-		return f, fmt.Errorf("the report does not fit together: %s", strings.Join(faults, "; "))
-	}
-	return f, nil
 }
 
 func (f *facts) readSensitivities(r *plan.Report, receptor map[string]int, add func(string, ...any)) {

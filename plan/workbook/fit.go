@@ -29,7 +29,7 @@ func (s *sheet) fitWidths() {
 				for _, word := range strings.Fields(cell.words) {
 					need = math.Max(need, textPixels(word, *cell.look))
 				}
-				need = math.Min(need+float64(cell.look.indent)*indentPixels+paddingPixels, widestHeadWord)
+				need = math.Min(need+float64(cell.look.indent)*indentPixels+paddingPixels+headGap, widestHeadWord)
 			}
 			if digits := math.Ceil(need/digitPixels*2) / 2; digits > s.width(c+1) {
 				s.setWidths(c+1, digits)
@@ -41,6 +41,7 @@ func (s *sheet) fitWidths() {
 const (
 	numberSlack    = paddingPixels + 8 // a figure more may come from an edit
 	indentPixels   = 10.0
+	headGap        = 6.0   // between two heads
 	widestHeadWord = 160.0 // longer words are broken
 )
 

@@ -166,7 +166,7 @@ func TestNonFiniteNumbersAreRefused(t *testing.T) {
 		return out
 	}
 	total := len(fields(richReport()))
-	const step = 7 // every seventh field, so that the test stays short; the offsets change with the kind of number
+	const step = 23 // some of the fields, so that the test stays short; the offsets change with the kind of number
 	for k, bad := range []float64{math.NaN(), math.Inf(1), math.Inf(-1)} {
 		for i := k; i < total; i += step {
 			r := richReport()

@@ -1,11 +1,5 @@
 package workbook
 
-import (
-	"fmt"
-
-	"springbound/plan"
-)
-
 const inputsEnd = 13
 
 // Columns of the wells' table that Plan's levels refer to.
@@ -220,13 +214,4 @@ func (b *book) fileTable(row int) {
 		s.across(row, 1, 3, f.File, line)
 		s.across(row, 4, 10, f.SHA256, even)
 	}
-}
-
-// conflictWords writes one member of a conflict in a sentence.
-func conflictWords(m plan.ConflictMember) string {
-	by := fmt.Sprintf("%s %s", figureText(m.By), unitWords(m.Unit))
-	if m.Unit == "1" {
-		by = figureText(m.By)
-	}
-	return by
 }

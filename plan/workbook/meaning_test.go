@@ -199,3 +199,74 @@ func TestTermsKeepPrecedence(t *testing.T) {
 		f.Close()
 	}
 }
+
+// Joined cells that overlap make a damaged file.
+func TestJoinedCellsDoNotOverlap(t *testing.T) {
+	for _, r := range []*plan.Report{richReport(), stripReport(), conflictReport(), hostileReport()} {
+		for _, s := range layout(t, r).sheets() {
+			taken := map[[2]int]bool{}
+			for _, m := range s.merges {
+				for row := m[0]; row <= m[2]; row++ {
+					for c := m[1]; c <= m[3]; c++ {
+						if taken[[2]int{row, c}] {
+							t.Errorf("%s!%s is joined twice", s.name, cellName(row, c))
+						}
+						taken[[2]int{row, c}] = true
+						if c > m[1] && s.at(row, c).kind != emptyCell {
+							t.Errorf("%s!%s lies under joined cells and holds %q", s.name, cellName(row, c), s.at(row, c).words)
+						}
+					}
+				}
+			}
+		}
+	}
+}
+
+// Beyond the range in which superposition holds, every sheet must say so.
+func TestTableNotValidIsSaid(t *testing.T) {
+	for words, spoil := range map[string]func(*plan.Report){
+		"":                     func(r *plan.Report) {},
+		"a spring would stop":  func(r *plan.Report) { r.Receptors[2].NoPumping = 100 },
+		"a level falls below":  func(r *plan.Report) { r.Wells[0].AquiferTop = ptr(40.9) },
+		"a spring would stop ": func(r *plan.Report) { r.Receptors[2].NoPumping, r.Wells[0].AquiferTop = 100, ptr(40.9) },
+	} {
+		r := richReport()
+		spoil(r)
+		b := layout(t, r)
+		for _, s := range b.sheets() {
+			got := s.at(validRow, 1).words
+			if (got == "") != (words == "") || !strings.Contains(got, words) {
+				t.Errorf("%s reads %q where %q is to be said", s.name, got, words)
+			}
+		}
+	}
+}
+
+// No head's word may be cut and no number may show as a row of hashes: every width must cover the estimate.
+func TestWidthsCoverNumbersAndHeads(t *testing.T) {
+	for _, r := range []*plan.Report{richReport(), largeReport(40, 8)} {
+		for _, s := range layout(t, r).sheets() {
+			s.fitWidths()
+			for row := range s.rows {
+				for c := range s.rows[row] {
+					cell := &s.rows[row][c]
+					if cell.kind != numberCell || cell.look.size != textSize {
+						continue
+					}
+					if need := textPixels(shownNumber(cell.number, cell.look.format), *cell.look); need > s.width(c+1)*digitPixels && !s.isJoined(row+1, c+1) {
+						t.Errorf("%s!%s needs %.0f pixels and has %.0f", s.name, cellName(row+1, c+1), need, s.width(c+1)*digitPixels)
+					}
+				}
+			}
+		}
+	}
+}
+
+func (s *sheet) isJoined(row, column int) bool {
+	for _, m := range s.merges {
+		if m[0] == row && m[1] <= column && column <= m[3] {
+			return true
+		}
+	}
+	return false
+}

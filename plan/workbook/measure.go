@@ -11,7 +11,7 @@ import (
 const (
 	defaultWidth  = 10.0 // of a column, in digits of the workbook's standard font
 	digitPixels   = 8.0  // of a digit of the standard font, Arial 11, at 96 dots an inch
-	paddingPixels = 9.0  // inside a cell, both sides
+	paddingPixels = 7.0  // inside a cell, both sides
 	pixelsPerEm   = 96.0 / 72.0
 	lineFactor    = 1.28 // line height over font size
 	boldFactor    = 1.08 // width of bold text over plain
@@ -31,8 +31,10 @@ func runeEm(r rune) float64 {
 		return 0.34
 	case strings.ContainsRune("ckszvxyJ", r):
 		return 0.50
-	case strings.ContainsRune("mMW%@—…▲●○", r):
-		return 0.92
+	case strings.ContainsRune("mM", r):
+		return 0.84
+	case strings.ContainsRune("W%@—…▲●○◐", r):
+		return 0.95
 	case r == 'w':
 		return 0.73
 	case unicode.Is(unicode.Han, r), unicode.Is(unicode.Hiragana, r), unicode.Is(unicode.Katakana, r), unicode.Is(unicode.Hangul, r):

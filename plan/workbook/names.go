@@ -8,9 +8,8 @@ import (
 // A nameTable gives defined names that are legal and unique. Every name has a prefix with an underscore, so it cannot look like a
 // cell's address or like R and C, which the format reserves.
 type nameTable struct {
-	used  map[string]bool // in lower case: the format does not tell cases apart
-	list  []definedName
-	total int
+	used map[string]bool // in lower case: the format does not tell cases apart
+	list []definedName
 }
 
 type definedName struct{ name, refersTo string }

@@ -18,8 +18,7 @@ type planLayout struct {
 	idAgain, idLevels                                             int // the well again, at the left of a printed page
 	rates                                                         int // last column of the first page
 	end                                                           int
-	changed, inUse                                                term
-	levelStatuses, withinStatuses                                 wordSpan
+	changed                                                       term
 	totalNow                                                      term
 	totalRow                                                      int
 }
@@ -75,7 +74,7 @@ func (b *book) layPlan() {
 	place(&p.level, 9.5)
 	place(&p.levelPlan, 9.5)
 	place(&p.lowest, 9.5)
-	place(&p.reason, 19)
+	place(&p.reason, 22)
 	place(&p.margin, 9)
 	place(&p.levelStatus, 15)
 	place(&p.levelPrice, 10.5)
@@ -281,8 +280,6 @@ func (b *book) fillLevels() {
 		}
 		b.fillLevelLimit(i, row, live)
 	}
-	p.levelStatuses = s.wordsDown(s, p.levelStatus, p.first, p.last)
-	p.withinStatuses = s.wordsDown(s, p.within, p.first, p.last)
 	s.warnWords(p.levelStatus, p.first, p.last)
 	s.warnWords(p.valid, p.first, p.last)
 }

@@ -46,7 +46,7 @@ func (b *book) headline() string {
 
 // resultPart writes the headline and what goes with it.
 func (b *book) resultPart(row int) int {
-	s, r, p := b.readMe, b.report, &b.planRows
+	s, r := b.readMe, b.report
 	s.across(row, 1, readEnd, b.headline(), with(label, func(l *look) { l.size = 13 }))
 	row++
 	if !b.noPlan() {
@@ -76,7 +76,12 @@ func (b *book) resultPart(row int) int {
 	if len(r.Observations) == 0 {
 		row = s.paragraph(row, readEnd, "Not calibrated: the model was not compared with any observed level or flow.", label)
 	}
-	row++
+	return b.comparePart(row + 1)
+}
+
+// comparePart sets the plan beside the rates that the workbook holds now.
+func (b *book) comparePart(row int) int {
+	s, r, p := b.readMe, b.report, &b.planRows
 	s.heads(row, 1, "", ">At the plan", ">Rates now in this workbook", "", "")
 	s.merge(row, 4, readEnd)
 	s.at(row, 4).words = "Remark"
@@ -191,6 +196,15 @@ func (b *book) conflictPart(row int) int {
 		row++
 	}
 	return row
+}
+
+// conflictWords writes one member of a conflict in a sentence.
+func conflictWords(m plan.ConflictMember) string {
+	by := fmt.Sprintf("%s %s", figureText(m.By), unitWords(m.Unit))
+	if m.Unit == "1" {
+		by = figureText(m.By)
+	}
+	return by
 }
 
 // bindingPart lists everything that holds the plan back, with its price and source.

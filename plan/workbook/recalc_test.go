@@ -12,6 +12,8 @@ import (
 	"testing"
 
 	"github.com/xuri/excelize/v2"
+
+	"springbound/plan"
 )
 
 // recalcShare is how far a recalculated number may be from the stored one, as a share of its size; both follow the same operations
@@ -165,6 +167,12 @@ func TestLibreOfficeAgrees(t *testing.T) {
 	defer after.Close()
 	compareRecalculated(t, cells, after, func(c formulaCell) string { return c.stored })
 
+	compareAfterEdit(t, f, cells, report)
+}
+
+// compareAfterEdit changes one rate, lets LibreOffice recalculate, and checks every formula and what the receptors do.
+func compareAfterEdit(t *testing.T, f *excelize.File, cells []formulaCell, report *plan.Report) {
+	t.Helper()
 	const edited, added = 0, 100.0 // well W1 by 100 m³/d
 	b := layout(t, report)
 	cell := cellName(b.planRows.first+edited, b.planRows.now)
@@ -175,7 +183,7 @@ func TestLibreOfficeAgrees(t *testing.T) {
 	if err := f.Write(&out); err != nil {
 		t.Fatal(err)
 	}
-	again, err = recalculate(t.TempDir(), out.Bytes())
+	again, err := recalculate(t.TempDir(), out.Bytes())
 	if err != nil {
 		t.Fatal(err)
 	}

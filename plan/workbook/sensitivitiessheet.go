@@ -2,13 +2,12 @@ package workbook
 
 // sensLayout says where things stand on Sensitivities: wells down, receptors across, and below, wells down and wells' nodes across.
 type sensLayout struct {
-	first, last          int         // rows of the wells in the first table
-	rate, own, existing  int         // columns
-	present, licensed    int         // columns
-	column               map[int]int // column of a receptor, by its index in the report
-	wellFirst, wellLast  int         // rows of the wells in the second table
-	wellColumn           map[int]int // column of a well's node in the second table, by its index in the report
-	receptors, wellNodes []int
+	first, last         int         // rows of the wells in the first table
+	rate, own, existing int         // columns
+	present, licensed   int         // columns
+	column              map[int]int // column of a receptor, by its index in the report
+	wellFirst, wellLast int         // rows of the wells in the second table
+	wellColumn          map[int]int // column of a well's node in the second table, by its index in the report
 }
 
 const (
