@@ -98,6 +98,26 @@ func (p *Problem) eachEntry(i int, f func(j int, a float64)) {
 	}
 }
 
+// activity returns row i times x and the sum of the absolute terms.
+func (p *Problem) activity(i int, x []float64) (value, terms float64) {
+	var sum twofold
+	row := p.row(i)
+	for j, v := range x[:len(row)] {
+		if v != 0 {
+			sum.addProduct(row[j], v)
+			terms += math.Abs(row[j] * v)
+		}
+	}
+	for k, r := range p.unitRow {
+		if r == i {
+			v := p.unitSign[k] * x[len(row)+k]
+			sum.add(v)
+			terms += math.Abs(v)
+		}
+	}
+	return sum.value(), terms
+}
+
 // outside returns by how much v lies outside its bounds, and the bound.
 func outside(v, lower, upper float64) (by, bound float64) {
 	switch {
@@ -132,14 +152,9 @@ type primalTerms struct {
 func (c *Certificate) checkPrimal(p *Problem, x []float64, u yardstick) primalTerms {
 	t := primalTerms{activity: make([]float64, p.Rows())}
 	for i := range t.activity {
-		var sum twofold
-		terms := 0.0
-		p.eachEntry(i, func(j int, a float64) {
-			sum.addProduct(a, x[j])
-			terms += math.Abs(a * x[j])
-		})
-		by, bound := outside(sum.value(), p.rowLower[i], p.rowUpper[i])
-		t.activity[i] = sum.value()
+		value, terms := p.activity(i, x)
+		by, bound := outside(value, p.rowLower[i], p.rowUpper[i])
+		t.activity[i] = value
 		c.PrimalViolation = largest(c.PrimalViolation, by)
 		c.PrimalViolationScaled = largest(c.PrimalViolationScaled, share(by, math.Max(u.value/u.row[i], terms+math.Abs(bound))))
 	}
@@ -301,13 +316,8 @@ func (c *Certificate) checkDirection(p *Problem, ray *Ray, u yardstick) {
 		c.approach(v, column.Lower, column.Upper, scale*u.col[j])
 	}
 	for i := 0; i < p.Rows(); i++ {
-		var sum twofold
-		own := 0.0
-		p.eachEntry(i, func(j int, a float64) {
-			sum.addProduct(a, ray.Columns[j])
-			own += math.Abs(a * ray.Columns[j])
-		})
-		c.approach(sum.value(), p.rowLower[i], p.rowUpper[i], math.Max(own, scale/u.row[i]))
+		value, own := p.activity(i, ray.Columns)
+		c.approach(value, p.rowLower[i], p.rowUpper[i], math.Max(own, scale/u.row[i]))
 	}
 	c.require("the move towards a bound along the direction", c.DirectionViolation, CertifiedNegligible)
 	if !(c.DirectionGain > CertifiedNegligible) && c.Reason == "" {

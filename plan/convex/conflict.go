@@ -33,6 +33,10 @@ func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error
 	out := &ConflictSet{Status: f.solve()}
 	if out.Status == Infeasible {
 		f.useProof()
+		out.Status = f.compact()
+	}
+	if out.Status == Infeasible {
+		f.useProof()
 		out.Status = f.reduce(&f.rows)
 	}
 	if out.Status == Infeasible {
@@ -40,6 +44,9 @@ func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error
 	}
 	if out.Status == Infeasible {
 		out.Rows, out.Bounds = f.rows.list(), f.columns.list()
+		for k := range out.Rows {
+			out.Rows[k].Index = f.origin[out.Rows[k].Index]
+		}
 		out.Verified = f.verify()
 	}
 	out.Solves = f.solves
@@ -69,6 +76,7 @@ type filter struct {
 	p             *Problem
 	t             *session
 	rows, columns filterList
+	origin        []int // by row of p: index in the caller's problem
 	solves        int
 }
 
@@ -143,6 +151,32 @@ func (f *filter) dropUnused(l *filterList, multiplier func(int) float64) {
 			f.drop(l, k)
 		}
 	}
+}
+
+// compact leaves out the rows without bounds, which are most of them once a proof has been used, and solves what remains.
+func (f *filter) compact() Status {
+	small := &Problem{sense: f.p.sense, columns: f.p.columns}
+	place := make([]int, f.p.Rows())
+	for i := range place {
+		place[i] = small.Rows()
+		lower, upper := f.p.rowLower[i], f.p.rowUpper[i]
+		if !finite(lower) && !finite(upper) {
+			continue
+		}
+		f.origin = append(f.origin, i)
+		small.a = append(small.a, f.p.row(i)...)
+		small.rowName = append(small.rowName, f.p.rowName[i])
+		small.rowLower = append(small.rowLower, lower)
+		small.rowUpper = append(small.rowUpper, upper)
+	}
+	kept := filterList{row: true}
+	for _, b := range f.rows.list() {
+		kept.all = append(kept.all, Bound{place[b.Index], b.Side})
+	}
+	kept.dropped = make([]bool, len(kept.all))
+	f.p, f.rows, f.t = small, kept, newSession(small)
+	f.t.e.startFromRows()
+	return f.solve()
 }
 
 // reduce tries to do without each member in turn. It returns Infeasible, or the status that stopped it.

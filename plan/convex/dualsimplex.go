@@ -197,11 +197,15 @@ func (e *engine) dualStep(p int, by float64, pick func(gap float64) (breakpoint,
 	if direction < 0 {
 		target, e.place[p] = e.upper[p], AtUpper
 	}
+	far := math.Abs(e.x[p]) > farAway*math.Max(1, math.Abs(target))
 	theta := (target - e.x[p]) / e.stepOf(p)
 	e.move(theta)
 	e.x[q] += theta
 	e.x[p] = target
 	e.exchange(p, q)
+	if far {
+		e.computeValues()
+	}
 	e.iterations++
 	return t, reached
 }

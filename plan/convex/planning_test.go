@@ -226,6 +226,27 @@ func TestUnitsDoNotMatter(t *testing.T) {
 	}
 }
 
+// TestHugeNumberForNoBound: 1e9 to 1e30 in place of "no cap" must give the optimum of the problem without caps.
+func TestHugeNumberForNoBound(t *testing.T) {
+	for seed := uint64(0); seed < 8; seed++ {
+		p := planningProblem(t, planningCase{wells: 40, limits: 20, seed: 650 + seed})
+		set := func(upper float64) *Solution {
+			for j := 0; j < p.Columns(); j++ {
+				if err := p.SetBounds(j, 0, upper); err != nil {
+					t.Fatal(err)
+				}
+			}
+			return mustOptimal(t, p, Options{})
+		}
+		want := set(inf).Objective
+		for _, huge := range []float64{1e9, 1e15, 1e20, 1e30} {
+			if s := set(huge); !near(s.Objective, want, rounding) {
+				t.Errorf("seed %d, %g for no cap: %.14g, want %.14g", seed, huge, s.Objective, want)
+			}
+		}
+	}
+}
+
 func one(int) float64 { return 1 }
 
 // TestWarmStart adds limits to a solved problem: the optimum is that of a cold start, with far fewer pivots.

@@ -21,7 +21,7 @@ type RowRelaxation struct {
 	// Alone is the least weighted relaxation of this row that makes the problem feasible when no other gives way: +Inf when none
 	// does, NaN when the search was stopped before.
 	Alone float64 // [-]
-	// AloneAmount is the same without the weight.
+	// AloneAmount is the same in the units of the row, without the weight.
 	AloneAmount float64 // [-]
 }
 

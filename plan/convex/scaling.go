@@ -1,6 +1,9 @@
 package convex
 
-import "math"
+import (
+	"math"
+	"sort"
+)
 
 // scalePasses is the most sweeps over the entries; each costs one reading of the matrix, and dense response rows are even enough
 // after one or two.
@@ -24,7 +27,7 @@ type scaled struct {
 }
 
 // scale brings the entries near one by geometric means (Curtis & Reid 1972 treat the same aim by least squares), the costs to at
-// most one and the bounds to one in the geometric mean.
+// most one and the typical bound to one.
 func scale(p *Problem) *scaled {
 	m, n, u := len(p.rowName), len(p.columns), len(p.unit)
 	s := &scaled{row: ones(m), col: ones(n + u)}
@@ -134,33 +137,44 @@ func powerOfTwo(v float64) float64 {
 	return math.Ldexp(1, int(math.Round(math.Log2(v))))
 }
 
-// centreBounds multiplies columns and divides rows by one factor so that the finite bounds have geometric mean one.
+// centreBounds multiplies columns and divides rows by one factor so that the typical bound is one: the smaller of the medians over
+// rows and over columns. A median passes over the large numbers that stand for "no bound"; and where the two differ the smaller one
+// makes for the stricter tolerance.
 func (s *scaled) centreBounds(p *Problem) {
-	sum, count := 0.0, 0
-	note := func(b, f float64) {
+	var rows, columns []float64
+	note := func(list *[]float64, b, f float64) {
 		if b != 0 && finite(b) {
-			sum += math.Log2(math.Abs(b * f))
-			count++
+			*list = append(*list, math.Log2(math.Abs(b))+math.Log2(f))
 		}
 	}
 	for i, r := range s.row {
-		note(p.rowLower[i], r)
-		note(p.rowUpper[i], r)
+		note(&rows, p.rowLower[i], r)
+		note(&rows, p.rowUpper[i], r)
 	}
 	for j, c := range p.columns {
-		note(c.Lower, 1/s.col[j])
-		note(c.Upper, 1/s.col[j])
+		note(&columns, c.Lower, 1/s.col[j])
+		note(&columns, c.Upper, 1/s.col[j])
 	}
-	if count == 0 {
+	middle := math.Min(median(rows), median(columns))
+	if math.IsInf(middle, 1) {
 		return
 	}
-	g := math.Ldexp(1, int(math.Round(sum/float64(count))))
+	g := math.Ldexp(1, int(math.Round(middle)))
 	for i := range s.row {
 		s.row[i] /= g
 	}
 	for j := range s.col {
 		s.col[j] *= g
 	}
+}
+
+// median returns the lower median of the list, which it sorts; +Inf for an empty one.
+func median(list []float64) float64 {
+	if len(list) == 0 {
+		return math.Inf(1)
+	}
+	sort.Float64s(list)
+	return list[(len(list)-1)/2]
 }
 
 // scaleCost sets the factor of the cost, with the sign that makes it a minimisation.

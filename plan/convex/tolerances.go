@@ -31,6 +31,9 @@ const (
 	// boundPerturbation is the size of the first widening of bounds relative to 1 + |bound| when the primal method stalls; each
 	// further one is ten times as large, up to perturbationLargest.
 	boundPerturbation = 1e-7
+	// farAway is the distance of a leaving value from its bound beyond which the digits lost on the way back, seven and more, are
+	// restored by computing all values anew.
+	farAway = 1e7
 	// refactorEvery is the number of changes of the kernel after which it is factored afresh.
 	refactorEvery = 400
 	// proofMargin is the least distance from feasible, relative to the sum of absolute terms, that a proof of infeasibility must

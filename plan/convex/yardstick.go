@@ -1,6 +1,9 @@
 package convex
 
-import "math"
+import (
+	"math"
+	"sort"
+)
 
 // yardstick holds the natural units by which Certify rates an error where the terms themselves vanish: with row i multiplied by
 // row[i] and column j by col[j] all entries are near one; then value is the size of a typical bound and cost that of the largest
@@ -22,11 +25,22 @@ func measure(p *Problem) yardstick {
 		most := make([]float64, n)
 		for i := 0; i < m; i++ {
 			top := 0.0
-			p.eachEntry(i, func(j int, a float64) {
-				v := math.Abs(a) * u.row[i] * u.col[j]
-				top = math.Max(top, v)
-				most[j] = math.Max(most[j], v)
-			})
+			row, f := p.row(i), u.row[i]
+			for j, a := range row {
+				v := math.Abs(a) * f * u.col[j]
+				if v > top {
+					top = v
+				}
+				if v > most[j] {
+					most[j] = v
+				}
+			}
+			for k, r := range p.unitRow {
+				if r == i {
+					v := f * u.col[len(row)+k]
+					top, most[len(row)+k] = math.Max(top, v), math.Max(most[len(row)+k], v)
+				}
+			}
 			if top > 0 {
 				u.row[i] /= math.Sqrt(top)
 			}
@@ -42,26 +56,33 @@ func measure(p *Problem) yardstick {
 	return u
 }
 
-// setValue takes the geometric mean of the finite bounds that are not zero.
+// setValue takes the smaller of the middle bounds of rows and of columns, so that a few, or even most columns with a huge number in
+// place of "no bound" do not make it large.
 func (u *yardstick) setValue(p *Problem) {
-	sum, count := 0.0, 0.0
-	note := func(b, f float64) {
+	var sizes [2][]float64
+	note := func(kind int, b, f float64) {
 		if b != 0 && finite(b) {
-			sum += math.Log(math.Abs(b)) + math.Log(f)
-			count++
+			sizes[kind] = append(sizes[kind], math.Abs(b)*f)
 		}
 	}
 	for i, f := range u.row {
-		note(p.rowLower[i], f)
-		note(p.rowUpper[i], f)
+		note(0, p.rowLower[i], f)
+		note(0, p.rowUpper[i], f)
 	}
 	for j, f := range u.col {
 		c := p.anyColumn(j)
-		note(c.Lower, 1/f)
-		note(c.Upper, 1/f)
+		note(1, c.Lower, 1/f)
+		note(1, c.Upper, 1/f)
 	}
-	if count > 0 {
-		u.value = math.Exp(sum / count)
+	least := math.Inf(1)
+	for _, list := range sizes {
+		if len(list) > 0 {
+			sort.Float64s(list)
+			least = math.Min(least, list[(len(list)-1)/2])
+		}
+	}
+	if finite(least) {
+		u.value = least
 	}
 }
 
