@@ -63,6 +63,16 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 		})
 		members[memberAt[o]].excess = column
 	}
+	p.addEnds(add)
+	if err != nil {
+		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
+	}
+	return problem, members, nil
+}
+
+// addEnds adds, for each decided well, the sign of its rate as a row that always holds and the ends of its range as members.
+func (p *planner) addEnds(add func(m *member, name string, lower, upper float64, set func(a []float64))) {
+	s := p.setup
 	for k, i := range s.decided {
 		lower, upper := 0.0, math.Inf(1)
 		if s.Wells[i].Min < 0 {
@@ -80,10 +90,6 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 			add(&m.member, m.words, lower, upper, func(a []float64) { a[k] = 1 })
 		}
 	}
-	if err != nil {
-		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
-	}
-	return problem, members, nil
 }
 
 // rangeEnd is an end of a well's range that is not zero.

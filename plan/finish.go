@@ -82,6 +82,32 @@ func (p *planner) hasOther(ctx context.Context, g *programme, sol *convex.Soluti
 			cost[j] -= 1 / scale[j]
 		}
 	}
+	errs = append(errs, faceRows(face, sol, scale, aim, cost))
+	for j, c := range cost {
+		errs = append(errs, face.SetCost(j, c))
+	}
+	if err := errors.Join(errs...); err != nil {
+		return false, fmt.Errorf("plan: the programme of plans as good: %w", err)
+	}
+	other, err := convex.Solve(ctx, face, convex.Options{Start: sol.Basis})
+	if err != nil {
+		return false, fmt.Errorf("plan: the programme of plans as good: %w", err)
+	}
+	p.iterations += other.Iterations
+	if other.Status != convex.Optimal {
+		return true, nil
+	}
+	for j := range p.setup.decided {
+		if !(math.Abs(other.X[j]-sol.X[j]) <= otherTolerance*scale[j]) {
+			return true, nil
+		}
+	}
+	return false, nil
+}
+
+// faceRows holds the rows with a price at their bounds, and adds to cost the distance from the bounds that are reached without one.
+func faceRows(face *convex.Problem, sol *convex.Solution, scale []float64, aim float64, cost []float64) error {
+	var errs []error
 	for i := 0; i < face.Rows(); i++ {
 		r := face.Row(i)
 		size := 0.0
@@ -108,24 +134,5 @@ func (p *planner) hasOther(ctx context.Context, g *programme, sol *convex.Soluti
 			}
 		}
 	}
-	for j, c := range cost {
-		errs = append(errs, face.SetCost(j, c))
-	}
-	if err := errors.Join(errs...); err != nil {
-		return false, fmt.Errorf("plan: the programme of plans as good: %w", err)
-	}
-	other, err := convex.Solve(ctx, face, convex.Options{Start: sol.Basis})
-	if err != nil {
-		return false, fmt.Errorf("plan: the programme of plans as good: %w", err)
-	}
-	p.iterations += other.Iterations
-	if other.Status != convex.Optimal {
-		return true, nil
-	}
-	for j := range p.setup.decided {
-		if !(math.Abs(other.X[j]-sol.X[j]) <= otherTolerance*scale[j]) {
-			return true, nil
-		}
-	}
-	return false, nil
+	return errors.Join(errs...)
 }

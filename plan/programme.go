@@ -33,20 +33,8 @@ func (p *planner) build(withShare bool) (*programme, error) {
 	if g.problem, err = convex.NewProblem(convex.Maximise, columns); err != nil {
 		return nil, fmt.Errorf("plan: the programme's columns: %w", err)
 	}
-	for k := range s.quotas {
-		q := &s.quotas[k]
-		a, standing := g.coefficients(), 0.0
-		for m, i := range q.wells {
-			switch {
-			case s.isYield(i):
-				a[s.column[i]] = q.weight[m]
-			case s.column[i] < 0 && s.standing[i] > 0:
-				standing += q.weight[m] * s.standing[i]
-			}
-		}
-		if err := g.add(owner{ofQuota, k}, s.quotaWords(q), a, math.Inf(-1), remainder(q.limit-standing, q.limit+standing)); err != nil {
-			return nil, err
-		}
+	if err := p.addQuotas(g); err != nil {
+		return nil, err
 	}
 	if s.demand != nil {
 		a := g.coefficients()
@@ -78,6 +66,27 @@ func (p *planner) build(withShare bool) (*programme, error) {
 		}
 	}
 	return g, nil
+}
+
+// addQuotas adds one row a quota over the pumped rates.
+func (p *planner) addQuotas(g *programme) error {
+	s := p.setup
+	for k := range s.quotas {
+		q := &s.quotas[k]
+		a, standing := g.coefficients(), 0.0
+		for m, i := range q.wells {
+			switch {
+			case s.isYield(i):
+				a[s.column[i]] = q.weight[m]
+			case s.column[i] < 0 && s.standing[i] > 0:
+				standing += q.weight[m] * s.standing[i]
+			}
+		}
+		if err := g.add(owner{ofQuota, k}, s.quotaWords(q), a, math.Inf(-1), remainder(q.limit-standing, q.limit+standing)); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 func (p *planner) indexOf(b *bound) int {
