@@ -128,8 +128,14 @@ func (b *book) fillHeads() {
 
 // asPlanned says what the rates are before anything is edited.
 func (b *book) asPlanned() string {
+	if b.noPlan() && b.report.Status != plan.StatusInfeasible && b.report.Conflict == nil {
+		return warnSign + "There is no plan: the search for one did not end. The rates shown are not a plan."
+	}
 	if b.noPlan() {
 		return warnSign + "No plan keeps all limits. The rates shown are a starting point, not a plan."
+	}
+	if b.givenRates() {
+		return "Rates as given; nothing was planned."
 	}
 	return "Rates as planned."
 }
@@ -177,18 +183,35 @@ func (s *sheet) sectionHead(row, last int, words string) int {
 	return row + 1
 }
 
-// noPlan tells whether the report explains why there is no plan; its rates are then a starting point.
-func (b *book) noPlan() bool { return b.report.Conflict != nil || b.report.Status == statusInfeasible }
+// noPlan tells whether the report says why there is no plan; its rates are then a starting point or the last ones tried.
+func (b *book) noPlan() bool {
+	switch b.report.Status {
+	case plan.StatusInfeasible, plan.StatusNotConverged, plan.StatusNumericalFailure:
+		return true
+	}
+	return b.report.Conflict != nil
+}
 
-// startWords are what the workbook's own words become where there is no plan.
-var startWords = strings.NewReplacer("At the plan", "At the start", "at the plan", "at the start", "Planned rate", "Starting rate", "planned rate", "starting rate",
-	"less planned", "less start", "refer to the plan", "refer to the starting rates", "What holds the plan: binding limits", "Limits reached or passed at the starting rates",
-	"differs from the plan", "differs from the start", "those of the plan", "the starting ones")
+// givenRates tells whether the report looks at rates that somebody gave, without planning any.
+func (b *book) givenRates() bool { return b.report.Status == plan.StatusGivenRates }
 
-// says adapts the workbook's own words where there is no plan; never the report's.
+// What the workbook's own words become where there is no plan, and where the rates were given.
+var (
+	startWords = strings.NewReplacer("At the plan", "At the start", "at the plan", "at the start", "Planned rate", "Starting rate", "planned rate", "starting rate",
+		"less planned", "less start", "refer to the plan", "refer to the starting rates", "What holds the plan: binding limits", "Limits reached or passed at the starting rates",
+		"differs from the plan", "differs from the start", "those of the plan", "the starting ones", "of the plan", "at the starting rates")
+	givenWords = strings.NewReplacer("At the plan", "As given", "at the plan", "as given", "Planned rate", "Given rate", "planned rate", "given rate",
+		"less planned", "less given", "refer to the plan", "refer to the given rates", "What holds the plan: binding limits", "Limits reached or passed at the given rates",
+		"differs from the plan", "differs from the given one", "those of the plan", "the given ones", "of the plan", "at the given rates")
+)
+
+// says adapts the workbook's own words to a report that holds no plan; never the report's words.
 func (b *book) says(words string) string {
-	if b.noPlan() {
+	switch {
+	case b.noPlan():
 		return startWords.Replace(words)
+	case b.givenRates():
+		return givenWords.Replace(words)
 	}
 	return words
 }

@@ -34,8 +34,12 @@ const headlineWords = "Largest total rate that keeps the limits entered"
 
 func (b *book) headline() string {
 	switch {
-	case b.noPlan():
+	case b.report.Conflict != nil || b.report.Status == plan.StatusInfeasible:
 		return "No plan keeps all the limits entered"
+	case b.noPlan():
+		return "There is no plan: the search for one did not end"
+	case b.givenRates():
+		return "Total of the rates given"
 	case b.report.Aim == aimMostYield:
 		return headlineWords
 	case b.report.Aim == aimMostHeadroom:
@@ -69,9 +73,6 @@ func (b *book) resultPart(row int) int {
 	if !r.ModelValid {
 		row = s.paragraph(row, readEnd, warnSign+"THE MODEL IS NOT VALID AT THESE RATES: "+orWords(strings.Join(r.Invalid, "; "), "the report gives no reason"),
 			with(label, func(l *look) { l.fill, l.box = fillWarn, true }))
-	}
-	if r.Status != "" && r.Status != statusOptimal && r.Status != statusInfeasible {
-		row = s.paragraph(row, readEnd, warnSign+"The search for the plan ended as: "+strings.ReplaceAll(r.Status, "_", " "), with(label, func(l *look) { l.fill, l.box = fillWarn, true }))
 	}
 	if len(r.Observations) == 0 {
 		row = s.paragraph(row, readEnd, "Not calibrated: the model was not compared with any observed level or flow.", label)

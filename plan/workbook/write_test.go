@@ -1,6 +1,7 @@
 package workbook
 
 import (
+	"context"
 	"os"
 	"testing"
 
@@ -13,7 +14,13 @@ func TestDump(t *testing.T) {
 	if dir == "" {
 		t.Skip("SPRINGBOUND_DUMP is not set")
 	}
-	for name, r := range map[string]func() ([]byte, error){"rich": func() ([]byte, error) { return Write(richReport()) }, "strip": func() ([]byte, error) { return Write(stripReport()) },
+	brief, model := plannerBrief(plan.MostYield, nil)
+	made, err := plan.Make(context.Background(), brief, model, plan.Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	made.Title, made.RateUnit = "Made by the planner", "L/s"
+	for name, r := range map[string]func() ([]byte, error){"rich": func() ([]byte, error) { return Write(richReport()) }, "made": func() ([]byte, error) { return Write(made) }, "strip": func() ([]byte, error) { return Write(stripReport()) },
 		"conflict": func() ([]byte, error) { return Write(conflictReport()) }, "large": func() ([]byte, error) { return Write(largeReport(300, 40)) }} {
 		data, err := r()
 		if err != nil {
