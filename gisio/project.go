@@ -91,7 +91,7 @@ func ReadProject(ctx context.Context, path string) (*Project, Findings) {
 // readProject reads a project whose files come from fetch: the bytes of a file by its name in the project, or in words why it cannot
 // be read.
 func readProject(ctx context.Context, dir, file string, fetch func(name string, limit int64) ([]byte, string)) (*Project, Findings) {
-	b := &builder{p: &Project{File: file, Dir: dir}, fetch: fetch, hashed: map[string]bool{}, names: map[string]string{}, broken: map[string]bool{}}
+	b := &builder{p: &Project{File: file, Dir: dir}, fetch: fetch, hashed: map[string]bool{}, names: map[string]string{}, broken: map[string]bool{}, kept: map[string][]placed{}}
 	b.read(ctx)
 	if b.findings.Err() != nil {
 		return nil, b.findings
@@ -113,9 +113,9 @@ type builder struct {
 
 	broken      map[string]bool // layers and tables that could not be read to the end: names may be missing through no fault of those who use them
 	extentKnown bool
-	tolerance   float64           // what counts as on the outline [m]
-	names       map[string]string // of edges, rivers, lakes and springs, which results tell apart by name
-	kept        []kept            // records of the features, for findings later
+	tolerance   float64             // what counts as on the outline [m]
+	names       map[string]string   // of edges, rivers, lakes and springs, which results tell apart by name
+	kept        map[string][]placed // records of the features by kind, for findings later
 }
 
 // layerData is one layer as read: its features in their own system, and in the plane.

@@ -216,7 +216,7 @@ func TestFeetAndGallonsAreTheSameSite(t *testing.T) {
 	all["rivers.geojson"] = swap(t, swap(t, all["rivers.geojson"], "m", "ft", Length), "d", "yr", Resistance)
 	all["springs.geojson"] = swap(t, swap(t, all["springs.geojson"], "m", "in", Length), "m2/d", "gpm_us/ft", Conductance)
 	all["limits.csv"] = strings.ReplaceAll(all["limits.csv"], "35 L/s", in(t, "35", "L/s", "gpm_us", Rate)+" gpm_us")
-	for _, v := range []string{"0.6", "1.5"} {
+	for _, v := range []string{"0.9", "1.5"} {
 		all["limits.csv"] = strings.ReplaceAll(all["limits.csv"], ","+v+" m,", ","+in(t, v, "m", "ft", Length)+" ft,")
 	}
 	all["licences.csv"] = strings.NewReplacer("350 m3", in(t, "350", "m3", "gpm_us", HourVolume)+" gpm_us", "6500 m3", in(t, "6500", "m3", "mgd_us", DayVolume)+" mgd_us",

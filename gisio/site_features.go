@@ -70,7 +70,7 @@ func (b *builder) buildEdges() {
 			b.alongOutline(p, path)
 		}
 		b.p.Site.Edges = append(b.p.Site.Edges, e)
-		b.keepPlace(len(b.p.Site.Edges)-1, "edge", p)
+		b.keepPlace("edge", p)
 	}
 }
 
@@ -119,7 +119,7 @@ func (b *builder) buildZones() {
 		}
 		b.doubleCounting(p.record, z, false)
 		b.p.Site.Zones = append(b.p.Site.Zones, z)
-		b.keepPlace(len(b.p.Site.Zones)-1, "zone", p)
+		b.keepPlace("zone", p)
 	}
 }
 
@@ -164,7 +164,7 @@ func (b *builder) buildRivers() {
 			b.keepInside(p, withMiddles(path))
 		}
 		b.p.Site.Rivers = append(b.p.Site.Rivers, r)
-		b.keepPlace(len(b.p.Site.Rivers)-1, "river", p)
+		b.keepPlace("river", p)
 	}
 }
 
@@ -188,7 +188,7 @@ func (b *builder) buildLakes() {
 			b.keepInside(p, withMiddles(orb.LineString(area[0])))
 		}
 		b.p.Site.Lakes = append(b.p.Site.Lakes, l)
-		b.keepPlace(len(b.p.Site.Lakes)-1, "lake", p)
+		b.keepPlace("lake", p)
 	}
 }
 
@@ -216,28 +216,14 @@ func (b *builder) buildSprings() {
 			p.fail(Finding{Property: p.spot(), Found: "a spring outside the extent", Hint: b.outsideHint(at)})
 		}
 		b.p.Site.Springs = append(b.p.Site.Springs, s)
-		b.keepPlace(len(b.p.Site.Springs)-1, "spring", p)
+		b.keepPlace("spring", p)
 	}
 }
 
-// kept remembers where a feature was read, for findings about it later.
-type kept struct {
-	kind  string
-	index int
-	placed
-}
-
-// keepPlace notes a feature's record.
-func (b *builder) keepPlace(index int, kind string, p placed) {
-	b.kept = append(b.kept, kept{kind, index, p})
+// keepPlace notes the record of the next feature of a kind, for findings about it later. Features of a kind come in order.
+func (b *builder) keepPlace(kind string, p placed) {
+	b.kept[kind] = append(b.kept[kind], p)
 }
 
 // recordOf returns the record of a feature of a kind.
-func (b *builder) recordOf(kind string, index int) placed {
-	for _, k := range b.kept {
-		if k.kind == kind && k.index == index {
-			return k.placed
-		}
-	}
-	panic("gisio: no record of " + kind)
-}
+func (b *builder) recordOf(kind string, index int) placed { return b.kept[kind][index] }

@@ -80,7 +80,7 @@ func (b *builder) buildLimits() {
 			p.warn(Finding{Property: "source", Found: "not stated", Hint: "a reviewer will ask where the limit comes from"})
 		}
 		b.p.Limits = append(b.p.Limits, l)
-		b.keepPlace(len(b.p.Limits)-1, "limit", p)
+		b.keepPlace("limit", p)
 	}
 	if len(b.p.Limits) == 0 && !b.named("tables", "limits") {
 		b.warn(Finding{File: b.p.File, Property: "limits", Found: "no table of limits", Hint: "only rates, quotas and pumping levels bound the plan"})

@@ -52,6 +52,6 @@ func (b *builder) buildObservations() {
 			o.Value = p.numberOr("flow", 0)
 		}
 		b.p.Observations = append(b.p.Observations, o)
-		b.keepPlace(len(b.p.Observations)-1, "observation", p)
+		b.keepPlace("observation", p)
 	}
 }

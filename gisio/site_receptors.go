@@ -24,7 +24,7 @@ func (b *builder) buildReceptors() {
 			b.receptorPlace(p, &r)
 		}
 		b.p.Receptors = append(b.p.Receptors, r)
-		b.keepPlace(len(b.p.Receptors)-1, "receptor", p)
+		b.keepPlace("receptor", p)
 	}
 }
 

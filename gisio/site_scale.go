@@ -3,6 +3,7 @@ package gisio
 import (
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 
 	"springbound/wells"
@@ -15,12 +16,17 @@ type siteLevel struct {
 	value    float64
 }
 
-// waterLevels collects the levels of edges, rivers, lakes and springs.
+// waterLevels collects the levels of edges, rivers, lakes and springs, the lowest and the highest of each.
 func (b *builder) waterLevels() []siteLevel {
 	var out []siteLevel
 	add := func(kind string, i int, property string, values ...float64) {
-		for _, v := range values {
-			out = append(out, siteLevel{b.recordOf(kind, i), property, v})
+		if len(values) == 0 {
+			return
+		}
+		p := b.recordOf(kind, i)
+		out = append(out, siteLevel{p, property, slices.Min(values)})
+		if high := slices.Max(values); high > slices.Min(values) {
+			out = append(out, siteLevel{p, property, high})
 		}
 	}
 	for i, e := range b.p.Site.Edges {

@@ -175,7 +175,7 @@ func (b *builder) buildWells() {
 		}
 		b.p.Wells = append(b.p.Wells, w)
 		b.node("well "+w.ID, w.At, w.Radius, true)
-		b.keepPlace(len(b.p.Wells)-1, "well", p)
+		b.keepPlace("well", p)
 	}
 	if len(b.p.Wells) == 0 && b.findings.Err() == nil {
 		b.fail(Finding{File: b.p.File, Property: "wells", Found: "no well", Allowed: "at least one"})
@@ -252,18 +252,23 @@ func (b *builder) wellRates(p placed, w *wells.Well) {
 	if high != nil {
 		w.Max = *high
 	}
-	if w.Mode != wells.Decided || high == nil {
-		return
+	if w.Mode == wells.Decided && high != nil {
+		p.rateRange(*w, low != nil)
 	}
+}
+
+// rateRange checks the range of a decided well.
+func (p placed) rateRange(w wells.Well, minStated bool) {
+	rate := Inside(Rate)
 	switch {
 	case !(w.Min <= w.Max):
 		hint := ""
-		if low == nil {
+		if !minStated {
 			hint = "a well that recharges has a negative min and a max up to 0"
 		}
-		p.fail(Finding{Property: "min, max", Found: fmt.Sprintf("%s and %s", Inside(Rate).show(w.Min), Inside(Rate).show(w.Max)), Allowed: "min <= max", Hint: hint})
+		p.fail(Finding{Property: "min, max", Found: rate.show(w.Min) + " and " + rate.show(w.Max), Allowed: "min <= max", Hint: hint})
 	case w.Min < 0 && w.Max > 0:
-		p.fail(Finding{Property: "min, max", Found: fmt.Sprintf("%s to %s, pumping and recharge", Inside(Rate).show(w.Min), Inside(Rate).show(w.Max)), Allowed: "one of the two",
+		p.fail(Finding{Property: "min, max", Found: rate.show(w.Min) + " to " + rate.show(w.Max) + ", pumping and recharge", Allowed: "one of the two",
 			Hint: "split it into a well that pumps and one that recharges"})
 	case w.Min == 0 && w.Max == 0:
 		p.warn(Finding{Property: "max", Found: "0", Hint: "the well can only be off; is a value missing?"})
