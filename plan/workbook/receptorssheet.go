@@ -2,6 +2,7 @@ package workbook
 
 import (
 	"fmt"
+	"math"
 	"strings"
 
 	"springbound/plan"
@@ -238,6 +239,16 @@ func countWords(l plan.LimitResult) string {
 	return who + "; against no pumping"
 }
 
+// lengthLimitFormat shows a length limit to 0.01 m, and to 0.001 m where the limit, or what is left of it after its reserve, may have
+// a third decimal.
+func lengthLimitFormat(l plan.LimitResult) string {
+	hundredths := l.Limit * 100
+	if l.Reserve == 0 && abs(hundredths-math.Round(hundredths)) < 1e-6 { // far below what a typed limit can mean
+		return levelFormat
+	}
+	return "#,##0.000"
+}
+
 func (b *book) limitRow(row, i, k int) {
 	s, r := b.receptors, b.report.Receptors[i]
 	l := r.Limits[k]
@@ -253,8 +264,8 @@ func (b *book) limitRow(row, i, k int) {
 	s.text(row, recWords, l.Sentence, line)
 	s.text(row, recFrom, joinFilled("; ", l.Source, l.Date, enteredWords(l)), line)
 	format := unitFormat(unit, []float64{l.Limit}, l.Limit, l.Value)
-	if l.Quantity == quantityValue && unit == "m" {
-		format = levelFormat
+	if unit == "m" {
+		format = lengthLimitFormat(l)
 	}
 	if l.Quantity == quantityShare {
 		format = shareFormat

@@ -22,7 +22,7 @@ const (
 	gallonUS       = 3.785411784e-3   // exact by definition [m³]
 	gallonImperial = 4.54609e-3       // exact by definition [m³]
 	cubicFoot      = 0.028316846592   // exact by definition [m³]
-	acreFoot       = 1233.48183754752 // 43,560 cubic feet of the international foot [m³]
+	acreFoot       = 1233.48183754752 // 43 560 cubic feet of the international foot [m³]
 	minutesPerDay  = 1440.0           // [1/d]
 	secondsPerDay  = 86400.0          // [1/d]
 	hoursPerDay    = 24.0             // [h]
@@ -36,11 +36,11 @@ var rateUnits = []rateUnit{
 	{"m3/d", "m³/d", 1, "the unit of all formulas"},
 	{"m3/h", "m³/h", hoursPerDay, "24 h in a day"},
 	{"m3/yr", "m³/yr", 1 / daysPerYear, "1 d in 365.25"},
-	{"L/s", "L/s", secondsPerDay / litresPerCube, "86,400 s in a day, 1,000 L in a m³"},
-	{"L/min", "L/min", minutesPerDay / litresPerCube, "1,440 min in a day, 1,000 L in a m³"},
-	{"L/h", "L/h", hoursPerDay / litresPerCube, "24 h in a day, 1,000 L in a m³"},
-	{"ML/d", "ML/d", megalitre, "1,000 m³ in a ML"},
-	{"ML/yr", "ML/yr", megalitre / daysPerYear, "1,000 m³ in a ML, a year of 365.25 d"},
+	{"L/s", "L/s", secondsPerDay / litresPerCube, "86 400 s in a day, 1000 L in a m³"},
+	{"L/min", "L/min", minutesPerDay / litresPerCube, "1440 min in a day, 1000 L in a m³"},
+	{"L/h", "L/h", hoursPerDay / litresPerCube, "24 h in a day, 1000 L in a m³"},
+	{"ML/d", "ML/d", megalitre, "1000 m³ in a ML"},
+	{"ML/yr", "ML/yr", megalitre / daysPerYear, "1000 m³ in a ML, a year of 365.25 d"},
 	{"kL/d", "kL/d", 1, "1 kL is 1 m³"},
 	{"kL/yr", "kL/yr", 1 / daysPerYear, "1 kL is 1 m³, a year of 365.25 d"},
 	{"Mm3/yr", "million m³/yr", 1e6 / daysPerYear, "a year of 365.25 d"},
@@ -48,7 +48,7 @@ var rateUnits = []rateUnit{
 	{"gpm_imp", "imperial gal/min", gallonImperial * minutesPerDay, "imperial gallon of 4.54609 L"},
 	{"mgd_us", "million US gal/d", gallonUS * millionGallons, "US gallon of 3.785411784 L"},
 	{"ft3/s", "ft³/s", cubicFoot * secondsPerDay, "international foot of 0.3048 m"},
-	{"acre_ft/yr", "acre-ft/yr", acreFoot / daysPerYear, "acre-foot of 1,233.48183754752 m³, a year of 365.25 d"},
+	{"acre_ft/yr", "acre-ft/yr", acreFoot / daysPerYear, "acre-foot of 1233.48183754752 m³, a year of 365.25 d"},
 }
 
 // shownUnit finds the unit that the report asks for; none asked for is m³/d.
@@ -148,6 +148,9 @@ func largest(values []float64) float64 {
 	return top
 }
 
+// groupSpace stands between groups of three digits in running text; a line does not break at it.
+const groupSpace = "\u00a0"
+
 // figureText writes a number in running text with about four figures and thousands apart.
 func figureText(x float64) string {
 	n := figuresOf(math.Abs(x), 4)
@@ -161,7 +164,7 @@ func figureText(x float64) string {
 		sign, whole = "−", whole[1:]
 	}
 	for i := len(whole) - 3; i > 0; i -= 3 {
-		whole = whole[:i] + "," + whole[i:]
+		whole = whole[:i] + groupSpace + whole[i:]
 	}
 	part = strings.TrimRight(part, "0")
 	if !found || part == "" {
