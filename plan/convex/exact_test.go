@@ -263,7 +263,7 @@ func TestExactSmall(t *testing.T) {
 	count := map[Status]int{}
 	cases := 2000
 	if long() {
-		cases = 100_000
+		cases = 30_000
 	}
 	for seed := 0; seed < cases; seed++ {
 		rng := rand.New(rand.NewPCG(uint64(seed), exactStream()))

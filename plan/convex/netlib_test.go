@@ -16,7 +16,7 @@ const (
 	// netlibShort is the largest rows x columns of the default run.
 	netlibShort = 200_000
 	// netlibLimit ends a solve that does not get anywhere; an honest "interrupted" then.
-	netlibLimit = 60 * time.Second
+	netlibLimit = 150 * time.Second
 )
 
 func long() bool { return os.Getenv("SPRINGBOUND_LONG") == "1" }
@@ -29,7 +29,7 @@ func eachNetlib(t *testing.T, folder string, f func(name string, index map[strin
 		if m*n > netlibShort && !long() {
 			continue
 		}
-		if only := os.Getenv("NETLIB_ONLY"); only != "" && only != row["name"] {
+		if only := os.Getenv("SPRINGBOUND_NETLIB_ONLY"); only != "" && only != row["name"] {
 			continue
 		}
 		p, constant := readMPS(t, filepath.Join(dir, row["file"]))
