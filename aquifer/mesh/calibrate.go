@@ -4,6 +4,7 @@ import "math"
 
 const (
 	sampleVariation = 0.5  // an integration sample is cut while the size may vary across it by more than this share
+	sampleLeast     = 0.05 // nor is one cut that is worth less than this many squares of the size: slivers at sharp corners
 	sampleDepth     = 30   // halvings at most
 	nodesPerIdeal   = 0.98 // nodes made for each node of a mesh of equilateral triangles of the wanted size: at least, measured
 )
@@ -46,8 +47,9 @@ func (in *integral) area(f *sizeField, ax, ay, bx, by, cx, cy float64, depth int
 	lc := (ax-bx)*(ax-bx) + (ay-by)*(ay-by)
 	h := f.free((ax+bx+cx)/3, (ay+by+cy)/3)
 	longest := max(la, lb, lc) // squared
-	if vary := sampleVariation * h; depth == 0 || f.growth*f.growth*longest < vary*vary {
-		in.areas = append(in.areas, sample{h, ((bx-ax)*(cy-ay) - (by-ay)*(cx-ax)) / 2})
+	amount := ((bx-ax)*(cy-ay) - (by-ay)*(cx-ax)) / 2
+	if vary := sampleVariation * h; depth == 0 || f.growth*f.growth*longest < vary*vary || amount < sampleLeast*h*h {
+		in.areas = append(in.areas, sample{h, amount})
 		return
 	}
 	switch longest {

@@ -10,7 +10,7 @@ type source struct {
 
 const (
 	leafSources   = 10   // sources that a quadtree leaf evaluates one by one
-	leafVariation = 0.08 // a leaf across which the size varies by less than this share keeps its best source only
+	leafVariation = 0.25 // a leaf across which the size varies by less than this share keeps its best source only
 	fieldDepth    = 40   // levels of the quadtree: 10,000 km down to 10 µm
 )
 
