@@ -39,7 +39,8 @@
 // # Same bytes
 //
 // The task graph comes from the analysis, children merge in a fixed order and every sum has a fixed order, so results
-// are the same to the last bit for any number of workers.
+// are the same to the last bit for any number of workers. Processors with AVX use assembly that multiplies and subtracts
+// in the portable code's order, so that it gives the portable code's bits.
 //
 // # Assumptions, and what is not done
 //

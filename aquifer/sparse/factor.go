@@ -132,7 +132,7 @@ func (r *numeric) run() error {
 	for t := range r.failure {
 		r.failure[t].position, r.smallest[t].position = -1, -1
 	}
-	r.crew = crew{parent: p.parent, pending: make([]int32, len(p.first)), workers: min(workerCount(s.options.Workers), max(1, len(p.first))), do: r.task}
+	r.crew = crew{parent: p.parent, pending: make([]int32, len(p.first)), workers: s.crewSize(), do: r.task}
 	for _, up := range p.parent {
 		if up >= 0 {
 			r.crew.pending[up]++
@@ -152,6 +152,14 @@ func (r *numeric) run() error {
 		return &NotPositiveDefinite{Row: int(s.order[first.position]), Pivot: first.pivot}
 	}
 	return nil
+}
+
+// crewSize returns the number of workers of a factorisation; one where starting another costs more than the work.
+func (s *Symbolic) crewSize() int {
+	if s.flops < leastTask {
+		return 1
+	}
+	return workerCount(s.options.Workers)
 }
 
 func (s *Symbolic) takeWorker() *worker {

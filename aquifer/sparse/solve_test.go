@@ -274,6 +274,24 @@ func TestSameBytesForAnyWorkers(t *testing.T) {
 	}
 }
 
+// A dense matrix is one front, whose updates the workers share.
+func TestSharedFrontGivesTheSameBytes(t *testing.T) {
+	const n = 700
+	p := randomDominant(n, 1, 3)
+	if work := float64(n-blockColumns) * float64(n-blockColumns) * blockColumns; work < sharedWork {
+		t.Fatalf("the front is too small to be shared: %g", work)
+	}
+	one, four := mustFactor(t, p, Options{Workers: 1}), mustFactor(t, p, Options{Workers: 4})
+	if !sameBits(one.panels, four.panels) {
+		t.Error("four workers make another factor than one")
+	}
+	b := randomVector(n, 1)
+	// A row has n terms, whose errors average out to about sqrt(n) units.
+	if r, limit := p.Residual(mustSolve(t, four, b, 1), b), math.Sqrt(n)*0x1p-53; !(r <= limit) {
+		t.Errorf("residual %g, limit %g", r, limit)
+	}
+}
+
 func TestSeveralFactorsAtOnce(t *testing.T) {
 	p := jitteredMesh(60, 50, 1, 5)
 	s := mustAnalyse(t, p, Options{Workers: 4})

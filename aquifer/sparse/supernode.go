@@ -5,7 +5,7 @@ package sparse
 var amalgamation = []struct {
 	columns int32
 	zeros   float64
-}{{4, 1}, {16, 0.5}, {48, 0.15}, {1 << 30, 0.05}}
+}{{4, 1}, {8, 0.5}, {16, 0.25}, {48, 0.12}, {1 << 30, 0.05}}
 
 // partition is the forest of supernodes: supernode s holds the columns first[s]..first[s+1]-1 and rows[s] rows,
 // its own columns included.

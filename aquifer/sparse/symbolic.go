@@ -36,8 +36,8 @@ type Symbolic struct {
 	blank    *sync.Pool // *panel, all zeros
 }
 
-// Analyse orders the matrix and finds the structure of its factor. x and y are coordinates of the rows, N each, in any
-// unit but the same for both; where both are nil the order comes from the graph alone (minimum degree). The result
+// Analyse orders the matrix and finds the structure of its factor. x and y are coordinates of the rows, N each and finite, in
+// any unit but the same for both; where both are nil the order comes from the graph alone (minimum degree). The result
 // does not depend on the number of workers. It fails only when ctx ends ([Interrupted]); a wrong pattern or length
 // panics. Method and sources: package documentation.
 func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbolic, error) {
@@ -227,11 +227,26 @@ func (s *Symbolic) FactorBytes() int64 {
 	return 8 * int64(s.panelPtr[len(s.panelPtr)-1]+kernelReach(s.tallest))
 }
 
-// PeakBytes returns a bound on the memory that a factorisation needs at once beside the Symbolic: factor, update
-// matrices and the stacks of its workers [bytes]. The stacks grow with the number of workers.
+// PeakBytes returns a bound on the memory that a factorisation holds at once beside the Symbolic: factor, update
+// matrices and the stacks of its workers [bytes]. The stacks grow with the number of workers, and the garbage collector
+// may be late to reuse update matrices that are done with.
 func (s *Symbolic) PeakBytes() int64 {
 	stacks := s.plan.stack[0] + s.plan.stack[1]
-	return s.FactorBytes() + 8*(s.plan.waiting+int64(workerCount(s.options.Workers))*int64(stacks))
+	return s.FactorBytes() + 8*(s.plan.waiting+int64(s.crewSize())*int64(stacks))
+}
+
+// SolveBytes returns the memory that Solve needs at once for k right-hand sides beside factor and block [bytes].
+func (s *Symbolic) SolveBytes(k int) int64 {
+	n, rows := int64(s.pattern.N), int64(s.tallest+3)*panelWidth
+	if k <= 1 {
+		return 8 * int64(k) * (n + rows)
+	}
+	panels := (k + panelWidth - 1) / panelWidth
+	bytes := 8 * int64(min(panels, panelsTogether*workerCount(s.options.Workers))) * (n*panelWidth + rows)
+	if s.options.Refine {
+		bytes += 16 * n * int64(k)
+	}
+	return bytes
 }
 
 // Permutation returns a copy of the elimination order: entry k is the row that is eliminated as the k-th.
