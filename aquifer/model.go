@@ -84,6 +84,9 @@ func meshSite(ctx context.Context, site *Site, o Options, bad *problems) (*domai
 	if len(site.Extent) == 0 {
 		return nil, nil, &SiteError{Problems: []Problem{{Feature: "extent", Text: "there is no outline; give a polygon"}}}
 	}
+	if site.validate(bad); len(bad.list) > 0 {
+		return nil, nil, bad.err()
+	}
 	d := site.plan(o, bad)
 	if err := bad.err(); err != nil {
 		return nil, nil, err

@@ -115,10 +115,6 @@ func (o *outlineRings) match(edges []Edge, bad *problems) []stretch {
 	ringOf := make([]int, len(edges))
 	for i, e := range edges {
 		ringOf[i] = -1
-		if len(e.Path) < 2 {
-			bad.add("edge "+e.Name, orb.Point{}, "the path has %d point(s); give at least two", len(e.Path))
-			continue
-		}
 		k, worst := o.ringOf(e.Path)
 		if !(worst <= alongOutline*o.diag) {
 			bad.add("edge "+e.Name, e.Path[0], "the path leaves the outline by %.3g m; at most %.3g m is allowed: draw it along the extent's outline", worst, alongOutline*o.diag)
@@ -136,10 +132,42 @@ func (o *outlineRings) match(edges []Edge, bad *problems) []stretch {
 		if ringOf[i] < 0 {
 			continue
 		}
-		out = append(out, o.place(i, ringOf[i], e))
+		st := o.place(i, ringOf[i], e)
+		if off, at := o.farthest(st, e.Path); !(off <= alongOutline*o.diag) {
+			bad.add("edge "+e.Name, at, "the path leaves the outline by %.3g m at (%.1f, %.1f); at most %.3g m is allowed: draw it along the extent's outline", off, at[0], at[1], alongOutline*o.diag)
+			continue
+		}
+		out = append(out, st)
 	}
 	o.overlaps(edges, out, bad)
 	return out
+}
+
+// farthest is how far the outline within a stretch runs from the path that should lie along it, at the outline's vertices and the middles
+// between them.
+func (o *outlineRings) farthest(s stretch, path orb.LineString) (dist float64, at orb.Point) {
+	r, cum := o.rings[s.ring], o.cum[s.ring]
+	perimeter := cum[len(cum)-1]
+	for i, v := range r {
+		next := r[(i+1)%len(r)]
+		for _, c := range [2]struct {
+			arc float64
+			p   orb.Point
+		}{{cum[i], v}, {(cum[i] + cum[i+1]) / 2, orb.Point{(v[0] + next[0]) / 2, (v[1] + next[1]) / 2}}} {
+			if !(math.Mod(c.arc-s.start+perimeter, perimeter) <= s.span) {
+				continue
+			}
+			near := math.Inf(1)
+			for k := 0; k+1 < len(path); k++ {
+				_, d := onSegment(c.p, path[k], path[k+1])
+				near = math.Min(near, d)
+			}
+			if near > dist {
+				dist, at = near, c.p
+			}
+		}
+	}
+	return dist, at
 }
 
 // place measures one edge on its ring and picks the direction that its path runs in.
@@ -151,20 +179,24 @@ func (o *outlineRings) place(index, k int, e Edge) stretch {
 	for i, p := range e.Path {
 		pos[i] = o.snapped(k, p)
 	}
+	// Walking the path's points along the ring takes as much way as the path is long in its true direction, nearly whole turns in the other.
 	length := arcs(e.Path)[len(e.Path)-1]
-	forward := math.Mod(pos[len(pos)-1]-pos[0]+perimeter, perimeter)
-	reversed := false
+	onward, back := 0.0, 0.0
+	for i := 1; i < len(pos); i++ {
+		step := math.Mod(pos[i]-pos[i-1]+perimeter, perimeter)
+		onward += step
+		if step > 0 {
+			back += perimeter - step
+		}
+	}
+	reversed := math.Abs(back-length) < math.Abs(onward-length)
 	switch {
 	case closed:
 		s.start, s.span = pos[0], perimeter
-		if len(pos) > 2 {
-			second := math.Mod(pos[1]-pos[0]+perimeter, perimeter)
-			reversed = second > perimeter/2 && len(pos) > 3
-		}
-	case math.Abs(forward-length) <= math.Abs(perimeter-forward-length):
-		s.start, s.span = pos[0], forward
+	case reversed:
+		s.start, s.span = pos[len(pos)-1], math.Mod(pos[0]-pos[len(pos)-1]+perimeter, perimeter)
 	default:
-		s.start, s.span, reversed = pos[len(pos)-1], perimeter-forward, true
+		s.start, s.span = pos[0], math.Mod(pos[len(pos)-1]-pos[0]+perimeter, perimeter)
 	}
 	if len(e.Levels) == len(e.Path) && len(e.Levels) > 1 {
 		for i := range pos {
