@@ -60,35 +60,58 @@ func deepInside(p orb.Polygon, at orb.Point, by float64) bool {
 }
 
 // overlap tells whether two polygons share an area that reaches more than a distance from their outlines: by a vertex, the middle of
-// a segment, a crossing's surroundings or the centre of one inside the other.
+// a segment, a crossing's surroundings or the centre of one inside the other. Only what lies in both boxes is looked at.
 func overlap(a, b orb.Polygon, by float64) bool {
-	if len(a) == 0 || len(b) == 0 || !a.Bound().Intersects(b.Bound()) {
+	if len(a) == 0 || len(b) == 0 {
 		return false
+	}
+	common := commonBox(a.Bound(), b.Bound())
+	if !(common.Max[0]-common.Min[0] > by && common.Max[1]-common.Min[1] > by) {
+		return false // neighbours along a border
 	}
 	for _, pair := range [2][2]orb.Polygon{{a, b}, {b, a}} {
 		for _, ring := range pair[0] {
 			for _, at := range withMiddles(orb.LineString(ring)) {
-				if deepInside(pair[1], at, by) {
+				if common.Contains(at) && deepInside(pair[1], at, by) {
 					return true
 				}
 			}
 		}
-		if c, area := planar.CentroidArea(pair[0]); area > 0 && polygonContains(pair[0], c) && deepInside(pair[1], c, by) {
+		if c, area := planar.CentroidArea(pair[0]); area > 0 && common.Contains(c) && polygonContains(pair[0], c) && deepInside(pair[1], c, by) {
 			return true
 		}
 	}
-	for _, ra := range a {
-		for _, rb := range b {
-			for i := 0; i+1 < len(ra); i++ {
-				for j := 0; j+1 < len(rb); j++ {
-					if crossDeep(ra[i], ra[i+1], rb[j], rb[j+1], by) {
-						return true
-					}
-				}
+	of := segmentsIn(common, b)
+	for _, s := range segmentsIn(common, a) {
+		for _, o := range of {
+			if crossDeep(s[0], s[1], o[0], o[1], by) {
+				return true
 			}
 		}
 	}
 	return false
+}
+
+// commonBox returns the box that lies in both; its corners are exchanged where there is none.
+func commonBox(a, b orb.Bound) orb.Bound {
+	return orb.Bound{
+		Min: orb.Point{math.Max(a.Min[0], b.Min[0]), math.Max(a.Min[1], b.Min[1])},
+		Max: orb.Point{math.Min(a.Max[0], b.Max[0]), math.Min(a.Max[1], b.Max[1])},
+	}
+}
+
+// segmentsIn lists the segments of a polygon's rings whose own box meets a box.
+func segmentsIn(box orb.Bound, p orb.Polygon) [][2]orb.Point {
+	var out [][2]orb.Point
+	for _, ring := range p {
+		for i := 0; i+1 < len(ring); i++ {
+			c := commonBox(box, orb.LineString{ring[i], ring[i+1]}.Bound())
+			if c.Min[0] <= c.Max[0] && c.Min[1] <= c.Max[1] {
+				out = append(out, [2]orb.Point{ring[i], ring[i+1]})
+			}
+		}
+	}
+	return out
 }
 
 // crossDeep tells whether two segments cross with each end more than a distance on its side of the other.

@@ -48,9 +48,25 @@ func (b *builder) choosePlane() {
 				b.fail(Finding{File: layer.file, Layer: f.Name, Feature: feature.Name(), Line: feature.Line, Found: err.Error(), Hint: "check the coordinates, or state the layer's crs"})
 				continue
 			}
+			if layer.system != b.p.Plane && !b.validOnPlane(layer, f.Name, feature, g) {
+				continue
+			}
 			layer.plane[i] = g
 		}
 	}
+}
+
+// validOnPlane checks a projected shape again, since straight edges are other lines on the plane than in degrees. What the layer
+// reader warned of is not repeated.
+func (b *builder) validOnPlane(layer *layerData, name string, feature Feature, g orb.Geometry) bool {
+	ok := true
+	for _, f := range CheckShape(g).Errors() {
+		ok = false
+		f.File, f.Layer, f.Feature, f.Line = layer.file, name, feature.Name(), feature.Line
+		f.Hint = strings.TrimPrefix(f.Hint+"; found on the plane "+b.p.Plane.String()+", not in the layer's own system", "; ")
+		b.fail(f)
+	}
+	return ok
 }
 
 // checkSwapped looks for layers in degrees that lie off the extent but on it once longitude and latitude are exchanged, and for an

@@ -2,9 +2,14 @@ package gisio
 
 import (
 	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"math"
 	"os"
 	"path/filepath"
 	"testing"
+
+	"springbound/plan"
 )
 
 // writeStarter writes the starter project into a fresh directory and returns the project file's path.
@@ -43,6 +48,46 @@ func TestStarterIsAccepted(t *testing.T) {
 		t.Errorf("%d nodes asked for, want %d", got, want)
 	}
 	for _, a := range p.Assumptions {
-		t.Log(a)
+		if a.What == "" || a.Value == "" || a.Basis == "" {
+			t.Errorf("an assumption without what, value or basis: %+v", a)
+		}
+	}
+	sum := sha256.Sum256(StarterFiles()[0].Data)
+	if got, want := p.Inputs[0], (plan.InputFile{File: "project.toml", SHA256: hex.EncodeToString(sum[:])}); got != want {
+		t.Errorf("first input %v, want %v", got, want)
+	}
+	at, err := p.ToLonLat(p.Wells[0].At)
+	const written = 1e-9 // degrees: the file has six decimals, the projection a micrometre
+	if err != nil || math.Abs(at[0]+30.530217) > written || math.Abs(at[1]-47.036877) > written {
+		t.Errorf("well W1 at %v, %v; the table says -30.530217, 47.036877", at, err)
+	}
+	b := p.PlanBrief()
+	if len(b.Wells) != 5 || len(b.Limits) != 5 || len(b.Licences) != 1 || len(b.States) != 2 || len(b.Quotas) != 1 || b.Aim != plan.MostYield {
+		t.Errorf("the brief lacks something: %+v", b)
+	}
+}
+
+func TestReadingStopsWhenAsked(t *testing.T) {
+	ctx, stop := context.WithCancel(context.Background())
+	stop()
+	p, findings := ReadProject(ctx, writeStarter(t))
+	if p != nil || len(findings.Errors()) != 1 {
+		t.Errorf("project %v, findings %v; want one error", p != nil, findings)
+	}
+}
+
+func TestProjectThatIsNotThere(t *testing.T) {
+	for _, path := range []string{filepath.Join(t.TempDir(), "none.toml"), t.TempDir()} {
+		if p, findings := ReadProject(context.Background(), path); p != nil || len(findings.Errors()) != 1 {
+			t.Errorf("%s: project %v, findings %v; want one error", path, p != nil, findings)
+		}
+	}
+}
+
+func TestStarterOrderIsFixed(t *testing.T) {
+	for i, f := range StarterFiles() {
+		if f.Name != starterNames[i] || len(f.Data) == 0 {
+			t.Errorf("file %d is %s with %d bytes", i, f.Name, len(f.Data))
+		}
 	}
 }
