@@ -274,3 +274,33 @@ func TestReadingTwiceGivesTheSame(t *testing.T) {
 		t.Error("two readings of the same files differ")
 	}
 }
+
+// TestLayerWithTableIsTheSameSite puts the wells' places into a layer, by property or by the feature's own id, and leaves the rest to the
+// table.
+func TestLayerWithTableIsTheSameSite(t *testing.T) {
+	all := apply(t, edit{"project.toml", "springs = ", "wells = \"wells.geojson\"\nsprings = "})
+	rows := table(t, all, "wells.csv")
+	var features []string
+	for i, row := range rows {
+		if i >= 2 {
+			id := fmt.Sprintf(`"id": %q, "properties": {}`, row[0])
+			if i%2 == 0 {
+				id = fmt.Sprintf(`"properties": {"id": %q, "name": %q}`, row[0], row[1])
+			}
+			features = append(features, fmt.Sprintf(`{"type": "Feature", %s, "geometry": {"type": "Point", "coordinates": [%s, %s]}}`, id, row[2], row[3]))
+		}
+		rows[i] = append(append([]string{}, row[:2]...), row[4:]...)
+	}
+	all["wells.geojson"] = `{"type": "FeatureCollection", "features": [` + strings.Join(features, ",\n") + `]}`
+	all["wells.csv"] = write(t, rows)
+	sameProject(t, all, true)
+
+	all["wells.csv"] = strings.Replace(all["wells.csv"], "W3,Field", "W33,Field", 1)
+	_, findings := all.read()
+	got := findingLines(findings)
+	for _, want := range []string{`row 5 (id "W33"): id is "W33" without a place; no feature of the layer has this id`, `wells.geojson, line 3, layer wells, feature 3 (id "W3"): max is missing or blank`} {
+		if !strings.Contains(got, want) {
+			t.Errorf("no %q in\n%s", want, got)
+		}
+	}
+}
