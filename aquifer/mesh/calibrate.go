@@ -9,15 +9,36 @@ const (
 	nodesPerIdeal   = 0.98 // nodes made for each node of a mesh of equilateral triangles of the wanted size: at least, measured
 )
 
-// sample is a part of the domain or of its outline over which the size is about the same.
-type sample struct {
-	h      float64 // size without the cap [m]
-	amount float64 // area [m²] or length [m]
+// bin sums the samples of nearly one size.
+type bin struct {
+	amount   float64 // area [m²] or length [m]
+	uncut    float64 // the same over size² or size: what it is worth when the size is not capped [-]
+	smallest float64 // [m]
+}
+
+// bins holds samples by the logarithm of their size.
+type bins [binCount]bin
+
+const (
+	binsPerOctave = 32
+	binCount      = 80 * binsPerOctave // from 2^-40 to 2^40 m: tolerance of a millimetre's domain to beyond any coordinate
+)
+
+// put files a sample worth so much at its size.
+func (b *bins) put(h, amount, worth float64) {
+	i := int(max(0, min(binCount-1, (math.Log2(h)+40)*binsPerOctave)))
+	c := &b[i]
+	c.amount += amount
+	c.uncut += worth
+	if c.smallest == 0 || h < c.smallest {
+		c.smallest = h
+	}
 }
 
 // integral holds samples of the size field, so that the number of nodes is known for any coarsest size.
 type integral struct {
-	areas, lengths []sample
+	areas, lengths bins
+	largest        float64 // size anywhere, without the cap [m]
 }
 
 // integrate samples a size field over the domain.
@@ -49,7 +70,8 @@ func (in *integral) area(f *sizeField, ax, ay, bx, by, cx, cy float64, depth int
 	longest := max(la, lb, lc) // squared
 	amount := ((bx-ax)*(cy-ay) - (by-ay)*(cx-ax)) / 2
 	if vary := sampleVariation * h; depth == 0 || f.growth*f.growth*longest < vary*vary || amount < sampleLeast*h*h {
-		in.areas = append(in.areas, sample{h, amount})
+		in.areas.put(h, amount, amount/(h*h))
+		in.largest = max(in.largest, h)
 		return
 	}
 	switch longest {
@@ -69,7 +91,8 @@ func (in *integral) length(f *sizeField, ax, ay, bx, by float64, depth int) {
 	mx, my := (ax+bx)/2, (ay+by)/2
 	h := f.free(mx, my)
 	if depth == 0 || f.growth*l < sampleVariation*h {
-		in.lengths = append(in.lengths, sample{h, l})
+		in.lengths.put(h, l, l/h)
+		in.largest = max(in.largest, h)
 		return
 	}
 	in.length(f, ax, ay, mx, my, depth-1)
@@ -79,26 +102,25 @@ func (in *integral) length(f *sizeField, ax, ay, bx, by float64, depth int) {
 // nodes is the number of nodes expected for a coarsest size: half the triangles, and half the outline's nodes besides.
 func (in *integral) nodes(coarsest float64) float64 {
 	triangles, edges := 0.0, 0.0
-	for _, s := range in.areas {
-		h := min(s.h, coarsest)
-		triangles += s.amount * 4 / (math.Sqrt(3) * h * h)
+	for i := range binCount {
+		if a := &in.areas[i]; a.smallest < coarsest {
+			triangles += max(a.uncut, a.amount/(coarsest*coarsest))
+		} else {
+			triangles += a.amount / (coarsest * coarsest)
+		}
+		if l := &in.lengths[i]; l.smallest < coarsest {
+			edges += max(l.uncut, l.amount/coarsest)
+		} else {
+			edges += l.amount / coarsest
+		}
 	}
-	for _, s := range in.lengths {
-		edges += s.amount / min(s.h, coarsest)
-	}
-	return nodesPerIdeal*triangles/2 + edges/2 + 1
+	return nodesPerIdeal*triangles*2/math.Sqrt(3) + edges/2 + 1
 }
 
 // coarsestFor finds the coarsest size that gives so many nodes. Where the growth alone asks for more, it is the largest size
 // of the field: nothing is coarsened.
 func (in *integral) coarsestFor(nodes float64) float64 {
-	hi := 0.0
-	for _, s := range in.areas {
-		hi = max(hi, s.h)
-	}
-	for _, s := range in.lengths {
-		hi = max(hi, s.h)
-	}
+	hi := in.largest
 	if in.nodes(hi) >= nodes {
 		return hi
 	}
