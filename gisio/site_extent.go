@@ -57,21 +57,28 @@ func roundMetres(d float64) string {
 	return fmt.Sprintf("%.4g", d)
 }
 
-// keepInside reports a shape that leaves the extent by more than the outline's tolerance.
+// keepInside reports a shape that leaves the extent by more than the outline's tolerance: an error where no part is inside, else a
+// warning, since the mesh drops what lies outside.
 func (b *builder) keepInside(p placed, points []orb.Point) bool {
 	if !b.extentKnown {
 		return true
 	}
-	worst := 0.0
+	worst, within := 0.0, false
 	for _, at := range points {
-		if !b.inside(at) {
+		if b.inside(at) {
+			within = true
+		} else {
 			worst = math.Max(worst, distanceToPolygon(b.p.Site.Extent, at))
 		}
 	}
-	if worst <= b.tolerance {
+	switch {
+	case worst <= b.tolerance:
+		return true
+	case within:
+		p.warn(Finding{Property: p.spot(), Found: fmt.Sprintf("a part up to %s m outside the extent", roundMetres(worst)), Hint: "only what lies inside counts"})
 		return true
 	}
-	p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("a part up to %s m outside the extent", roundMetres(worst)), Allowed: "inside the extent", Hint: "cut it at the outline"})
+	p.fail(Finding{Property: p.spot(), Found: fmt.Sprintf("wholly outside the extent, up to %s m", roundMetres(worst)), Allowed: "inside the extent, at least in part", Hint: b.outsideHint(points[0])})
 	return false
 }
 

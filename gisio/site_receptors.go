@@ -179,9 +179,10 @@ func (b *builder) areaReceptor(p placed, r *wells.Receptor) {
 	switch {
 	case out > 0 && ins == 0:
 		b.outside(p, r, worst)
-	case out > 0:
-		p.fail(Finding{Property: p.spot(), Found: "a polygon partly outside the extent", Allowed: "inside, or wholly outside", Hint: "cut it at the outline"})
 	default:
+		if out > 0 {
+			p.warn(Finding{Property: p.spot(), Found: "a polygon partly outside the extent", Hint: "only the part inside counts"})
+		}
 		b.p.Site.Outlines = append(b.p.Site.Outlines, aquifer.AreaRequest{Name: "receptor " + r.ID, Area: area})
 	}
 }
