@@ -121,12 +121,8 @@ func (r *refiner) cutSegment(h int32) {
 	if corner >= 0 {
 		scale := *r.shellScale(r.t[h>>2].s[h&3], corner)
 		f = shellFraction(scale*r.distance(corner, a), scale*r.distance(corner, b))
-		if !(l > r.distance(s.p, s.q)/cornerHalvings) {
-			r.refused++
-			return
-		}
 	}
-	if !(l > r.tol/cornerHalvings) {
+	if !(l > r.tol*finestPiece) {
 		r.refused++
 		return
 	}

@@ -3,25 +3,37 @@
 // Question answered: which nodes and triangles carry a flow model of this domain, so that every line of the site is made of
 // mesh edges, every well is a node, the box method's matrix is an M-matrix, and the mesh is fine where the head bends most?
 //
-// Size field. The wanted edge length at x is h(x) = min(coarsest, min over sources of size_s + growth dist(x, s)); sources are
-// the points, the lines and the input segments themselves (a segment's own length, so that a short input edge refines its
-// surroundings gradually). With Options.Nodes the coarsest size is calibrated so that the integral of 2/(sqrt(3) h²) over the
-// domain is the number of nodes wanted.
+// Size field. The wanted edge length at x is h(x) = min(coarsest, min over sources of size_s + growth dist(x, s)). Sources are
+// the vertices that are there once the segments have been cut so that none is encroached and none is longer than four widths of
+// the gap beside it: each asks for its shortest edge, or for what the site's point or line asks for if that is less. So a short
+// input edge, a narrow gap or a close pair of wells refines its surroundings gradually. With Options.Nodes the coarsest size is
+// calibrated so that the integral of 2/(sqrt(3) h²) over the domain gives the number of nodes wanted; when growth alone asks for
+// more nodes, it gets them.
 //
 // Method. Vertices are brought together within the tolerance, crossing lines are cut at their intersections, and the pieces
-// become the segments of a constrained Delaunay triangulation made incrementally (Bowyer 1981 and Lawson 1977 flips, points in
-// the order of a Hilbert curve, walking location). Outside and holes are removed by flood fill. Then encroached segments and
-// triangles that are too large or have too small an angle are refined (Ruppert 1995; Shewchuk 2002; off-centres after Ungor
-// 2004; concentric shells at sharp corners). Orientation and in-circle tests are exact: a floating-point filter with a proven
-// error bound, and exact arithmetic where it is undecided (Shewchuk 1997).
+// become the segments of a constrained Delaunay triangulation (cavities after Bowyer 1981, flips after Lawson 1977 and Sloan
+// 1993, points in the order of a Hilbert curve). A triangle is inside when the way to it crosses an odd number of ring segments.
+// Segments are cut while encroached, on common shells at sharp corners (Ruppert 1995; Miller, Pav & Walkington 2003), and
+// triangles that are too large or too thin get a vertex: an off-centre over an edge bounded by finished triangles or a segment
+// (Ungor 2004; Engwirda & Ivers 2016), else the circumcentre (Shewchuk 2002). Two passes of smoothing towards an optimal Delaunay
+// triangulation follow (Chen & Holst 2011), with flips after each, then refinement once more. Orientation and in-circle tests
+// are exact: a floating-point filter with a proven error bound, and expansions where it is undecided (Shewchuk 1997). They work
+// on the given coordinates themselves; differences keep full precision under any offset, so nothing is shifted.
+//
+// With a metric, in-circle tests, centres, angles and encroachment of a region are those of the plane mapped by the square root
+// of T^-1 (area kept); orientation is tested in the plane too. Edges on lines are never flipped.
 //
 // Symbols, units, signs: all lengths, sizes and coordinates in metres; triangles counter-clockwise; neighbour k lies opposite
 // vertex k; outline edges have the domain on their left.
 //
-// Assumptions: a plane of true metres; straight segments. A point or line part outside the domain is not meshed: a line is
-// clipped and noted, a point is an error. Nothing is repaired without a Note.
+// Assumptions and what is not done: a plane of true metres; straight segments. A line part outside the domain is dropped and
+// noted, a point there is an error. Nothing is repaired without a Note. The angle cannot hold where two segments meet at less,
+// nor, with metrics, at corners where regions of different metrics ask for pieces of different length for ever; such triangles
+// are counted apart. A gap between lines of many tolerances' width is meshed however long it is, until the budget is hit: a
+// larger tolerance closes it.
 //
-// Sources: Ruppert J (1995) J. Algorithms 18(3); Shewchuk JR (1997) Discrete Comput. Geom. 18(3); Shewchuk JR (2002) Comput.
-// Geom. 22(1-3); Ungor A (2004) LATIN 2004; Lawson CL (1977) Mathematical Software III; Bowyer A (1981) Comput. J. 24(2); Bank
-// RE, Rose DJ (1987) SIAM J. Numer. Anal. 24(4).
+// Sources: Bowyer A (1981) Comput. J. 24(2); Chen L, Holst M (2011) Comput. Methods Appl. Mech. Eng. 200; Engwirda D, Ivers D
+// (2016) Comput.-Aided Des. 72; Lawson CL (1977) Mathematical Software III; Miller GL, Pav SE, Walkington NJ (2003) 12th Int.
+// Meshing Roundtable; Ruppert J (1995) J. Algorithms 18(3); Shewchuk JR (1997) Discrete Comput. Geom. 18(3); Shewchuk JR (2002)
+// Comput. Geom. 22(1-3); Sloan SW (1993) Comput. Struct. 47(3); Ungor A (2004) LATIN 2004.
 package mesh

@@ -64,7 +64,7 @@ func FuzzBuild(f *testing.F) {
 		for _, s := range faultsOf(m, d, false) {
 			t.Errorf("%+v: %s", d, s)
 		}
-		if q := m.Quality; !q.BudgetHit && (q.EncroachedLeft > 0 || q.PoorOther > 0) {
+		if q := m.Quality; !q.BudgetHit && q.EncroachedLeft > q.EncroachedAtSharp {
 			t.Errorf("%+v: %+v", d, q)
 		}
 	})

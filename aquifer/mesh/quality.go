@@ -94,7 +94,7 @@ func (r *refiner) atSharp(t int32) bool {
 				}
 			}
 		}
-		if r.acrossCorner(v[next3[k]], v[prev3[k]]) {
+		if r.commonCorner(v[next3[k]], v[prev3[k]]) >= 0 {
 			return true
 		}
 		for _, s := range r.meeting[v[k]] {

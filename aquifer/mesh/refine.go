@@ -34,8 +34,8 @@ const (
 	// gapMargin: the apex may stand so far beyond the edge's end, in edge lengths; pieces on both sides of a gap often end
 	// exactly opposite each other.
 	gapMargin = 0.01
-	// cornerHalvings bounds the cutting of a segment towards a sharp corner.
-	cornerHalvings = 1 << 24
+	// finestPiece of a tolerance is the shortest piece that a segment is cut into.
+	finestPiece = 1.0 / 64
 )
 
 // item is a triangle, or an edge of it, as it was when queued.

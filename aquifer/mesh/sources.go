@@ -41,21 +41,30 @@ func (c *carved) sources(points []Point, tol float64) []source {
 	return out
 }
 
-// acrossCorner says whether two vertices lie on two segments of one sharp corner: how near they are is the input's doing and
-// shall not make the surroundings fine.
+// acrossCorner says whether two vertices were put on two segments of one sharp corner, or one of them is that corner: how near
+// they are is the angle's doing and shall not make the surroundings fine. The far end of a segment is a feature of its own.
 func (c *carved) acrossCorner(a, b int32) bool {
+	corner := c.commonCorner(a, b)
+	return corner >= 0 && (a == corner || c.p[a].kind != inputVertex) && (b == corner || c.p[b].kind != inputVertex)
+}
+
+// commonCorner is a sharp corner of which the vertices lie on two different segments, or -1.
+func (c *carved) commonCorner(a, b int32) int32 {
 	for _, s := range c.segmentsAt(a) {
 		for _, o := range c.segmentsAt(b) {
 			if s == o {
 				continue
 			}
 			p, q := &c.bases[s], &c.bases[o]
-			if p.sharpP && (p.p == q.p || p.p == q.q) || p.sharpQ && (p.q == q.p || p.q == q.q) {
-				return true
+			if p.sharpP && (p.p == q.p || p.p == q.q) {
+				return p.p
+			}
+			if p.sharpQ && (p.q == q.p || p.q == q.q) {
+				return p.q
 			}
 		}
 	}
-	return false
+	return -1
 }
 
 // segmentsAt lists the base segments that a vertex lies on.
