@@ -4,6 +4,8 @@ import (
 	"context"
 	"fmt"
 	"slices"
+
+	"github.com/paulmach/orb"
 )
 
 const (
@@ -15,7 +17,10 @@ const (
 	defaultTolerance = 1e-8 // of the diagonal: 0.1 mm in 10 km, and far above the rounding of such coordinates
 	budgetFactor     = 4    // default budget over the nodes estimated
 	budgetExtra      = 50000
-	largestBudget    = 5_000_000  // default budget at most: about 1 GB while meshing
+	budgetWanted     = 20         // default budget at most so many times the nodes wanted, or
+	budgetLeast      = 500_000    // this many: what a laptop's solver still takes
+	gapShare         = 8          // of the budget, this part at most is spent on narrow gaps before sizes are known: each vertex there
+	gapGrowth        = 4          // needs ten times as many around it; but always so many times the vertices of the input
 	mostNodes        = 50_000_000 // what handles of 32 bits carry with room to spare
 	largestGrowth    = 1.0        // steeper grading cannot keep the angle
 )
@@ -50,7 +55,7 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	field, expected := r.makeField(d, o)
 	r.maxNodes = o.MaxNodes
 	if r.maxNodes == 0 {
-		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, largestBudget))
+		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, max(budgetWanted*float64(o.Nodes), budgetLeast)))
 	}
 	r.start(field, expected)
 	if err := r.run(ctx); err != nil {
@@ -65,7 +70,11 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 	if err := r.run(ctx); err != nil {
 		return nil, err
 	}
-	return r.finish(d, o, g), nil
+	m := r.finish(d, o, g)
+	if m.Quality.BudgetHit {
+		m.Notes = append(m.Notes, r.budgetNote())
+	}
+	return m, nil
 }
 
 // EstimateNodes is about the number of nodes that Build will make: the integral of the size field after the segments have been
@@ -112,8 +121,7 @@ func prepare(ctx context.Context, d Domain, o Options) (*refiner, *planar, error
 	}
 	r := newRefiner(c, min(o.MinAngleDeg+extraAngleDeg, largestAngleDeg), o.Tolerance, limit)
 	r.queueSegments()
-	// Half of the budget at most goes into narrow places, so that the rest of the domain is meshed too.
-	return r, g, r.relax(ctx, max(limit/2, len(c.p)))
+	return r, g, r.relax(ctx, max(limit/gapShare, gapGrowth*len(c.p)))
 }
 
 // setMetrics asks for the tensor of every region and makes the regions Delaunay in their own metrics.
@@ -175,6 +183,7 @@ func (r *refiner) makeField(d Domain, o Options) (*sizeField, float64) {
 // start enters the second stage: sizes at all vertices, segments cut to size, rings around points, all triangles queued.
 func (r *refiner) start(f *sizeField, expected float64) {
 	r.field = f
+	r.budgetHit = false // the first stage's own limit; what it left undone is taken up now
 	for i := range r.p {
 		r.p[i].h = f.at(r.p[i].x, r.p[i].y)
 	}
@@ -193,4 +202,17 @@ func (r *refiner) reserve(expected float64) {
 	r.p = slices.Grow(r.p, max(0, n-len(r.p)))
 	r.t = slices.Grow(r.t, max(0, 2*n-len(r.t)))
 	r.mark = slices.Grow(r.mark, max(0, 2*n-len(r.mark)))
+}
+
+// budgetNote tells where the mesh wants to be finest.
+func (r *refiner) budgetNote() Note {
+	finest := 0
+	for i := range r.p {
+		if r.p[i].h < r.p[finest].h {
+			finest = i
+		}
+	}
+	p := orb.Point{r.p[finest].x, r.p[finest].y}
+	return Note{fmt.Sprintf("the budget of %d nodes was hit: the mesh is not finished; the smallest size wanted is %.3g m, at %s"+
+		" (lines close to each other are drawn together by a larger tolerance)", r.maxNodes, r.p[finest].h, place(p)), p}
 }

@@ -37,7 +37,7 @@ type Options struct {
 	Coarsest    float64 // largest edge length wanted; overrides Nodes when > 0 [m]
 	Growth      float64 // growth of edge length per distance; 0 = 0.15 [-]
 	MinAngleDeg float64 // smallest angle wanted; 0 = 25, at most 33 [°]
-	MaxNodes    int     // budget; 0 = 4 times the nodes estimated plus 50,000, at most 5 million
+	MaxNodes    int     // budget; 0 = 4 times the nodes estimated plus 50,000, but at most 20 times Nodes or 500,000
 	Tolerance   float64 // nearer vertices are brought together; 0 = 1e-8 of the outline's diagonal [m]
 
 	// Metric gives the transmissivity tensor of the region that holds the point; called once a region. nil = isotropic.

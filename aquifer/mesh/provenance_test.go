@@ -8,6 +8,7 @@ import (
 	"math"
 	"math/rand"
 	"runtime"
+	"strings"
 	"testing"
 
 	"github.com/paulmach/orb"
@@ -193,6 +194,9 @@ func TestBudget(t *testing.T) {
 	m := mustBuild(t, wellfield(20, 1), Options{Nodes: 20000, MaxNodes: 2000})
 	if !m.Quality.BudgetHit || len(m.X) > 2000 {
 		t.Errorf("%d nodes, budget hit %v", len(m.X), m.Quality.BudgetHit)
+	}
+	if n := m.Notes[len(m.Notes)-1].Text; !strings.Contains(n, "budget of 2000 nodes was hit") {
+		t.Errorf("note %q", n)
 	}
 }
 
