@@ -35,9 +35,14 @@ type Solved struct {
 	Distinct int         // how many different right-hand sides were solved
 }
 
+// System solves with the matrix of a model, or of one of its settled states.
+type System interface {
+	SolveFree(ctx context.Context, block []float64, k int) error
+}
+
 // Solve makes one adjoint solve per distinct functional and returns z at the wanted nodes; each, where not nil, gets every functional's
 // whole field over the nodes, in the functionals' order of first appearance. Prescribed nodes have z = 0.
-func Solve(ctx context.Context, m *aquifer.Model, fs []Functional, wanted []int32, each func(functional int, z []float64) error, progress func(done, total int)) (*Solved, error) {
+func Solve(ctx context.Context, m *aquifer.Model, system System, fs []Functional, wanted []int32, each func(functional int, z []float64) error, progress func(done, total int)) (*Solved, error) {
 	n := m.Unknowns()
 	first := map[string]int{}
 	var distinct []int // functional that stands for the k-th right-hand side
@@ -73,7 +78,7 @@ func Solve(ctx context.Context, m *aquifer.Model, fs []Functional, wanted []int3
 				}
 			}
 		}
-		if err := m.SolveFree(ctx, block[:n*k], k); err != nil {
+		if err := system.SolveFree(ctx, block[:n*k], k); err != nil {
 			return nil, err
 		}
 		for c := 0; c < k; c++ {

@@ -15,6 +15,7 @@ type Row struct {
 	Change   float64   // base - value at the rates, from the heads of a full solve
 	Slope    []float64 // d change/d rate, one a well [unit per m³/d]
 	Linear   bool
+	Local    bool  // not convex where features switch: a tangent is no bound
 	Place    int32 // node of the worst place; -1 where it does not apply
 }
 
@@ -24,6 +25,8 @@ type State struct {
 	Base  []float64 // head at every node without pumping [m]
 	Heads []float64 // head at every node at the rates [m]
 	Rows  []Row
+
+	BaseState, State *aquifer.Settled // which features act without pumping and at the rates
 }
 
 // Sinks turns rates into sinks of the model; zero rates are left out.
@@ -43,16 +46,43 @@ func (f *Field) Node(well int) int32 { return f.node[well] }
 // Below returns the drawdown of a well's casing below its node per unit rate, ln(r0/rw)/(2 pi T*) [d/m²].
 func (f *Field) Below(well int) float64 { return f.below[well] }
 
-// Base returns the heads without pumping, solved once.
+// Base returns the heads without pumping, settled once.
 func (f *Field) Base(ctx context.Context) ([]float64, error) {
+	st, err := f.BaseState(ctx)
+	if err != nil {
+		return nil, err
+	}
+	return st.Heads, nil
+}
+
+// BaseState returns the steady state without pumping, found once.
+func (f *Field) BaseState(ctx context.Context) (*aquifer.Settled, error) {
 	if f.base == nil {
-		h, err := f.Model.Heads(ctx, nil)
+		st, err := f.Model.Settle(ctx, nil)
 		if err != nil {
 			return nil, err
 		}
-		f.base = h
+		f.base = st
 	}
 	return f.base, nil
+}
+
+// at is the functional of a row in a state: a worst place is that of the largest drawdown, and a river that has lost contact gives a constant
+// there. A spring keeps its form below its outlet, so that its loss stays a convex function of the rates; whoever shows its flow cuts it off
+// at zero.
+func (x *watched) at(f *Field, st *aquifer.Settled, drawdown []float64) (Functional, int32, error) {
+	fn := x.functional
+	if x.worst != nil {
+		place := worstOf(x.worst, drawdown)
+		fn.Quantity, fn.Direct = f.Model.HeadAt(place), f.casing(place)
+		return fn, place, nil
+	}
+	if x.river > 0 && len(st.Off) > 0 {
+		q, err := st.ReachOutflow(x.river-1, x.reach)
+		fn.Quantity = q
+		return fn, -1, err
+	}
+	return fn, -1, nil
 }
 
 // Linear holds what one pass of adjoint solves gives: sensitivities of every receptor and well level, and the capture table.
@@ -76,26 +106,29 @@ type Options struct {
 	Progress func(done, total int)
 }
 
-// Sensitivities makes the adjoint solves for all rows at the worst places of heads h (base heads where nothing pumps), and for capture
-// by every feature where asked.
-func (f *Field) Sensitivities(ctx context.Context, drawdown []float64, o Options) (*Linear, error) {
-	base, err := f.Base(ctx)
+// Sensitivities makes the adjoint solves for all rows in a state, and for capture by every feature where asked; nil is the state without
+// pumping.
+func (f *Field) Sensitivities(ctx context.Context, state *State, o Options) (*Linear, error) {
+	base, err := f.BaseState(ctx)
 	if err != nil {
 		return nil, err
 	}
+	st, drawdown := base, []float64(nil)
+	if state != nil {
+		st, drawdown = state.State, state.drawdown()
+	}
 	fs := make([]Functional, 0, len(f.watched)+len(f.outlets))
 	place := make([]int32, len(f.watched))
-	for i, x := range f.watched {
-		place[i] = -1
-		if x.worst != nil {
-			place[i] = worstOf(x.worst, drawdown)
-			x.functional.Quantity = f.Model.HeadAt(place[i])
-			x.functional.Direct = f.casing(place[i])
+	for i := range f.watched {
+		fn, at, err := f.watched[i].at(f, st, drawdown)
+		if err != nil {
+			return nil, err
 		}
-		fs = append(fs, x.functional)
+		place[i] = at
+		fs = append(fs, fn)
 	}
 	if o.Capture {
-		for _, out := range f.outlets {
+		for _, out := range f.outletsIn(st) {
 			fs = append(fs, Functional{Name: out.Name, Quantity: out.Outflow})
 		}
 	}
@@ -116,14 +149,21 @@ func (f *Field) Sensitivities(ctx context.Context, drawdown []float64, o Options
 			return nil
 		}
 	}
-	solved, err := Solve(ctx, f.Model, fs, wanted, each, o.Progress)
+	solved, err := Solve(ctx, f.Model, st, fs, wanted, each, o.Progress)
 	if err != nil {
 		return nil, err
 	}
 	zero := make([]float64, len(f.Wells))
 	lin := &Linear{Distinct: solved.Distinct, Reciprocity: reciprocity(solved, pointRow, len(f.node))}
 	for i, x := range f.watched {
-		r := Row{Receptor: x.receptor, Well: x.well, Linear: x.worst == nil, Place: place[i], Base: fs[i].Value(base, zero)}
+		atBase, _, err := x.at(f, base, drawdown)
+		if err != nil {
+			return nil, err
+		}
+		if x.worst != nil {
+			atBase = fs[i]
+		}
+		r := Row{Receptor: x.receptor, Well: x.well, Linear: f.isLinear(&x), Local: f.Switching && x.local, Place: place[i], Base: atBase.Value(base.Heads, zero)}
 		r.Slope = make([]float64, len(f.node))
 		for w := range f.node {
 			r.Slope[w] = solved.At[i][w]
@@ -134,7 +174,7 @@ func (f *Field) Sensitivities(ctx context.Context, drawdown []float64, o Options
 		lin.Rows = append(lin.Rows, r)
 	}
 	if o.Capture {
-		for k, out := range f.outlets {
+		for k, out := range f.outletsIn(st) {
 			z := solved.At[len(f.watched)+k][:len(f.node)]
 			lin.Capture = append(lin.Capture, Capture{Feature: out, Share: append([]float64(nil), z...)})
 		}
@@ -171,33 +211,54 @@ func reciprocity(s *Solved, rows []int, wells int) float64 {
 	return worst
 }
 
-// Changes solves the full model at the rates and returns the state with each row's change; slopes are not filled.
+// drawdown is the fall of head at every node [m].
+func (s *State) drawdown() []float64 {
+	d := make([]float64, len(s.Heads))
+	for n := range d {
+		d[n] = s.Base[n] - s.Heads[n]
+	}
+	return d
+}
+
+// isLinear tells whether a row's change is linear in the rates.
+func (f *Field) isLinear(x *watched) bool { return x.worst == nil && !f.Switching }
+
+// outletsIn lists the outlets as they act in a state.
+func (f *Field) outletsIn(st *aquifer.Settled) []aquifer.Outlet {
+	if len(st.Off) == 0 {
+		return f.outlets
+	}
+	return st.Outlets()
+}
+
+// Changes settles the full model at the rates and returns the state with each row's change; slopes are not filled.
 func (f *Field) Changes(ctx context.Context, rates []float64) (*State, error) {
-	base, err := f.Base(ctx)
+	base, err := f.BaseState(ctx)
 	if err != nil {
 		return nil, err
 	}
-	heads := base
+	st := base
 	if sinks := f.Sinks(rates); len(sinks) > 0 {
-		if heads, err = f.Model.Heads(ctx, sinks); err != nil {
+		if st, err = f.Model.Settle(ctx, sinks); err != nil {
 			return nil, err
 		}
 	}
-	s := &State{Rates: append([]float64(nil), rates...), Base: base, Heads: heads}
-	drawdown := make([]float64, len(heads))
-	for n := range heads {
-		drawdown[n] = base[n] - heads[n]
-	}
+	s := &State{Rates: append([]float64(nil), rates...), Base: base.Heads, Heads: st.Heads, BaseState: base, State: st}
+	drawdown := s.drawdown()
 	zero := make([]float64, len(rates))
-	for _, x := range f.watched {
-		r := Row{Receptor: x.receptor, Well: x.well, Linear: x.worst == nil, Place: -1}
-		fn := x.functional
-		if x.worst != nil {
-			r.Place = worstOf(x.worst, drawdown)
-			fn.Quantity, fn.Direct = f.Model.HeadAt(r.Place), f.casing(r.Place)
+	for i := range f.watched {
+		x := &f.watched[i]
+		fn, place, err := x.at(f, st, drawdown)
+		if err != nil {
+			return nil, err
 		}
-		r.Base = fn.Value(base, zero)
-		r.Change = r.Base - fn.Value(heads, rates)
+		atBase, _, err := x.at(f, base, drawdown)
+		if err != nil {
+			return nil, err
+		}
+		r := Row{Receptor: x.receptor, Well: x.well, Linear: f.isLinear(x), Local: f.Switching && x.local, Place: place}
+		r.Base = atBase.Value(base.Heads, zero)
+		r.Change = r.Base - fn.Value(st.Heads, rates)
 		s.Rows = append(s.Rows, r)
 	}
 	return s, nil
@@ -220,7 +281,7 @@ func (f *Field) Tangents(ctx context.Context, rows []Row) error {
 			fs = append(fs, Functional{Name: "worst place", Quantity: f.Model.HeadAt(r.Place), Direct: f.casing(r.Place)})
 		}
 	}
-	solved, err := Solve(ctx, f.Model, fs, f.node, nil, nil)
+	solved, err := Solve(ctx, f.Model, f.Model, fs, f.node, nil, nil)
 	if err != nil {
 		return err
 	}

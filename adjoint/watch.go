@@ -44,6 +44,9 @@ type watched struct {
 	well       int // a well's own level; -1 a receptor
 	functional Functional
 	worst      []int32 // nodes to search for the worst place; nil: the functional is fixed
+	river      int     // 1 + river whose flow takes another form where it loses contact; 0 none
+	reach      orb.LineString
+	local      bool // the change is not convex in the rates where features switch
 }
 
 // Field joins a model with the wells and receptors that it is watched for.
@@ -56,7 +59,11 @@ type Field struct {
 	below   []float64 // per well: drawdown of the casing below the node per rate [d/m²]
 	watched []watched
 	outlets []aquifer.Outlet
-	base    []float64
+	base    *aquifer.Settled
+
+	// Switching says that some feature switches at the rates of interest: no row is linear then. It is set by whoever sees a state with
+	// something off, before rows are asked for.
+	Switching bool
 
 	placeSlope map[int32][]float64 // slopes of worst places solved before
 }
@@ -83,6 +90,7 @@ func NewField(m *aquifer.Model, ws []wells.Well, rs []wells.Receptor) (*Field, e
 			next++
 		case wells.SalineFront:
 			x.functional.Quantity, err = f.gradient(r, m.RequestNode[next], m.RequestNode[next+1])
+			x.local = true
 			next += 2
 		case wells.Wetland:
 			x.functional.Quantity, err = m.MeanHead(area)
@@ -164,6 +172,9 @@ func (f *Field) flow(x *watched, r wells.Receptor) error {
 	for _, o := range f.outlets {
 		if o.Kind != kind || o.Name != r.Feature {
 			continue
+		}
+		if r.Kind == wells.RiverReach {
+			x.river, x.reach, x.local = o.Index+1, r.Reach, true
 		}
 		if r.Kind == wells.RiverReach && len(r.Reach) > 0 {
 			q, err := f.Model.ReachOutflow(o.Index, r.Reach)

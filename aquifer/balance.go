@@ -49,10 +49,11 @@ func (m *Model) Balance(h []float64, sinks []Sink) Balance {
 		}
 		b.Features = append(b.Features, f)
 	}
-	for _, e := range m.Exchanges {
+	for i := range m.Exchanges {
+		e := &m.Exchanges[i]
 		f := Flow{Feature: e.Name, Kind: e.Kind, Index: e.Index}
 		for k, n := range e.Nodes {
-			f.add(e.Conductance[k] * (e.Level[k] - h[n]))
+			f.add(e.flow(k, h[n]))
 		}
 		b.Features = append(b.Features, f)
 	}
@@ -162,10 +163,11 @@ func (m *Model) edgeFlows(e *HeadEdge, h []float64) []float64 {
 		}
 		q[i] -= c.share * m.area[3*t+k] * m.regions[m.Mesh.Region[t]].recharge
 	}
-	for _, x := range m.Exchanges {
+	for j := range m.Exchanges {
+		x := &m.Exchanges[j]
 		for k, n := range x.Nodes {
 			if i, ok := at[n]; ok {
-				q[i] -= e.own[i] * x.Conductance[k] * (x.Level[k] - h[n])
+				q[i] -= e.own[i] * x.flow(k, h[n])
 			}
 		}
 	}

@@ -447,15 +447,6 @@ func (m *Model) SolveFree(ctx context.Context, block []float64, k int) error {
 // Unknown returns the number of a node's unknown, -1 where its head is prescribed.
 func (m *Model) Unknown(node int32) int32 { return m.free[node] }
 
-// Residual is the scaled residual of the balance at all unknowns under heads and sinks [-].
-func (m *Model) Residual(h []float64, sinks []Sink) float64 {
-	x := make([]float64, len(m.nodeOf))
-	for i, n := range m.nodeOf {
-		x[i] = h[n]
-	}
-	return m.matrix.Residual(x, m.rightHandSide(sinks))
-}
-
 // Transmissivity returns T* at a node [m²/d], by angle where the node lies on a border.
 func (m *Model) Transmissivity(node int32) float64 { return m.around(node).Mean }
 

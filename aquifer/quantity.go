@@ -115,11 +115,11 @@ func (m *Model) EdgeOutflow(e *HeadEdge) Quantity {
 	for i, n := range e.Nodes {
 		at[n] = i
 	}
-	for _, x := range m.Exchanges {
+	for j := range m.Exchanges {
+		x := &m.Exchanges[j]
 		for k, n := range x.Nodes {
 			if i, ok := at[n]; ok {
-				constant += e.own[i] * x.Conductance[k] * x.Level[k]
-				g[n] -= e.own[i] * x.Conductance[k]
+				constant += e.own[i] * x.flow(k, m.prescribed[n])
 			}
 		}
 	}

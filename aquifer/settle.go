@@ -7,6 +7,8 @@ import (
 	"math"
 	"sort"
 
+	"github.com/paulmach/orb"
+
 	"springbound/aquifer/sparse"
 )
 
@@ -18,6 +20,7 @@ type Settled struct {
 	Steps int           // Newton steps taken; 0 where the linear state holds
 
 	model  *Model
+	matrix sparse.Matrix
 	factor *sparse.Factor
 }
 
@@ -58,7 +61,7 @@ func (m *Model) Settle(ctx context.Context, sinks []Sink) (*Settled, error) {
 	if err != nil {
 		return nil, err
 	}
-	s := &Settled{Heads: h, model: m, factor: m.factor}
+	s := &Settled{Heads: h, model: m, matrix: m.matrix, factor: m.factor}
 	off := m.offAt(h)
 	if len(off) == 0 {
 		return s, nil
@@ -67,13 +70,14 @@ func (m *Model) Settle(ctx context.Context, sinks []Sink) (*Settled, error) {
 		if err := ctx.Err(); err != nil {
 			return nil, fmt.Errorf("aquifer: stopped after %d steps towards a steady state: %w", s.Steps-1, err)
 		}
-		next, factor, err := m.solveWith(ctx, sinks, off)
+		next, values, factor, err := m.solveWith(ctx, sinks, off)
 		if err != nil {
 			return nil, err
 		}
 		reached := m.offAt(next)
 		if equalOff(reached, off) {
 			s.Heads, s.Off, s.factor = next, off, factor
+			s.matrix = sparse.Matrix{Pattern: m.pattern, Values: values}
 			return s, nil
 		}
 		s.Heads = m.lineSearch(s.Heads, next, sinks)
@@ -113,33 +117,50 @@ func equalOff(a, b []SwitchedOff) bool {
 }
 
 // solveWith solves the linear problem in which the listed entries give a constant flow.
-func (m *Model) solveWith(ctx context.Context, sinks []Sink, off []SwitchedOff) ([]float64, *sparse.Factor, error) {
+func (m *Model) solveWith(ctx context.Context, sinks []Sink, off []SwitchedOff) (h, values []float64, factor *sparse.Factor, err error) {
 	if err := m.stillFixed(off, sinks); err != nil {
-		return nil, nil, err
+		return nil, nil, nil, err
 	}
-	values := append([]float64(nil), m.matrix.Values...)
-	b := m.rightHandSide(sinks)
+	values = append([]float64(nil), m.matrix.Values...)
+	b := m.switchedSide(sinks, off)
 	for _, o := range off {
 		e := &m.Exchanges[o.Exchange]
 		i := m.free[e.Nodes[o.Entry]]
-		c := e.Conductance[o.Entry]
-		values[m.slots.Diagonal[i]] -= c
-		b[i] -= c * e.Lowest[o.Entry]
+		values[m.slots.Diagonal[i]] -= e.Conductance[o.Entry]
 	}
 	m.Factorisations++
-	factor, err := m.symbolic.Factor(ctx, values)
+	factor, err = m.symbolic.Factor(ctx, values)
 	if err != nil {
 		var indefinite *sparse.NotPositiveDefinite
 		if errors.As(err, &indefinite) {
-			return nil, nil, m.noSteadyState(m.nodeOf[indefinite.Row], sinks)
+			return nil, nil, nil, m.noSteadyState(m.nodeOf[indefinite.Row], sinks)
 		}
-		return nil, nil, err
+		return nil, nil, nil, err
 	}
 	m.solves++
 	if err := factor.Solve(ctx, b, 1); err != nil {
-		return nil, nil, err
+		return nil, nil, nil, err
 	}
-	return m.spread(b), factor, nil
+	return m.spread(b), values, factor, nil
+}
+
+// switchedSide is the right-hand side in which the listed entries give their constant flow.
+func (m *Model) switchedSide(sinks []Sink, off []SwitchedOff) []float64 {
+	b := m.rightHandSide(sinks)
+	for _, o := range off {
+		e := &m.Exchanges[o.Exchange]
+		b[m.free[e.Nodes[o.Entry]]] -= e.Conductance[o.Entry] * e.Lowest[o.Entry]
+	}
+	return b
+}
+
+// Residual is the scaled residual of the balance at all unknowns, with the features that act in this state [-].
+func (s *Settled) Residual(sinks []Sink) float64 {
+	x := make([]float64, len(s.model.nodeOf))
+	for i, n := range s.model.nodeOf {
+		x[i] = s.Heads[n]
+	}
+	return s.matrix.Residual(x, s.model.switchedSide(sinks, s.Off))
 }
 
 func (m *Model) noSteadyState(node int32, sinks []Sink) error {
@@ -301,4 +322,37 @@ func (s *Settled) Outflow(i int) Quantity {
 		constant -= e.Conductance[k] * e.Level[k]
 	}
 	return g.quantity(constant)
+}
+
+// Outlets lists every feature whose flow answers to heads as Model.Outlets does, as they act in this state.
+func (s *Settled) Outlets() []Outlet {
+	out := s.model.Outlets()
+	first := len(s.model.HeadEdges)
+	for i := range s.model.Exchanges {
+		out[first+i].Outflow = s.Outflow(i)
+	}
+	return out
+}
+
+// ReachOutflow is Model.ReachOutflow in this state: where the river has lost contact its flow is a constant.
+func (s *Settled) ReachOutflow(river int, reach orb.LineString) (Quantity, error) {
+	lost := map[int32]float64{} // node to the level below which nothing more is given
+	for _, o := range s.Off {
+		if e := &s.model.Exchanges[o.Exchange]; e.Kind == RiverFeature && e.Index == river {
+			lost[e.Nodes[o.Entry]] = e.Lowest[o.Entry]
+		}
+	}
+	q, err := s.model.ReachOutflow(river, reach)
+	if err != nil || len(lost) == 0 {
+		return q, err
+	}
+	out := Quantity{Constant: q.Constant}
+	for i, n := range q.Nodes {
+		if z, ok := lost[n]; ok {
+			out.Constant += q.Weights[i] * z
+			continue
+		}
+		out.Nodes, out.Weights = append(out.Nodes, n), append(out.Weights, q.Weights[i])
+	}
+	return out, nil
 }

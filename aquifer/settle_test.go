@@ -119,7 +119,7 @@ func TestSettledStateByBruteForce(t *testing.T) {
 					off = append(off, SwitchedOff{i, 0})
 				}
 			}
-			h, _, err := m.solveWith(context.Background(), sinks, off)
+			h, _, _, err := m.solveWith(context.Background(), sinks, off)
 			if err != nil {
 				t.Fatal(err)
 			}

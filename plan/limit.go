@@ -181,7 +181,7 @@ func (s *setup) setCurvature(b *bound, row *Row, i int) {
 		concave = s.column[i] >= 0 && !s.isYield(i)
 	}
 	b.linear = !convex && !concave
-	b.kept = b.side > 0 && !concave || b.side < 0 && !convex
+	b.kept = (b.side > 0 && !concave || b.side < 0 && !convex) && !row.Local
 }
 
 // levelBound makes the bound on the level in a well; nil when the well has none.

@@ -22,6 +22,7 @@ type Row struct {
 	Change      float64   // at At, in Unit
 	Slope       []float64 // d change/d rate, one a well, in Unit per m³/d
 	Linear      bool
+	Local       bool   // the change is not convex in the rates: a tangent holds near its rates only, and a plan that it bounds is locally best
 	Unit        string // m, m3/d or 1
 	Place       string // for a worst place: where it is
 }

@@ -144,7 +144,7 @@ func BenchmarkWells(b *testing.B) {
 		}
 		b.Run(fmt.Sprintf("wells=%d", count), func(b *testing.B) {
 			for range b.N {
-				if _, err := adjoint.Solve(ctx, j.field.Model, fs, wanted, nil, nil); err != nil {
+				if _, err := adjoint.Solve(ctx, j.field.Model, j.field.Model, fs, wanted, nil, nil); err != nil {
 					b.Fatal(err)
 				}
 			}

@@ -38,6 +38,15 @@ func runDrivers(ctx context.Context, c solving, s streams) error {
 	if err != nil {
 		return err
 	}
+	if j.field.Switching {
+		base, err := j.field.Changes(ctx, r.At)
+		if err != nil {
+			return err
+		}
+		if err := j.sensitivities(ctx, base, j.onField); err != nil {
+			return err
+		}
+	}
 	t := driverTable{Schema: "springbound/drivers", Version: 1, Wells: r.Wells, Solves: j.field.Model.Solves()}
 	for _, row := range r.Rows {
 		if row.Receptor == "" {

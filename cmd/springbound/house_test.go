@@ -125,7 +125,7 @@ func TestImportsFlowOneWay(t *testing.T) {
 // Libraries never print or exit: only the command does.
 func TestLibrariesNeverPrintOrExit(t *testing.T) {
 	root := moduleRoot(t)
-	banned := []string{"fmt.Print", "os.Exit", "os.Stdout", "os.Stderr", "os.Args", "os.Getenv", "println("}
+	banned := []string{"fmt.Print", "os.Exit", "os.Stdout", "os.Stderr", "os.Args", "os.Getenv", "\tprintln("}
 	err := filepath.WalkDir(root, func(path string, d fs.DirEntry, err error) error {
 		if err != nil {
 			return err

@@ -87,11 +87,12 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 	if err != nil {
 		return nil, err
 	}
-	base, err := j.field.Base(ctx)
+	base, err := j.field.BaseState(ctx)
 	if err != nil {
 		return nil, err
 	}
-	return j, switched(model, base, "without pumping")
+	j.field.Switching = len(base.Off) > 0
+	return j, nil
 }
 
 // scaleRecharge applies the default operating state's recharge factor.
@@ -116,72 +117,63 @@ func scaleRecharge(p *gisio.Project) {
 	}
 }
 
-// switched names the features that a state takes past the level where their exchange would change: the linear model does not hold.
-func switched(m *aquifer.Model, heads []float64, state string) error {
-	var e aquifer.SiteError
-	for _, t := range switchTexts(m, heads, state) {
-		e.Problems = append(e.Problems, t)
-	}
-	if len(e.Problems) == 0 {
-		return nil
-	}
-	return &e
-}
-
-func switchTexts(m *aquifer.Model, heads []float64, state string) []aquifer.Problem {
+// switchTexts names the features that a state takes past the level where their exchange changes, one a feature at its worst place.
+func switchTexts(m *aquifer.Model, heads []float64, state string) []string {
 	what := map[aquifer.FeatureKind]string{
-		aquifer.SpringFeature:  "its outlet: the spring would be dry",
-		aquifer.RiverFeature:   "its bed: the river would lose contact",
-		aquifer.LakeFeature:    "its bed: the lake would lose contact",
-		aquifer.LeakageFeature: "the confining layer's base: leakage would no longer grow",
+		aquifer.SpringFeature:  "its outlet: it gives nothing",
+		aquifer.RiverFeature:   "its bed: it has lost contact there and gives what it gives at that level",
+		aquifer.LakeFeature:    "its bed: it has lost contact there and gives what it gives at that level",
+		aquifer.LeakageFeature: "the confining layer's base: leakage does not grow any more there",
 	}
-	var out []aquifer.Problem
+	var out []string
 	for _, sw := range m.Switches(heads) {
-		out = append(out, aquifer.Problem{Feature: string(sw.Kind) + " " + sw.Name, At: sw.At,
-			Text: fmt.Sprintf("%s the head at (%.0f, %.0f) is %.3f m, below %.3f m, %s; this model holds only above it: check levels and properties, or limit the drawdown there",
-				state, sw.At[0], sw.At[1], sw.Head, sw.Lowest, what[sw.Kind])})
+		out = append(out, fmt.Sprintf("%s %s: %s the head at (%.0f, %.0f) is %.2f m, below %.2f m, %s", sw.Kind, sw.Name, state, sw.At[0], sw.At[1], sw.Head, sw.Lowest, what[sw.Kind]))
 	}
 	return out
 }
 
 // Linearise makes the job a plan.Model: the aquifer as the planner sees it.
 func (j *job) Linearise(ctx context.Context, rates []float64) (*plan.Response, error) {
-	if j.linear == nil {
-		state, err := j.field.Changes(ctx, rates)
-		if err != nil {
-			return nil, err
-		}
-		drawdown := make([]float64, len(state.Heads))
-		for n := range drawdown {
-			drawdown[n] = state.Base[n] - state.Heads[n]
-		}
-		j.linear, err = j.field.Sensitivities(ctx, drawdown, adjoint.Options{Capture: true, Field: j.onField,
-			Progress: func(done, total int) { j.progress.report("adjoint solves", done, total) }})
-		if err != nil {
-			return nil, err
-		}
-		return j.response(state, rates), nil
-	}
 	state, err := j.field.Changes(ctx, rates)
 	if err != nil {
 		return nil, err
 	}
-	if err := j.field.Tangents(ctx, state.Rows); err != nil {
+	if j.linear != nil && !j.field.Switching {
+		if err := j.field.Tangents(ctx, state.Rows); err != nil {
+			return nil, err
+		}
+		return j.response(state, j.linear.Rows, rates), nil
+	}
+	onField := j.onField
+	if j.field.Switching {
+		onField = nil // influence fields move with the rates; those at the plan are made when it is found
+	}
+	if err := j.sensitivities(ctx, state, onField); err != nil {
 		return nil, err
 	}
-	return j.response(state, rates), nil
+	return j.response(state, j.linear.Rows, rates), nil
 }
 
-func (j *job) response(state *adjoint.State, rates []float64) *plan.Response {
+// sensitivities makes the adjoint solves in a state and keeps them.
+func (j *job) sensitivities(ctx context.Context, state *adjoint.State, onField func(row int, influence []float64) error) error {
+	lin, err := j.field.Sensitivities(ctx, state, adjoint.Options{Capture: true, Field: onField,
+		Progress: func(done, total int) { j.progress.report("adjoint solves", done, total) }})
+	if err == nil {
+		j.linear = lin
+	}
+	return err
+}
+
+func (j *job) response(state *adjoint.State, slopes []adjoint.Row, rates []float64) *plan.Response {
 	r := &plan.Response{At: append([]float64(nil), rates...)}
 	for w, well := range j.field.Wells {
 		r.Wells = append(r.Wells, well.ID)
 		r.WellHeads = append(r.WellHeads, state.Heads[j.field.Node(w)])
 	}
 	for i, row := range state.Rows {
-		out := plan.Row{Base: row.Base, Change: row.Change, Slope: row.Slope, Linear: row.Linear, Unit: "m"}
+		out := plan.Row{Base: row.Base, Change: row.Change, Slope: row.Slope, Linear: row.Linear, Local: row.Local, Unit: "m"}
 		if out.Slope == nil {
-			out.Slope = j.linear.Rows[i].Slope
+			out.Slope = slopes[i].Slope
 		}
 		if row.Receptor >= 0 {
 			out.Receptor, out.Unit = j.field.Receptors[row.Receptor].ID, j.field.Receptors[row.Receptor].Kind.Unit()

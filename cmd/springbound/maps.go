@@ -43,6 +43,12 @@ func (m *maps) add(name, unitKey string, field []float64) error {
 	if err != nil {
 		return err
 	}
+	for i := range m.files {
+		if m.files[i].name == name { // planned again with features that switch
+			m.files[i].data = data
+			return nil
+		}
+	}
 	m.files = append(m.files, outputFile{name, data})
 	return nil
 }

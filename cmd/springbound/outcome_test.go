@@ -74,19 +74,42 @@ func TestAvailableFlowLimitsThePlan(t *testing.T) {
 	}
 }
 
-// A spring that the plan would dry: the model does not hold, and the report says which.
-func TestSpringBelowItsOutletIsNamed(t *testing.T) {
-	d := twoCanals(turns(1)[0])
+// A spring that the plan dries: it gives nothing then, drawdown is larger than with the spring acting, and the report says so. The plan's own
+// statement agrees with a full solve.
+func TestSpringThatStopsIsSettled(t *testing.T) {
 	m := turns(1)[0]
-	d.layers["springs"] = []feature{{map[string]any{"name": "Well head", "outlet_level_m": 9.9, "conductance_m2_per_d": 50, "effective_radius_m": 1}, "Point", m.at(1000, 700)}}
-	r := planned(t, d.write(t), exitNoPlan)
-	if r.ModelValid || !strings.Contains(strings.Join(r.Invalid, " "), "Well head") {
-		t.Errorf("valid %v, because %v", r.ModelValid, r.Invalid)
+	with := func(outlet float64) draft {
+		d := twoCanals(m)
+		d.layers["springs"] = []feature{{map[string]any{"name": "Well head", "outlet_level_m": outlet, "conductance_m2_per_d": 200, "effective_radius_m": 1}, "Point", m.at(1000, 700)}}
+		d.layers["receptors"] = append(d.layers["receptors"], feature{map[string]any{"id": "S", "kind": "spring", "feature": "Well head"}, "Point", m.at(1000, 700)})
+		return d
 	}
-	d.layers["springs"][0].properties["outlet_level_m"] = 10.5
-	var out, errs bytes.Buffer
-	if code := run(context.Background(), []string{"plan", d.write(t)}, streams{out: &out, err: &errs}); code != exitBadData || !strings.Contains(errs.String(), "Well head") {
-		t.Errorf("dry without pumping: exit code %d\n%s", code, errs.String())
+	dries := planned(t, with(9.9).write(t), exitDone)
+	free := planned(t, twoCanals(m).write(t), exitDone)
+	acts := planned(t, with(-100).write(t), exitDone)
+	if !strings.Contains(strings.Join(dries.Cautions, " "), "Well head") {
+		t.Errorf("the spring that stops is not named: %v", dries.Cautions)
+	}
+	s := dries.Receptors[2]
+	if !(s.NoPumping > 10) || s.Value != 0 || math.Abs(s.Change-s.NoPumping) > 1e-9 {
+		t.Errorf("flow without pumping %.3f, at the plan %.3f, lost %.3f", s.NoPumping, s.Value, s.Change)
+	}
+	// A dry spring gives the wells nothing more, so the plan stands between that without a spring and that with one that always acts.
+	if !(dries.TotalRate > free.TotalRate+1) || !(dries.TotalRate < acts.TotalRate-1) {
+		t.Errorf("totals: without %.2f, drying %.2f, always acting %.2f", free.TotalRate, dries.TotalRate, acts.TotalRate)
+	}
+	for _, rec := range dries.Receptors[:2] {
+		if d := math.Abs(rec.Change - rec.ChangeResolved); !(d <= 1e-6) { // m, as promised
+			t.Errorf("%s: change %.9f, from a full solve %.9f", rec.ID, rec.Change, rec.ChangeResolved)
+		}
+		if !(rec.Change <= rec.Limits[0].Limit+1e-6) {
+			t.Errorf("%s: change %.9f passes its limit", rec.ID, rec.Change)
+		}
+	}
+	// Dry without pumping already: the spring does nothing at all.
+	idle := planned(t, with(10.5).write(t), exitDone)
+	if math.Abs(idle.TotalRate/free.TotalRate-1) > 1e-3 { // another mesh: the spring asks for a node
+		t.Errorf("total with an idle spring %.4f, without %.4f", idle.TotalRate, free.TotalRate)
 	}
 }
 

@@ -66,7 +66,32 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 	if err != nil {
 		return nil, err
 	}
-	return plan.Make(ctx, b, j, plan.Options{Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
+	make := func() (*plan.Report, error) {
+		return plan.Make(ctx, b, j, plan.Options{Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
+	}
+	r, err := make()
+	if err != nil || j.field.Switching {
+		return r, err
+	}
+	// The first plan takes every feature as acting. Where the plan itself takes one past its limit, drawdown is larger than the linear rows
+	// say: plan again with tangents at re-solved plans.
+	state, err := j.field.Changes(ctx, ratesOf(r))
+	if err != nil {
+		return nil, err
+	}
+	if len(state.State.Off) == 0 {
+		return r, nil
+	}
+	j.field.Switching = true
+	return make()
+}
+
+func ratesOf(r *plan.Report) []float64 {
+	rates := make([]float64, len(r.Wells))
+	for i, w := range r.Wells {
+		rates[i] = w.Rate
+	}
+	return rates
 }
 
 // verdict is the error that a written report ends with, if it holds no valid plan.
