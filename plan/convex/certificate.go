@@ -37,10 +37,11 @@ type Certificate struct {
 	ProofMargin           float64 // Infeasible: distance of the combined rows and bounds from what they can reach, relative to its terms [-]
 	DirectionGain         float64 // Unbounded: gain along the direction relative to its terms [-]
 	DirectionViolation    float64 // Unbounded: largest move towards a bound along the direction, relative to its terms [-]
+	Curvature             float64 // NotConvex: d'Hd relative to its terms [-]
 }
 
-// Certify checks a solution against the data of the problem: an optimum by its violations, the signs of its prices, stationarity,
-// complementary slackness and the gap; infeasibility by its proof (Farkas 1902); unboundedness by a feasible point and a direction.
+// Certify checks a solution against the data of the problem: an optimum by its violations, the signs of its prices, stationarity
+// of c + Hx, complementary slackness and the gap to the dual objective, which loses 1/2 x'Hx; infeasibility by its proof (Farkas 1902); unboundedness by a feasible point and a direction.
 // Other statuses are never accepted. It panics when the sizes do not belong together.
 func Certify(p *Problem, s *Solution) Certificate {
 	if len(s.X) != p.allColumns() || len(s.RowPrice) != p.Rows() || len(s.ReducedCost) != p.allColumns() {
@@ -60,6 +61,8 @@ func Certify(p *Problem, s *Solution) Certificate {
 		c.checkPrimal(p, s.X, u)
 		c.require("the relative violation of a limit", c.PrimalViolationScaled, CertifiedPrimal)
 		c.checkDirection(p, s.Ray, u)
+	case NotConvex:
+		c.checkCurvature(p, s.Ray)
 	default:
 		c.Reason = "nothing is claimed by the status " + s.Status.String()
 	}
@@ -144,8 +147,11 @@ func share(part, whole float64) float64 {
 
 // primalTerms is what the dual checks need of the primal ones.
 type primalTerms struct {
-	objective float64   // sum of absolute terms
-	activity  []float64 // by row
+	objective     float64   // sum of absolute terms
+	quadratic     float64   // 1/2 x'Hx
+	gradient      []twofold // by column: c + Hx
+	gradientTerms []float64 // by column: sum of its absolute terms
+	activity      []float64 // by row
 }
 
 // checkPrimal computes the violations and the objective.
@@ -159,6 +165,8 @@ func (c *Certificate) checkPrimal(p *Problem, x []float64, u yardstick) primalTe
 		c.PrimalViolationScaled = largest(c.PrimalViolationScaled, share(by, math.Max(u.value/u.row[i], terms+math.Abs(bound))))
 	}
 	var objective twofold
+	t.gradient, t.gradientTerms, t.quadratic, t.objective = p.slope(x)
+	objective.add(t.quadratic)
 	for j, v := range x {
 		column := p.anyColumn(j)
 		objective.addProduct(column.Cost, v)
@@ -179,10 +187,10 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 	}
 	residual, terms := make([]twofold, len(s.X)), make([]float64, len(s.X))
 	for j := range residual {
-		cost := sign * p.anyColumn(j).Cost
-		residual[j].add(cost)
+		residual[j].add(sign * t.gradient[j].high)
+		residual[j].add(sign * t.gradient[j].low)
 		residual[j].add(-sign * s.ReducedCost[j])
-		terms[j] = math.Abs(cost)
+		terms[j] = t.gradientTerms[j]
 	}
 	for i, price := range s.RowPrice {
 		if price == 0 {
@@ -213,7 +221,7 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 		}
 	}
 	scale := math.Max(math.Max(t.objective, d.terms), u.cost*u.value)
-	c.DualObjective = sign * d.sum.value()
+	c.DualObjective = sign*d.sum.value() - t.quadratic
 	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective), scale)
 	c.Complementarity = share(d.slackness, scale)
 }
@@ -315,6 +323,7 @@ func (c *Certificate) checkDirection(p *Problem, ray *Ray, u yardstick) {
 		column := p.anyColumn(j)
 		c.approach(v, column.Lower, column.Upper, scale*u.col[j])
 	}
+	c.require("the curvature along the direction", p.flatness(ray.Columns, scale, u), CertifiedNegligible)
 	for i := 0; i < p.Rows(); i++ {
 		value, own := p.activity(i, ray.Columns)
 		c.approach(value, p.rowLower[i], p.rowUpper[i], math.Max(own, scale/u.row[i]))

@@ -81,6 +81,7 @@ type filter struct {
 }
 
 func newFilter(ctx context.Context, p *Problem, among []int) *filter {
+	p.hessian = nil
 	for j := range p.columns {
 		p.columns[j].Cost = 0
 	}

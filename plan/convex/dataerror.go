@@ -16,6 +16,7 @@ const (
 	NotFinite                       // NaN or an infinity where a number is needed
 	BoundsCrossed                   // lower above upper
 	BoundsInfinite                  // a lower bound of +Inf or an upper bound of -Inf
+	BadHessian                      // not symmetric, or a part of it given twice
 )
 
 const (

@@ -41,7 +41,7 @@ type Row struct {
 	Upper        float64   // +Inf when there is none [-]
 }
 
-// Problem is a linear programme with dense rows. The only way to build one is NewProblem, so that every Problem holds
+// Problem is a linear or quadratic programme with dense rows. The only way to build one is NewProblem, so that every Problem holds
 // finite costs and coefficients and bounds in order.
 type Problem struct {
 	sense    Sense
@@ -53,6 +53,7 @@ type Problem struct {
 	unitRow  []int     // helper columns with a single entry, behind the dense ones: the row ...
 	unitSign []float64 // ... and the entry, +1 or -1
 	unit     []Column  // ... with cost and bounds
+	hessian  *hessian  // of the dense columns, nil for a linear programme; never changed
 }
 
 // maxEntries caps rows x columns, so that a wrong size is an error and not an attempt to take all memory (8 bytes each).

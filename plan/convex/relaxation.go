@@ -95,7 +95,7 @@ type elastic struct {
 
 func newElastic(p *Problem, relaxable []Relaxable) *elastic {
 	e := &elastic{p: p.Clone()}
-	e.p.sense = Minimise
+	e.p.sense, e.p.hessian = Minimise, nil
 	for j := range e.p.columns {
 		e.p.columns[j].Cost = 0
 	}

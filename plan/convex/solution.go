@@ -13,6 +13,7 @@ const (
 	IterationLimit          // stopped by Options.MaxIterations
 	Interrupted             // stopped by the context
 	NumericalTrouble        // rounding prevented a trustworthy answer
+	NotConvex               // the Hessian bends the wrong way along Ray.Columns, so that a local optimum need not be the best
 )
 
 // String returns the name of the status.
@@ -30,6 +31,8 @@ func (s Status) String() string {
 		return "interrupted"
 	case NumericalTrouble:
 		return "numerical trouble"
+	case NotConvex:
+		return "not convex"
 	}
 	return fmt.Sprintf("Status(%d)", int(s))
 }

@@ -7,16 +7,20 @@ import (
 
 // Solve finds the least or largest cost of p.
 //
-//	minimise or maximise c'x  subject to  rowLower <= A x <= rowUpper,  lower <= x <= upper
+//	minimise or maximise c'x + 1/2 x'Hx  subject to  rowLower <= A x <= rowUpper,  lower <= x <= upper
 //
 // How it ended is in Solution.Status, which is never more than the arithmetic supports: Certify checks it from the data alone. The
 // error is not nil only for bad options. On a cancelled context the status is Interrupted.
 //
-// Method: dual simplex with bound flipping and steepest-edge prices, primal simplex to finish where costs had to be shifted; see
-// the package comment for the sources.
+// Method without H: dual simplex with bound flipping and steepest-edge prices, primal simplex to finish where costs had to be shifted.
+// With a definite H: dual active set; with a semidefinite one, or where that fails: interior point. A Hessian that bends the wrong
+// way gives NotConvex. See the package comment for the sources.
 func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
 	if err := o.Validate(); err != nil {
 		return nil, err
+	}
+	if p.hessian != nil {
+		return solveQuadratic(ctx, p, o), nil
 	}
 	t := newSession(p)
 	t.e.progress = o.Progress

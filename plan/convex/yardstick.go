@@ -86,11 +86,16 @@ func (u *yardstick) setValue(p *Problem) {
 	}
 }
 
-// setCost takes the largest cost.
+// setCost takes the largest cost, or what the natural unit of a column makes of its own curvature.
 func (u *yardstick) setCost(p *Problem) {
 	top := 0.0
 	for j, f := range u.col {
 		top = math.Max(top, math.Abs(p.anyColumn(j).Cost)*f)
+	}
+	if p.hessian != nil {
+		for j, v := range p.hessian.diagonal() {
+			top = math.Max(top, math.Abs(v)*u.col[j]*u.col[j]*u.value)
+		}
 	}
 	if top > 0 {
 		u.cost = top
