@@ -1,0 +1,170 @@
+package convex
+
+import (
+	"bufio"
+	"compress/gzip"
+	"context"
+	"math"
+	"os"
+	"path/filepath"
+	"strconv"
+	"strings"
+	"testing"
+	"time"
+)
+
+const (
+	// mixedAgreement is the relative difference allowed against the objectives of the index, which are given to nine digits or more
+	// by solvers that accept whole values 1e-6 off.
+	mixedAgreement = 1e-6
+	// mixedLimit is the time in which the share mixedShare of the files must be proven.
+	mixedLimit = 120 * time.Second
+	mixedShare = 0.6
+	// mixedShort is the most nodes of a file of the default run.
+	mixedShort = 2000
+)
+
+// wholeColumns returns the columns between the markers of an MPS file.
+func wholeColumns(t testing.TB, path string) []int {
+	f, err := os.Open(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer f.Close()
+	z, err := gzip.NewReader(f)
+	if err != nil {
+		t.Fatal(err)
+	}
+	var whole []int
+	in, last, column, section := false, "", -1, ""
+	scan := bufio.NewScanner(z)
+	for scan.Scan() {
+		line := scan.Text()
+		fields := strings.Fields(line)
+		if strings.HasPrefix(line, "*") || len(fields) == 0 {
+			continue
+		}
+		if line[0] != ' ' && line[0] != '\t' {
+			section = fields[0]
+			continue
+		}
+		if section != "COLUMNS" {
+			continue
+		}
+		if strings.Contains(line, "'MARKER'") {
+			in = strings.Contains(line, "'INTORG'")
+			continue
+		}
+		if fields[0] != last {
+			last = fields[0]
+			column++
+			if in {
+				whole = append(whole, column)
+			}
+		}
+	}
+	return whole
+}
+
+// readMixed reads a mixed-integer MPS file. Marker lines are taken by the reader of linear programmes for columns named MARKER, so
+// that they are filtered out first.
+func readMixed(t testing.TB, path string) (*MixedProblem, float64) {
+	t.Helper()
+	f, err := os.Open(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer f.Close()
+	z, err := gzip.NewReader(f)
+	if err != nil {
+		t.Fatal(err)
+	}
+	plainPath := filepath.Join(t.TempDir(), "linear.mps.gz")
+	out, err := os.Create(plainPath)
+	if err != nil {
+		t.Fatal(err)
+	}
+	w := gzip.NewWriter(out)
+	scan := bufio.NewScanner(z)
+	for scan.Scan() {
+		line := scan.Text()
+		if strings.Contains(line, "'MARKER'") {
+			continue
+		}
+		if f := strings.Fields(line); len(f) > 0 && f[0] == "BV" {
+			line = " UP BND " + f[len(f)-1] + " 1"
+		}
+		if _, err := w.Write([]byte(line + "\n")); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := w.Close(); err != nil {
+		t.Fatal(err)
+	}
+	if err := out.Close(); err != nil {
+		t.Fatal(err)
+	}
+	p, constant := readMPS(t, plainPath)
+	return &MixedProblem{Problem: p, Integer: wholeColumns(t, path)}, constant
+}
+
+// TestMixedFiles compares with objectives computed by other solvers. A proof may be missing, an answer never wrong.
+func TestMixedFiles(t *testing.T) {
+	dir := sharedData(t, "mip")
+	proven, total := 0, 0
+	for _, row := range readIndex(t, filepath.Join(dir, "index.csv")) {
+		name := row["name"]
+		if only := os.Getenv("SPRINGBOUND_MIXED_ONLY"); only != "" && only != name {
+			continue
+		}
+		if !long() && !strings.Contains(" egout flugpl lseu p0033 mod008 p0201 p0282 rgn enigma misc03 ", " "+name+" ") {
+			continue
+		}
+		p, constant := readMixed(t, filepath.Join(dir, row["file"]))
+		if want, _ := strconv.Atoi(row["integer_cols"]); want != len(p.Integer) {
+			t.Errorf("%s: %d whole columns, the index says %d", name, len(p.Integer), want)
+		}
+		want, err := strconv.ParseFloat(row["computed_objective"], 64)
+		if err != nil {
+			t.Fatal(err)
+		}
+		o := MixedOptions{NodeLimit: mixedShort}
+		ctx, cancel := context.WithCancel(context.Background())
+		if long() {
+			o.NodeLimit = 0
+			ctx, cancel = context.WithTimeout(context.Background(), mixedLimit)
+		}
+		begin := time.Now()
+		s, err := SolveMixed(ctx, p, o)
+		cancel()
+		if err != nil {
+			t.Fatal(err)
+		}
+		off := (s.Objective + constant - want) / math.Max(1, math.Abs(want))
+		boundOff := (s.Bound + constant - want) / math.Max(1, math.Abs(want))
+		t.Logf("%-9s %4d x %4d %-10v %7.2fs %6d nodes %7d pivots %4d cuts gap %.1e off %.1e bound off %.1e presolve %+v", name, p.Rows(), p.Columns(), s.Status,
+			time.Since(begin).Seconds(), s.Nodes, s.Pivots, s.Cuts, s.Gap, off, boundOff, s.Presolve)
+		total++
+		if !(boundOff <= mixedAgreement) {
+			t.Errorf("%s: bound %.12g is beyond the optimum %.12g", name, s.Bound+constant, want)
+		}
+		switch s.Status {
+		case MixedOptimal:
+			proven++
+			if !(math.Abs(off) <= mixedAgreement) {
+				t.Errorf("%s: objective %.12g, want %.12g", name, s.Objective+constant, want)
+			}
+		case MixedFeasible:
+			if !(off >= -mixedAgreement) {
+				t.Errorf("%s: objective %.12g is better than the optimum %.12g", name, s.Objective+constant, want)
+			}
+		case MixedUndecided:
+		default:
+			t.Errorf("%s: called %v", name, s.Status)
+		}
+	}
+	t.Logf("%d of %d proven", proven, total)
+	if os.Getenv("SPRINGBOUND_MIXED_ONLY") == "" && !(float64(proven) >= mixedShare*float64(total)) {
+		t.Errorf("only %d of %d proven", proven, total)
+	}
+}
