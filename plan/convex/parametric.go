@@ -97,7 +97,7 @@ func checkSpan(from, to float64) error {
 	return nil
 }
 
-// shift adds the beginning of the span to every parameter.
+// shift adds the beginning of the span to every parameter and joins points that rounding then makes one.
 func (c *Curve) shift(from, to float64) {
 	for k := range c.Points {
 		c.Points[k].At += from
@@ -105,6 +105,20 @@ func (c *Curve) shift(from, to float64) {
 	if n := len(c.Points); n > 0 && !c.InfeasibleAfter {
 		c.Points[n-1].At = to
 	}
+	kept := c.Points[:0]
+	for k, b := range c.Points {
+		last := len(kept) - 1
+		switch {
+		case last < 0 || b.At > kept[last].At:
+			kept = append(kept, b)
+		case k < len(c.Points)-1:
+			kept[last].Slope = b.Slope
+			kept[last].Binds, kept[last].Frees = append(kept[last].Binds, b.Binds...), append(kept[last].Frees, b.Frees...)
+		case last > 0:
+			kept[last].Slope = kept[last-1].Slope
+		}
+	}
+	c.Points = kept
 }
 
 // curve follows the optimum from one parameter to another.

@@ -17,6 +17,8 @@ const (
 	// rounding of prices of a kernel with condition 1e6.
 	slopeFloor     = sharpTolerance
 	slopeTolerance = 1e-9
+	// slopeNoise is the slope that is rounding of zero: costs, entries and the fastest bound are near one.
+	slopeNoise = 1e-14
 	// walkViolation is the violation on the way that shows the walk to be lost, per max(1, |bound|); bounds nearer than
 	// feasibilityTolerance count as reached, and a thousand times that is left for what kernels make of it.
 	walkViolation = 1e-6
@@ -358,7 +360,12 @@ func (w *walk) differ(a, b float64) bool {
 }
 
 // toUnits returns a slope of the scaled problem in the units of the problem.
-func (w *walk) toUnits(slope float64) float64 { return slope * w.unit / w.t.s.costFactor }
+func (w *walk) toUnits(slope float64) float64 {
+	if math.Abs(slope) <= slopeNoise {
+		return 0
+	}
+	return slope * w.unit / w.t.s.costFactor
+}
 
 // maxSteps bounds the loop of a walk.
 func (w *walk) maxSteps() int { return 1000 + walkSteps*(w.base.n+w.base.rows) }
@@ -455,7 +462,7 @@ func (w *walk) atOnce() (extent, bool) {
 	return x, w.differ(x.scaled+e.ratio[0].ratio*speed, x.scaled) && w.alone(e, p, by)
 }
 
-// alone tells that no basic value but that of p is at a bound after a step. Then one pivot is all that p asks for, so that something
+// alone tells that no basic value but that of p is at a bound after a step, nor a moving bound at the other one. Then one pivot is all that p asks for, so that something
 // is feasible beyond.
 func (w *walk) alone(e *engine, p int, by float64) bool {
 	for v, place := range e.place {
@@ -467,6 +474,11 @@ func (w *walk) alone(e *engine, p int, by float64) bool {
 			return false
 		}
 		if up := e.upper[v] + by*w.upperRate[v]; finite(up) && reachedBound(up-x, up) {
+			return false
+		}
+	}
+	for _, v := range w.moved {
+		if closing := w.lowerRate[v] - w.upperRate[v]; closing > 0 && reachedBound(e.upper[v]-e.lower[v]-by*closing, e.lower[v]) {
 			return false
 		}
 	}
