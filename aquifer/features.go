@@ -160,9 +160,9 @@ const sameLevel = 1e-9
 func (m *Model) prescribe(head *HeadEdge, node int32, level float64, holder []int, stretch int, d *domainPlan, bad *problems) {
 	if m.isPrescribed[node] && holder[node] != stretch {
 		was := m.prescribed[node]
-		if !(math.Abs(was-level) <= sameLevel*math.Max(1, math.Abs(level))) {
+		if !sameLevels(was, level) {
 			other := m.Site.Edges[d.stretches[holder[node]].edge].Name
-			bad.add("edge "+head.Name, m.At(node), "its level %.6g m differs from edge %s's %.6g m where they touch; give both the same level there or leave a gap", level, other, was)
+			bad.add("edge "+head.Name, m.At(node), differingLevels, level, other, was)
 		}
 	}
 	if n := len(head.Nodes); n == 0 || head.Nodes[n-1] != node {

@@ -94,3 +94,14 @@ func (m *Model) nearest(node int32, is func(n int) bool) float64 {
 func (m *Model) Storage(node int32) float64 {
 	return m.regions[m.Mesh.Region[m.Mesh.NodeTriangles(node)[0]]].storage
 }
+
+// LeakageLength is sqrt(T c) of the leakage at a node, the least of its triangles; infinite where there is none [m].
+func (m *Model) LeakageLength(node int32) float64 {
+	shortest := math.Inf(1)
+	for _, t := range m.Mesh.NodeTriangles(node) {
+		if r := &m.regions[m.Mesh.Region[t]]; r.leak > 0 {
+			shortest = math.Min(shortest, math.Sqrt(r.mean/r.leak))
+		}
+	}
+	return shortest
+}

@@ -4,7 +4,70 @@ import (
 	"math"
 
 	"github.com/paulmach/orb"
+
+	"springbound/aquifer/mesh"
 )
+
+// Check finds every problem of a site that can be known without a mesh; the error is a *SiteError or a *mesh.DomainError.
+func (s *Site) Check() error {
+	if len(s.Extent) == 0 {
+		return &SiteError{Problems: []Problem{{Feature: "extent", Text: "there is no outline; give a polygon"}}}
+	}
+	bad := &problems{}
+	if s.validate(bad); len(bad.list) > 0 {
+		return bad.err()
+	}
+	d := s.plan(Options{Scale: 1}, bad)
+	d.touching(s, bad)
+	if !s.fixesHead() {
+		bad.add("aquifer", orb.Point{}, "nothing fixes the head: give a prescribed-head or head-dependent edge, a river, a lake, a spring or leakage")
+	}
+	if err := bad.err(); err != nil {
+		return err
+	}
+	return mesh.Validate(d.domain, 0)
+}
+
+// fixesHead tells whether anything in the site could fix the head.
+func (s *Site) fixesHead() bool {
+	for _, e := range s.Edges {
+		if e.Kind != PrescribedFlux {
+			return true
+		}
+	}
+	leaks := s.Background.LeakageResistance != nil
+	for _, z := range s.Zones {
+		leaks = leaks || z.LeakageResistance != nil
+	}
+	return leaks || len(s.Rivers)+len(s.Lakes)+len(s.Springs) > 0
+}
+
+// touching reports prescribed-head edges that meet with different levels.
+func (d *domainPlan) touching(s *Site, bad *problems) {
+	for i, a := range d.stretches {
+		for j, b := range d.stretches {
+			ea, eb := s.Edges[a.edge], s.Edges[b.edge]
+			if i == j || a.ring != b.ring || ea.Kind != PrescribedHead || eb.Kind != PrescribedHead {
+				continue
+			}
+			cum := d.outline.cum[a.ring]
+			perimeter := cum[len(cum)-1]
+			end := math.Mod(a.start+a.span, perimeter)
+			if gap := math.Abs(end - b.start); math.Min(gap, perimeter-gap) > sameVertex*d.outline.diag {
+				continue
+			}
+			if la, lb := a.level(a.span), b.level(0); !sameLevels(la, lb) {
+				at := eb.Path[0]
+				bad.add("edge "+eb.Name, at, differingLevels, lb, ea.Name, la)
+			}
+		}
+	}
+}
+
+// differingLevels is what is said of two touching edges.
+const differingLevels = "its level %.6g m differs from edge %s's %.6g m where they touch; give both the same level there or leave a gap"
+
+func sameLevels(a, b float64) bool { return math.Abs(a-b) <= sameLevel*math.Max(1, math.Abs(b)) }
 
 // validate refuses what no model can be made of. Every guard accepts what is right, so NaN never passes.
 func (s *Site) validate(bad *problems) {

@@ -1,6 +1,7 @@
 package gisio
 
 import (
+	"strconv"
 	"strings"
 
 	"springbound/aquifer"
@@ -45,15 +46,38 @@ func (rec *record) assume(name string, best float64, low, high *float64) {
 		return
 	}
 	f := rec.section.field(name)
-	unit := Inside(f.Kind)
-	a := plan.Assumption{What: rec.label + ": " + strings.ReplaceAll(name, "_", " "), Value: unit.show(best), Basis: rec.quietBasis(name), Source: rec.sourceOf(name)}
+	show := Inside(f.Kind).show
+	value := show(best)
+	if unit, other := rec.enteredUnit(name, f.Kind); other {
+		show = func(v float64) string {
+			return strconv.FormatFloat(unit.Out(v), 'g', enteredDigits, 64) + " " + unit.Name
+		}
+		value = show(best) + " = " + strconv.FormatFloat(best, 'g', enteredDigits, 64) + " " + Inside(f.Kind).Name
+	}
+	a := plan.Assumption{What: rec.label + ": " + strings.ReplaceAll(name, "_", " "), Value: value, Basis: rec.quietBasis(name), Source: rec.sourceOf(name)}
 	if low != nil {
-		a.Low = unit.show(*low)
+		a.Low = show(*low)
 	}
 	if high != nil {
-		a.High = unit.show(*high)
+		a.High = show(*high)
 	}
 	rec.rd.assumptions = append(rec.rd.assumptions, a)
+}
+
+// enteredDigits is enough for any value that a person enters, and hides the last bits of a conversion.
+const enteredDigits = 7
+
+// enteredUnit is the unit that a value was written in, and whether it is another than the one used inside.
+func (rec *record) enteredUnit(name string, kind Kind) (Unit, bool) {
+	e := rec.find(name, valueRole)
+	if e == nil {
+		return Unit{}, false
+	}
+	_, unit, err := e.quantity(e.value, kind)
+	if err != nil || unit.Kind != kind || unit.Name == Inside(kind).Name {
+		return Unit{}, false
+	}
+	return unit, true
 }
 
 // quietBasis is the basis for the list of assumptions; a wrong word is reported where a parameter is read.

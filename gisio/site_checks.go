@@ -119,9 +119,13 @@ func crossesThrough(line orb.LineString, area orb.Polygon, by float64) bool {
 // checkZoneOverlaps lists the overlaps of zones in which the later zone changes a value of the earlier one.
 func (b *builder) checkZoneOverlaps() {
 	zones := b.p.Site.Zones
+	beyond := 0
 	for i, z := range zones {
 		if b.extentKnown && len(z.Area) > 0 && !touches(z.Area, b.p.Site.Extent, b.tolerance) {
 			b.recordOf("zone", i).warn(Finding{Found: "a zone outside the extent", Hint: "it has no effect"})
+			if beyond++; beyond == len(zones) {
+				b.recordOf("zone", i).fail(Finding{Found: "no zone that touches the extent", Allowed: "zones that do", Hint: "are the layer's coordinates or its crs right?"})
+			}
 		}
 		for _, o := range zones[:i] {
 			changed := changes(z, o)

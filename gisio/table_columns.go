@@ -189,6 +189,9 @@ func (rd *reader) settleDecimal(g Grid, body []Row, columns []column, at Finding
 			if e := evidenceOf(number); e != noEvidence && first[e] == "" {
 				first[e] = fmt.Sprintf("%s in row %d", quoted(number), r.Number)
 			}
+			if i := strings.Index(number, "."); i >= 0 && first[noEvidence] == "" && evidenceOf(number) == noEvidence {
+				first[noEvidence] = fmt.Sprintf("%s in row %d", quoted(number), r.Number)
+			}
 		}
 	}
 	switch {
@@ -196,6 +199,9 @@ func (rd *reader) settleDecimal(g Grid, body []Row, columns []column, at Finding
 		rd.fail(place(at, Finding{Found: first[pointIsDecimal] + " and " + first[commaIsDecimal], Allowed: "one decimal mark", Hint: `state decimal = "," or "." for the table`}))
 	case first[commaIsDecimal] != "":
 		return ","
+	case first[pointIsDecimal] == "" && first[noEvidence] != "" && g.Delimiter == ';':
+		// where semicolons part the columns the comma is often the decimal mark, and the point parts thousands
+		rd.fail(place(at, Finding{Found: first[noEvidence] + ", which may be a decimal number or have a thousands separator", Allowed: "numbers that leave no doubt", Hint: `state decimal = "," or "." for the table`}))
 	}
 	return "."
 }

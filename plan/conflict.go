@@ -186,9 +186,23 @@ func (m *member) amount(by float64) string {
 	return amountText(by, m.unit)
 }
 
+// capacity is what the wells up for decision can pump together at most [m³/d].
+func (s *setup) capacity() float64 {
+	total := 0.0
+	for i, w := range s.Wells {
+		if s.column[i] >= 0 && s.isYield(i) {
+			total += w.Max
+		}
+	}
+	return total
+}
+
 // conflictSentence says in words what cannot be kept.
 func (p *planner) conflictSentence(set, relaxed, existing, fixed []string) string {
 	var parts []string
+	if most := p.setup.capacity(); p.setup.demand != nil && *p.setup.demand > most {
+		parts = append(parts, "The required total of "+flowText(*p.setup.demand)+" is more than all wells up for decision can pump together, "+flowText(most)+".")
+	}
 	switch {
 	case len(existing) > 0:
 		parts = append(parts, "Existing users alone, with all own wells at rest, pass: "+strings.Join(existing, "; ")+".")

@@ -121,6 +121,9 @@ func (p *planner) headline(r *Report) string {
 			text = "Rates that keep the largest share of every limit free at a total of " + flowText(r.TotalRate) + ": at least " +
 				percentText(p.share) + " beyond each reserve."
 		}
+		if assessed, all := countAssessed(r); assessed < all {
+			text += fmt.Sprintf(" Of %d limits entered, %d are assessed.", all, assessed)
+		}
 		if len(s.invalid) > 0 {
 			text = "The plan is not valid: " + s.invalid[0] + ". " + text
 		}
@@ -145,6 +148,19 @@ func (p *planner) headline(r *Report) string {
 		return text + "keeps the receptors' limits that were assessed."
 	}
 	return text + fmt.Sprintf("passes %d of the receptors' limits.", passed)
+}
+
+// countAssessed counts the receptors' limits, and those of them that the plan was made to keep.
+func countAssessed(r *Report) (assessed, all int) {
+	for _, rec := range r.Receptors {
+		for _, l := range rec.Limits {
+			all++
+			if l.ResultState == "yes" {
+				assessed++
+			}
+		}
+	}
+	return assessed, all
 }
 
 // shownRates says what the table shows where there is no plan.

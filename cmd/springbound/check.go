@@ -3,8 +3,12 @@ package main
 import (
 	"context"
 	"encoding/json"
+	"errors"
 	"fmt"
+	"strings"
 
+	"springbound/aquifer"
+	"springbound/aquifer/mesh"
 	"springbound/gisio"
 )
 
@@ -14,9 +18,13 @@ func runCheck(ctx context.Context, c common, s streams) error {
 	if err != nil {
 		return err
 	}
-	p, findings := gisio.ReadProject(ctx, name)
-	if err := ctx.Err(); err != nil {
-		return err
+	p, findings, err := readProject(ctx, c, s)
+	if ctx.Err() != nil {
+		return ctx.Err()
+	}
+	if p != nil {
+		findings = append(findings, siteFindings(err)...)
+		findings = append(findings, stateFindings(p)...)
 	}
 	errs, warnings := findings.Errors(), findings.Warnings()
 	if c.JSON {
@@ -59,6 +67,38 @@ func runCheck(ctx context.Context, c common, s streams) error {
 		return &badInputError{len(errs)}
 	}
 	return nil
+}
+
+// siteFindings puts what is wrong with the site as a whole beside the files' findings.
+func siteFindings(err error) gisio.Findings {
+	var out gisio.Findings
+	var site *aquifer.SiteError
+	var domain *mesh.DomainError
+	switch {
+	case errors.As(err, &site):
+		for _, p := range site.Problems {
+			out = append(out, gisio.Finding{Severity: gisio.Error, Layer: "site", Feature: p.Feature, Found: p.Text})
+		}
+	case errors.As(err, &domain):
+		for _, p := range domain.Problems {
+			out = append(out, gisio.Finding{Severity: gisio.Error, Layer: "site", Feature: strings.Join(p.Names, ", "), Found: p.Text})
+		}
+	}
+	return out
+}
+
+// stateFindings warns of limits that a plan would not assess.
+func stateFindings(p *gisio.Project) gisio.Findings {
+	var out gisio.Findings
+	for _, l := range p.Limits {
+		for _, st := range p.States {
+			if l.State == st.Name && !st.Default {
+				out = append(out, gisio.Finding{Severity: gisio.Warning, Layer: "limits", Feature: fmt.Sprintf("limit %q", l.ID), Property: "state",
+					Found: fmt.Sprintf("%q", l.State), Hint: "only the default operating state is planned; the limit is listed as not assessed"})
+			}
+		}
+	}
+	return out
 }
 
 // badInputError says that the errors were printed already.

@@ -70,6 +70,9 @@ func runDrivers(ctx context.Context, c solving, s streams) error {
 	if err := writeOutputs(c.outDir(j), files); err != nil {
 		return err
 	}
+	if err := dropStale(c.outDir(j), "influence", files); err != nil {
+		return err
+	}
 	j.progress.clear()
 	if c.JSON {
 		_, err := s.out.Write(data)

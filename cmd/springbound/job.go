@@ -51,7 +51,9 @@ func readProject(ctx context.Context, c common, s streams) (*gisio.Project, gisi
 	if err := findings.Err(); err != nil {
 		return nil, findings, err
 	}
-	return p, findings, nil
+	limitSources(p)
+	p.Site.Nodes, p.Site.Outlines = adjoint.Requests(p.Wells, p.Receptors)
+	return p, findings, p.Site.Check()
 }
 
 func printWarnings(findings gisio.Findings, s streams) {
@@ -63,6 +65,9 @@ func printWarnings(findings gisio.Findings, s streams) {
 // newJob reads, meshes, assembles and factors.
 func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 	j := &job{progress: newProgress(s, c.Quiet)}
+	if info, err := os.Stat(c.Out); c.Out != "" && err == nil && !info.IsDir() {
+		return nil, usagef("--out %s is a file; name a folder", c.Out)
+	}
 	j.progress.report("reading", 0, 1)
 	p, findings, err := readProject(ctx, c.common, s)
 	if err != nil {
@@ -74,9 +79,7 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 		j.progress.clear()
 		printWarnings(findings, s)
 	}
-	limitSources(p)
 	scaleRecharge(p)
-	p.Site.Nodes, p.Site.Outlines = adjoint.Requests(p.Wells, p.Receptors)
 	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
 		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: c.Workers, Progress: j.progress.report,
 	})

@@ -122,3 +122,61 @@ func TestNothingFixesTheHead(t *testing.T) {
 		t.Errorf("exit code %d\n%s", code, errs.String())
 	}
 }
+
+// What needs no mesh to be seen is reported by check, not first by plan.
+func TestCheckSeesTheSiteAsAWhole(t *testing.T) {
+	for _, c := range []struct {
+		label string
+		spoil func(d *draft)
+		says  string
+	}{
+		{"touching edges of different levels", func(d *draft) {
+			m := turns(1)[0]
+			d.layers["edges"] = append(d.layers["edges"], feature{map[string]any{"name": "south", "kind": "prescribed_head", "level_m": 9}, "LineString", lineString(m.at(0, 0), m.at(3000, 0))})
+		}, "where they touch"},
+		{"nothing fixes the head", func(d *draft) { delete(d.layers, "edges") }, "nothing fixes the head"},
+		{"two wells at one place", func(d *draft) { d.layers["wells"][1].at = d.layers["wells"][0].at }, "W2"},
+	} {
+		d := twoCanals(turns(1)[0])
+		c.spoil(&d)
+		var out, errs bytes.Buffer
+		if code := run(context.Background(), []string{"check", d.write(t)}, streams{out: &out, err: &errs}); code != exitBadData || !strings.Contains(out.String(), c.says) {
+			t.Errorf("%s: exit code %d\n%s%s", c.label, code, out.String(), errs.String())
+		}
+	}
+}
+
+// Leakage lowers the drop between two circles below Thiem's; the circles stay where that is small, and the plan stays valid.
+func TestHandFormulaInLeakyGround(t *testing.T) {
+	d := twoCanals(turns(1)[0])
+	d.toml = strings.Replace(d.toml, "transmissivity = \"800 m2/d\"\n", "transmissivity = \"800 m2/d\"\nleakage_resistance = \"3000 d\"\nsource_head_m = 11\n", 1)
+	r := planned(t, d.write(t), exitDone)
+	if r.HandFormula == nil || r.HandFormula.Far > 1600.0/15 { // sqrt(800 m²/d x 3000 d) = 1549 m
+		t.Fatalf("hand formula %+v", r.HandFormula)
+	}
+	for _, c := range r.Checks {
+		if strings.HasPrefix(c.Name, "Hand formula") && c.Result != "pass" {
+			t.Errorf("%s: %s, %s", c.Name, c.Result, c.Detail)
+		}
+	}
+}
+
+// The folder for results must be a folder, and maps of receptors that are gone do not stay behind.
+func TestOutputFolder(t *testing.T) {
+	d := twoCanals(turns(1)[0])
+	dir := d.write(t)
+	save(t, dir, "file", []byte("x"))
+	var out, errs bytes.Buffer
+	if code := run(context.Background(), []string{"plan", "--out", filepath.Join(dir, "file"), dir}, streams{out: &out, err: &errs}); code != exitUsage {
+		t.Errorf("a file as folder: exit code %d\n%s", code, errs.String())
+	}
+	planned(t, dir, exitDone)
+	old := filepath.Join(dir, "out", "influence", "GONE.geojson")
+	if err := os.WriteFile(old, []byte("{}"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	planned(t, dir, exitDone)
+	if _, err := os.Stat(old); !os.IsNotExist(err) {
+		t.Error("an old map stayed")
+	}
+}

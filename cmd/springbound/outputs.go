@@ -43,6 +43,26 @@ func writeOutputs(dir string, files []outputFile) (err error) {
 	return nil
 }
 
+// dropStale removes maps of an earlier run from a folder that only this program writes: those whose receptor is gone.
+func dropStale(dir, folder string, files []outputFile) error {
+	entries, err := os.ReadDir(filepath.Join(dir, folder))
+	if err != nil {
+		return ignoreMissing(err)
+	}
+	current := map[string]bool{}
+	for _, f := range files {
+		current[f.name] = true
+	}
+	for _, e := range entries {
+		if name := folder + "/" + e.Name(); filepath.Ext(name) == ".geojson" && !current[name] {
+			if err := os.Remove(filepath.Join(dir, folder, e.Name())); err != nil {
+				return fmt.Errorf("cannot remove an old map: %w", err)
+			}
+		}
+	}
+	return nil
+}
+
 func ignoreMissing(err error) error {
 	if errors.Is(err, os.ErrNotExist) {
 		return nil

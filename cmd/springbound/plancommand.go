@@ -49,6 +49,9 @@ func runPlan(ctx context.Context, c solving, s streams) error {
 	if err := writeOutputs(dir, files); err != nil {
 		return err
 	}
+	if err := dropStale(dir, "influence", files); err != nil {
+		return err
+	}
 	j.progress.clear()
 	if c.JSON {
 		if _, err := s.out.Write(data); err != nil {
@@ -129,10 +132,24 @@ func printPlan(w io.Writer, r *plan.Report, dir string) {
 			fmt.Fprintf(w, "%s, %s: %s\n", rec.ID, l.ID, l.Sentence)
 		}
 	}
+	for _, q := range r.Quotas {
+		if q.Binds {
+			fmt.Fprintf(w, "%s, %s: Binds at %.1f m³/d.\n", q.Name, q.Basis, q.Limit)
+		}
+	}
+	for _, x := range r.Wells {
+		if x.LevelShadowPrice > 0 {
+			fmt.Fprintf(w, "%s, lowest level: Binds at %.2f m (%s).\n", x.ID, *x.LowestLevel, x.LowestReason)
+		}
+	}
 	if r.Conflict != nil {
 		fmt.Fprintf(w, "\n%s\n", r.Conflict.Sentence)
 		for _, m := range r.Conflict.Members {
-			fmt.Fprintf(w, "  in conflict: %s\n", m.Limit)
+			alone := "giving way alone would not do"
+			if m.Alone != nil {
+				alone = fmt.Sprintf("giving way alone by %.4g %s would do", *m.Alone, m.Unit)
+			}
+			fmt.Fprintf(w, "  in conflict: %s; %s\n", m.Limit, alone)
 		}
 	}
 	bad := 0
