@@ -135,6 +135,8 @@ type MixedSolution struct {
 	// within its bounds; Linear is its solution. Its prices hold at this switching only.
 	Switching *Problem
 	Linear    *Solution
+	// Direction is, for MixedUnbounded, a direction in which the plan may be changed for ever.
+	Direction *Ray
 
 	proof *proofTree
 }
@@ -184,6 +186,8 @@ func SolveMixed(ctx context.Context, p *MixedProblem, o MixedOptions) (*MixedSol
 	}
 	if possible {
 		s.run()
+	} else {
+		s.proof.start(p.Rows())
 	}
 	return conclude(ctx, p, s, did), nil
 }

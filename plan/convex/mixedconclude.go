@@ -34,6 +34,7 @@ func conclude(ctx context.Context, p *MixedProblem, s *search, did Tightenings) 
 	if out.Linear != nil {
 		out.Pivots += out.Linear.Iterations
 	}
+	out.proof = s.proof
 	if out.Status == MixedInfeasible || out.Status == MixedUnbounded {
 		return out
 	}
@@ -46,10 +47,6 @@ func conclude(ctx context.Context, p *MixedProblem, s *search, did Tightenings) 
 		}
 	}
 	out.Bound = plain(sign * bound)
-	if s.proof != nil {
-		s.proof.sign = sign
-		out.proof = s.proof
-	}
 	return out
 }
 
@@ -101,7 +98,9 @@ func (s *search) concludeEndless(ctx context.Context, out *MixedSolution) {
 		out.Status = MixedUndecided
 	default:
 		out.Status, out.X, out.Stopped = MixedUnbounded, any.X, 0
-		out.Switching = s.best.switching(any.X)
+		if relaxed, err := Solve(ctx, s.best.c.problem(nil), Options{}); err == nil {
+			out.Direction = relaxed.Ray
+		}
 		var sum twofold
 		for j, v := range out.X {
 			sum.addProduct(s.best.p.columns[j].Cost, v)

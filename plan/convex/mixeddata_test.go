@@ -91,8 +91,10 @@ func readMixed(t testing.TB, path string) (*MixedProblem, float64) {
 		if strings.Contains(line, "'MARKER'") {
 			continue
 		}
-		if f := strings.Fields(line); len(f) > 0 && f[0] == "BV" {
-			line = " UP BND " + f[len(f)-1] + " 1"
+		if f := strings.Fields(line); len(f) > 2 && f[0] == "BV" {
+			line = " UP BND " + f[2] + " 1"
+		} else if len(f) > 0 && f[0] == "UI" {
+			line = strings.Replace(line, "UI", "UP", 1)
 		}
 		if _, err := w.Write([]byte(line + "\n")); err != nil {
 			t.Fatal(err)

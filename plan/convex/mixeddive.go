@@ -24,10 +24,8 @@ const (
 // root finds cuts and first plans. It returns false when nothing is left to search.
 func (s *search) root() bool {
 	s.quickRounding(s.values())
-	if !s.o.plain {
-		if !s.cutRounds() {
-			return false
-		}
+	if !s.o.plain && s.proof == nil && !s.cutRounds() {
+		return false
 	}
 	x := s.values()
 	if len(s.fractional(x)) == 0 {

@@ -62,7 +62,11 @@ func newSearch(ctx context.Context, c *core, o MixedOptions, best *incumbent) *s
 	s.prop = newPropagator(c)
 	s.guide.init(len(c.cost))
 	if o.Proof {
-		s.proof = &proofTree{}
+		s.proof = &proofTree{sign: 1}
+		if best.p.sense == Maximise {
+			s.proof.sign = -1
+		}
+		c.step = 0 // what the prices of a leaf cannot show is not used
 	}
 	return s
 }
@@ -93,7 +97,8 @@ func (s *search) run() {
 	switch s.lp.first(s.ctx) {
 	case lpOptimal:
 	case lpEmpty:
-		s.proofOfRoot()
+		s.proof.start(len(s.c.rows))
+		s.proof.leaf(0, s.lp, lpEmpty)
 		return
 	case lpEndless:
 		s.endless = true
@@ -107,10 +112,10 @@ func (s *search) run() {
 	}
 	s.rootBound = s.raise(s.lp.objective())
 	s.noteRoot()
-	if !s.o.Proof {
-		if !s.root() {
-			return
-		}
+	s.proof.start(len(s.c.rows))
+	s.proof.leaf(0, s.lp, lpOptimal)
+	if !s.root() {
+		return
 	}
 	s.tree(&mixedNode{bound: s.rootBound, estimate: s.rootBound, start: s.lp.state()})
 }
@@ -152,7 +157,6 @@ func (s *search) tree(root *mixedNode) {
 		}
 		if next.bound > s.cutoff() {
 			s.exclude(next.bound)
-			s.proof.beaten(next.proof)
 			next = nil
 			continue
 		}
@@ -244,7 +248,7 @@ func (s *search) visit(n *mixedNode) (preferred, other *mixedNode) {
 		n.start = nil
 	}
 	for {
-		end := s.lp.solve(s.ctx, nodePivots, s.proof.cutoff(s.cutoff()))
+		end := s.lp.solve(s.ctx, nodePivots, s.cutoff())
 		if end == lpEmpty || end == lpBeaten {
 			if end == lpBeaten {
 				s.exclude(math.Max(n.bound, s.raise(s.lp.objective())))
@@ -279,14 +283,15 @@ func (s *search) visit(n *mixedNode) (preferred, other *mixedNode) {
 			}
 			return s.branchOnRest(n, x)
 		}
+		s.roundings(x)
+		s.diveNow(n, x)
+		s.neighbours(x)
+		if n.bound > s.cutoff() {
+			s.exclude(n.bound)
+			s.proof.leaf(n.proof, s.lp, lpBeaten)
+			return nil, nil
+		}
 		if s.proof == nil {
-			s.roundings(x)
-			s.diveNow(n, x)
-			s.neighbours(x)
-			if n.bound > s.cutoff() {
-				s.exclude(n.bound)
-				return nil, nil
-			}
 			switch s.tightenByPrices(cost) {
 			case tightenedEmpty:
 				return nil, nil
@@ -424,7 +429,7 @@ func (s *search) children(n *mixedNode, c candidate, cost float64, list []candid
 		return child
 	}
 	down, up := make1(true), make1(false)
-	s.proof.split(n.proof, c, down, up)
+	s.proof.split(n.proof, s.lp, c, down, up)
 	preferred, other = down, up
 	if s.guide.prefersUp(c, s.rootX) {
 		preferred, other = up, down
