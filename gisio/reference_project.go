@@ -3,7 +3,7 @@ package gisio
 // sections is the one list of everything that may be written, in the order of the reference page.
 var sections = []*Section{&projectSection, &coordinatesSection, &layersSection, &tablesSection, &fileSection, &aquiferSection, &meshSection, &briefSection,
 	&quotaSection, &reportSection, &extentSection, &edgesSection, &zonesSection, &riversSection, &lakesSection, &springsSection, &wellsSection, &receptorsSection,
-	&observationsSection, &limitsSection, &licencesSection, &statesSection}
+	&observationsSection, &limitsSection, &licencesSection, &statesSection, &ratesSection}
 
 var projectSection = Section{Name: "project", Title: "Top of the project file", About: "Before the first table.", Fields: []Field{
 	{Name: "title", Class: Text, Required: "yes", Meaning: "heading of every result", Example: `title = "Marram Head wellfield"`},

@@ -45,7 +45,11 @@ type commands struct {
 	Check   common  `cmd:"" help:"Read everything, report every problem at once, solve nothing."`
 	Drivers solving `cmd:"" help:"Sensitivities: which wells drive each receptor."`
 	Plan    solving `cmd:"" help:"The main job: the best rates inside the limits, as workbook, JSON and maps."`
-	Version bool    `help:"Print the version."`
+	Try     struct {
+		solving
+		Rates string `arg:"" help:"CSV or XLSX table with the columns id and rate (with its unit), such as the rates.csv that plan leaves."`
+	} `cmd:"" help:"The receptors under rates given in a table, without optimising."`
+	Version bool `help:"Print the version."`
 }
 
 // version is that of the build: the module's, or the revision it was built from.
@@ -98,6 +102,8 @@ func run(ctx context.Context, args []string, s streams) int {
 		err = runDrivers(ctx, c.Drivers, s)
 	case "plan":
 		err = runPlan(ctx, c.Plan, s)
+	case "try":
+		err = runTry(ctx, c.Try.solving, c.Try.Rates, s)
 	}
 	if err != nil {
 		fmt.Fprintln(s.err, "springbound:", err)

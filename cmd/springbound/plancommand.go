@@ -8,6 +8,7 @@ import (
 	"strings"
 	"text/tabwriter"
 
+	"springbound/gisio"
 	"springbound/plan"
 	"springbound/plan/workbook"
 )
@@ -45,7 +46,7 @@ func runPlan(ctx context.Context, c solving, s streams) error {
 		return err
 	}
 	dir := c.outDir(j)
-	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}}, maps.files...)
+	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}, {"rates.csv", ratesTable(r)}}, maps.files...)
 	if err := writeOutputs(dir, files); err != nil {
 		return err
 	}
@@ -58,7 +59,7 @@ func runPlan(ctx context.Context, c solving, s streams) error {
 			return fmt.Errorf("cannot print the result: %w", err)
 		}
 	} else {
-		printPlan(s.out, r, dir)
+		printPlan(s.out, r, dir, "plan")
 	}
 	return verdict(r)
 }
@@ -87,6 +88,15 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 	}
 	j.field.Switching = true
 	return make()
+}
+
+// ratesTable is the plan's rates as a table that try reads.
+func ratesTable(r *plan.Report) []byte {
+	ids := make([]string, len(r.Wells))
+	for i, w := range r.Wells {
+		ids[i] = w.ID
+	}
+	return gisio.WriteRates(ids, ratesOf(r))
 }
 
 func ratesOf(r *plan.Report) []float64 {
@@ -118,7 +128,7 @@ func (c solving) outDir(j *job) string {
 }
 
 // printPlan is the short result on standard output.
-func printPlan(w io.Writer, r *plan.Report, dir string) {
+func printPlan(w io.Writer, r *plan.Report, dir, name string) {
 	fmt.Fprintf(w, "%s\n%s\n\n", r.Title, r.Headline)
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	fmt.Fprintln(t, "well\trate, m³/d\tfrom\tto\tholds at\twho")
@@ -160,7 +170,7 @@ func printPlan(w io.Writer, r *plan.Report, dir string) {
 		}
 	}
 	fmt.Fprintf(w, "\nchecks: %d, of which %d failed; not assessed: %d points, listed in the workbook\n", len(r.Checks), bad, len(r.NotAssessed))
-	fmt.Fprintf(w, "written to %s: plan.xlsx, plan.json, contours\n", dir)
+	fmt.Fprintf(w, "written to %s: %s.xlsx, %s.json, contours\n", dir, name, name)
 	fmt.Fprintln(w, "A planning aid (steady, confined, single layer): to be reviewed and signed by a qualified person under local rules.")
 }
 

@@ -1,0 +1,86 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"path/filepath"
+
+	"springbound/gisio"
+	"springbound/plan"
+	"springbound/plan/workbook"
+)
+
+// runTry holds given rates against every limit; nothing is optimised.
+func runTry(ctx context.Context, c solving, table string, s streams) error {
+	j, err := newJob(ctx, c, s)
+	if err != nil {
+		return err
+	}
+	defer j.progress.clear()
+	rates, findings := gisio.ReadRates(table, j.project.Wells)
+	if !c.Quiet {
+		j.progress.clear()
+		printWarnings(findings, s)
+	}
+	if err := findings.Err(); err != nil {
+		return err
+	}
+	maps := newMaps(j)
+	j.onField = maps.influence
+	r, err := j.evaluate(ctx, rates)
+	if err != nil {
+		return err
+	}
+	state, err := j.complete(ctx, r)
+	if err != nil {
+		return err
+	}
+	if err := maps.heads(state); err != nil {
+		return err
+	}
+	data, err := plan.Marshal(r)
+	if err != nil {
+		return err
+	}
+	book, err := workbook.Write(r)
+	if err != nil {
+		return err
+	}
+	dir := c.Out
+	if dir == "" {
+		dir = filepath.Join(j.project.Dir, "out-try")
+	}
+	if err := writeOutputs(dir, append([]outputFile{{"try.json", data}, {"try.xlsx", book}}, maps.files...)); err != nil {
+		return err
+	}
+	if err := dropStale(dir, "influence", maps.files); err != nil {
+		return err
+	}
+	j.progress.clear()
+	if c.JSON {
+		if _, err := s.out.Write(data); err != nil {
+			return fmt.Errorf("cannot print the result: %w", err)
+		}
+	} else {
+		printPlan(s.out, r, dir, "try")
+	}
+	return nil
+}
+
+// evaluate makes the report of given rates, with the features that act at them.
+func (j *job) evaluate(ctx context.Context, rates []float64) (*plan.Report, error) {
+	b, err := j.brief(ctx)
+	if err != nil {
+		return nil, err
+	}
+	state, err := j.field.Changes(ctx, rates)
+	if err != nil {
+		return nil, err
+	}
+	j.field.Switching = j.field.Switching || len(state.State.Off) > 0
+	response, err := j.Linearise(ctx, rates)
+	if err != nil {
+		return nil, err
+	}
+	return plan.Evaluate(b, response, rates)
+}
