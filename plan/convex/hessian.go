@@ -3,7 +3,7 @@ package convex
 import (
 	"fmt"
 	"math"
-	"sort"
+	"slices"
 	"sync"
 )
 
@@ -91,7 +91,7 @@ func (p *Problem) HessianEntries() []HessianEntry {
 		return nil
 	}
 	h := p.hessian.assembled()
-	var out []HessianEntry
+	out := make([]HessianEntry, 0, len(h.value))
 	for i := 0; i < h.n; i++ {
 		for k := h.start[i]; k < h.start[i+1]; k++ {
 			out = append(out, HessianEntry{Row: i, Column: int(h.column[k]), Value: h.value[k]})
@@ -134,6 +134,7 @@ func (b *hessianBuilder) dense(a []float64) {
 		return
 	}
 	n := b.n
+	b.list = make([]HessianEntry, 0, n*(n+1)/2+n)
 	for i := 0; i < n; i++ {
 		for j := 0; j <= i; j++ {
 			v, w := a[i*n+j], a[j*n+i]
@@ -146,30 +147,43 @@ func (b *hessianBuilder) dense(a []float64) {
 	}
 }
 
-func (b *hessianBuilder) entries(list []HessianEntry) {
-	seen := make(map[[2]int]bool, len(list))
-	for _, e := range list {
+// placeOrder orders entries by row and column.
+func placeOrder(x, y HessianEntry) int {
+	if x.Row != y.Row {
+		return x.Row - y.Row
+	}
+	return x.Column - y.Column
+}
+
+func sortPlaces(list []HessianEntry) {
+	if !slices.IsSortedFunc(list, placeOrder) {
+		slices.SortStableFunc(list, placeOrder)
+	}
+}
+
+func (b *hessianBuilder) entries(given []HessianEntry) {
+	list := make([]HessianEntry, 0, len(given))
+	for _, e := range given {
 		if e.Row < 0 || e.Row >= b.n || e.Column < 0 || e.Column >= b.n {
 			b.faults.add(BadSize, partProblem, 0, "", e.Value, fmt.Sprintf("the Hessian's entry (%d, %d) is outside its %d columns", e.Row, e.Column, b.n))
 			continue
 		}
-		at := [2]int{max(e.Row, e.Column), min(e.Row, e.Column)}
-		if seen[at] {
+		list = append(list, HessianEntry{max(e.Row, e.Column), min(e.Row, e.Column), e.Value})
+	}
+	sortPlaces(list)
+	for k, e := range list {
+		if k > 0 && placeOrder(e, list[k-1]) == 0 {
 			b.faults.add(BadHessian, partColumn, e.Row, "", e.Value, fmt.Sprintf("the Hessian's entry (%d, %d) is given twice", e.Row, e.Column))
 			continue
 		}
-		seen[at] = true
 		b.add(e.Row, e.Column, e.Value, "")
 	}
 }
 
 // finish sorts the entries and adds up those of different parts at one place.
 func (b *hessianBuilder) finish() *hessian {
-	sort.SliceStable(b.list, func(x, y int) bool {
-		u, v := b.list[x], b.list[y]
-		return u.Row < v.Row || (u.Row == v.Row && u.Column < v.Column)
-	})
-	h := &hessian{n: b.n, start: make([]int, b.n+1)}
+	sortPlaces(b.list)
+	h := &hessian{n: b.n, start: make([]int, b.n+1), column: make([]int32, 0, len(b.list)), value: make([]float64, 0, len(b.list))}
 	for k, e := range b.list {
 		if k > 0 && e.Row == b.list[k-1].Row && e.Column == b.list[k-1].Column {
 			h.value[len(h.value)-1] += e.Value
@@ -191,7 +205,7 @@ func (h *hessian) assembled() *hessian {
 		return h
 	}
 	n := h.n
-	out := &hessian{n: n, start: make([]int, n+1)}
+	out := &hessian{n: n, start: make([]int, n+1), column: make([]int32, 0, n*(n+1)/2), value: make([]float64, 0, n*(n+1)/2)}
 	row := make([]float64, n)
 	for i := 0; i < n; i++ {
 		clear(row)

@@ -187,8 +187,8 @@ func (f *interiorForm) takeHessian(h *hessian, at []int32, fixed []float64) {
 	}
 }
 
-// ruizPasses is the number of sweeps of the equilibration; each takes the root of what is left, so that ten bring a spread of 1e6
-// within two per cent of one.
+// ruizPasses is the most sweeps of the equilibration; each takes the root of what is left, so that ten bring a spread of 1e6 within two
+// per cent of one.
 const ruizPasses = 10
 
 // equilibrate scales rows and columns of the matrix of H and A together by roots of their largest entries (Ruiz 2001), then the
@@ -199,20 +199,37 @@ func (f *interiorForm) equilibrate(typical float64) {
 		row, col := make([]float64, f.m), make([]float64, f.n)
 		for i := 0; i < f.m; i++ {
 			cols, vals := f.a.row(i)
+			top, scale := 0.0, f.rowScale[i]
 			for k, j := range cols {
-				v := math.Abs(vals[k]) * f.rowScale[i] * f.colScale[j]
-				row[i], col[j] = math.Max(row[i], v), math.Max(col[j], v)
+				v := math.Abs(vals[k]) * scale * f.colScale[j]
+				if v > top {
+					top = v
+				}
+				if v > col[j] {
+					col[j] = v
+				}
 			}
+			row[i] = top
 		}
 		for i := 0; i < f.n; i++ {
 			cols, vals := f.h.row(i)
+			top, scale := col[i], f.colScale[i]
 			for k, j := range cols {
-				v := math.Abs(vals[k]) * f.colScale[i] * f.colScale[j]
-				col[i], col[j] = math.Max(col[i], v), math.Max(col[j], v)
+				v := math.Abs(vals[k]) * scale * f.colScale[j]
+				if v > top {
+					top = v
+				}
+				if v > col[j] {
+					col[j] = v
+				}
 			}
+			col[i] = math.Max(top, col[i])
 		}
 		rootScale(f.rowScale, row)
 		rootScale(f.colScale, col)
+		if even(row) && even(col) {
+			break
+		}
 	}
 	for i := range f.rowScale {
 		f.rowScale[i] = powerOfTwo(f.rowScale[i])
@@ -222,6 +239,17 @@ func (f *interiorForm) equilibrate(typical float64) {
 	}
 	f.centre(typical)
 	f.applyScale()
+}
+
+// even tells that the largest entries, where there are any, are within a factor of two of one, so that another sweep changes no power
+// of two by more than one step.
+func even(largest []float64) bool {
+	for _, v := range largest {
+		if v != 0 && !(v >= 0.5 && v <= 2) {
+			return false
+		}
+	}
+	return true
 }
 
 func rootScale(scale, largest []float64) {

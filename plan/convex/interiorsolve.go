@@ -95,24 +95,36 @@ func interiorAttempt(ctx context.Context, f *interiorForm, o Options) *Solution 
 	return plain
 }
 
-// solution takes the point back to the units of the problem. Reduced costs are computed from the data.
+// solution takes the point back to the units of the problem.
 func (s *interiorPoint) solution(status Status) *Solution {
-	f := s.f
+	y := append([]float64(nil), s.y...)
+	for i, v := range y {
+		if k := s.f.n + i; !(s.equation[i] || v > 0 && s.hasLow[k] || v < 0 && s.hasUp[k]) {
+			y[i] = 0 // the rounding of a price that no bound supports
+		}
+	}
+	sol := s.f.solution(status, s.v[:s.f.n], y, s.place)
+	sol.Iterations = s.iterations
+	return sol
+}
+
+// solution takes values and row prices back to the units of the problem; place, by columns and rows of the form, may be nil. Reduced
+// costs are computed from the data.
+func (f *interiorForm) solution(status Status, x, y []float64, place []Place) *Solution {
 	p := f.p
 	sol := emptySolution(p, status)
-	sol.Iterations = s.iterations
 	for j := range sol.X {
 		sol.X[j] = p.anyColumn(j).Lower // the fixed ones
 		sol.Basis.columns[j] = AtLower
 	}
 	for k, j := range f.column {
 		c := p.anyColumn(j)
-		sol.X[j] = plain(math.Max(c.Lower, math.Min(c.Upper, s.v[k]*f.colScale[k])))
+		sol.X[j] = plain(math.Max(c.Lower, math.Min(c.Upper, x[k]*f.colScale[k])))
 		sol.Basis.columns[j] = Basic
-		if s.place == nil {
+		if place == nil {
 			continue
 		}
-		switch s.place[k] {
+		switch place[k] {
 		case AtLower:
 			sol.X[j], sol.Basis.columns[j] = c.Lower, AtLower
 		case AtUpper:
@@ -123,15 +135,41 @@ func (s *interiorPoint) solution(status Status) *Solution {
 		if r < 0 {
 			continue
 		}
-		if y := s.y[i]; s.equation[i] || y > 0 && s.hasLow[f.n+i] || y < 0 && s.hasUp[f.n+i] {
-			sol.RowPrice[r] = plain(y * f.rowScale[i] / f.costScale)
-		}
-		if s.place != nil {
-			sol.Basis.rows[r] = s.place[f.n+i]
+		sol.RowPrice[r] = plain(y[i] * f.rowScale[i] / f.costScale)
+		if place != nil {
+			sol.Basis.rows[r] = place[f.n+i]
 		}
 	}
 	fillSolution(p, sol)
+	if place != nil {
+		markTies(p, sol)
+	}
 	return sol
+}
+
+// markTies sets the flags that warn of prices or values that are not the only ones: a value on its bound that is not held there, or a
+// bound that is held without a price.
+func markTies(p *Problem, sol *Solution) {
+	u := measure(p)
+	look := func(at Place, value, price, lower, upper, unit, cost float64) {
+		near := func(b float64) bool {
+			return finite(b) && math.Abs(value-b) <= feasibilityTolerance*math.Max(unit, math.Abs(b))
+		}
+		switch {
+		case lower == upper:
+		case at == Basic:
+			sol.PrimalDegenerate = sol.PrimalDegenerate || near(lower) || near(upper)
+		case math.Abs(price) <= optimalityTolerance*cost:
+			sol.DualDegenerate = true
+		}
+	}
+	for j, x := range sol.X {
+		c := p.anyColumn(j)
+		look(sol.Basis.columns[j], x, sol.ReducedCost[j], c.Lower, c.Upper, u.value*u.col[j], u.cost/u.col[j])
+	}
+	for i, r := range sol.RowValue {
+		look(sol.Basis.rows[i], r, sol.RowPrice[i], p.rowLower[i], p.rowUpper[i], u.value/u.row[i], u.cost*u.row[i])
+	}
 }
 
 // negligibleCost is the reduced cost, relative to its terms, that is taken for rounding where no bound supports it.
