@@ -124,7 +124,8 @@ func (c *Curve) shift(from, to float64) {
 // curve follows the optimum from one parameter to another.
 func (l *boundLine) curve(ctx context.Context, s *Solution, from, to float64) (*Curve, error) {
 	c := &Curve{Status: Optimal}
-	start, t, err := l.firstFeasible(ctx, s, to-from)
+	l.span = to - from
+	start, t, err := l.firstFeasible(ctx, s, l.span)
 	if err != nil {
 		return nil, err
 	}
@@ -133,7 +134,7 @@ func (l *boundLine) curve(ctx context.Context, s *Solution, from, to float64) (*
 		return c, nil
 	}
 	c.InfeasibleBefore = start > 0
-	if err := c.follow(ctx, newWalk(t), l.moves, start, to-from); err != nil {
+	if err := c.follow(ctx, newWalk(t), l.moves, start, l.span); err != nil {
 		return nil, err
 	}
 	if err := c.check(ctx, l); err != nil {
@@ -257,11 +258,11 @@ func (c *Curve) check(ctx context.Context, l *boundLine) error {
 	return nil
 }
 
-// objectiveTerms returns the sum of the absolute terms of the objective.
+// objectiveTerms returns the sum of the absolute terms of the objective, or its natural unit where that is larger (see Certify).
 func objectiveTerms(p *Problem, x []float64) float64 {
-	sum := 0.0
+	sum, unit := 0.0, measure(p)
 	for j, c := range p.columns {
 		sum += math.Abs(c.Cost * x[j])
 	}
-	return sum
+	return math.Max(sum, unit.cost*unit.value)
 }

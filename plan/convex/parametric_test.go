@@ -57,7 +57,7 @@ func (c *Curve) on(v float64) (float64, bool) {
 
 // TestParametricExact compares curves with rational arithmetic: just before and just beyond every point, and on a dense sweep.
 func TestParametricExact(t *testing.T) {
-	cases := 240
+	cases := 160
 	if long() {
 		cases = 12000
 	}
@@ -90,38 +90,47 @@ func TestParametricExact(t *testing.T) {
 			nowhere++
 		}
 		corners += max(0, len(c.Points)-2)
-		var looks []float64
-		for k := 0; k <= 16; k++ {
-			looks = append(looks, from+(to-from)*float64(k)/16)
-		}
-		for _, b := range c.Points {
-			looks = append(looks, b.At-1e-9, b.At+1e-9)
-		}
-		for _, v := range looks {
-			if !(v >= from && v <= to) {
-				continue
-			}
-			exactly := exactAt(t, p, side, v)
-			got, ok := c.on(v)
-			if exactly == nil {
-				if ok && v != c.Points[0].At && v != c.Points[len(c.Points)-1].At { // the ends themselves are rounded
-					t.Errorf("seed %d: %v at %v, exactly infeasible", seed, got, v)
-				}
-				continue
-			}
-			want, _ := exactly.Float64()
-			if last := len(c.Points) - 1; !ok && last >= 0 && (math.Abs(v-c.Points[0].At) < 1e-11 || math.Abs(v-c.Points[last].At) < 1e-11) {
-				continue // the ends of feasibility are rounded
-			}
-			if !ok || !(math.Abs(got-want) <= 1e-10*(1+math.Abs(want))) {
-				t.Errorf("seed %d: %v (%v) at %v, exactly %v", seed, got, ok, v, want)
-			}
-		}
+		exactSweep(t, p, side, c, from, to)
 		exactCorners(t, p, side, c)
+		if t.Failed() {
+			t.Logf("seed %d", seed)
+		}
 	}
 	t.Logf("%d corners, %d begin and %d end within, %d infeasible", corners, before, after, nowhere)
 	if corners < cases/50 || before < cases/20 || after < cases/40 || nowhere < cases/80 {
 		t.Error("one-sided cases")
+	}
+}
+
+// exactSweep compares a curve with rational arithmetic on a sweep and around its points.
+func exactSweep(t *testing.T, p *Problem, side SideOf, c *Curve, from, to float64) {
+	t.Helper()
+	var looks []float64
+	for k := 0; k <= 16; k++ {
+		looks = append(looks, from+(to-from)*float64(k)/16)
+	}
+	for _, b := range c.Points {
+		looks = append(looks, b.At-1e-9, b.At+1e-9)
+	}
+	for _, v := range looks {
+		if !(v >= from && v <= to) {
+			continue
+		}
+		exactly := exactAt(t, p, side, v)
+		got, ok := c.on(v)
+		if exactly == nil {
+			if ok && v != c.Points[0].At && v != c.Points[len(c.Points)-1].At { // the ends themselves are rounded
+				t.Errorf("%v at %v, exactly infeasible", got, v)
+			}
+			continue
+		}
+		want, _ := exactly.Float64()
+		if last := len(c.Points) - 1; !ok && last >= 0 && (math.Abs(v-c.Points[0].At) < 1e-11 || math.Abs(v-c.Points[last].At) < 1e-11) {
+			continue // the ends of feasibility are rounded
+		}
+		if !ok || !(math.Abs(got-want) <= 1e-10*(1+math.Abs(want))) {
+			t.Errorf("%v (%v) at %v, exactly %v", got, ok, v, want)
+		}
 	}
 }
 

@@ -13,6 +13,9 @@ const (
 	// meeting is how far, relative to their size, two moving bounds may cross where they meet: rounding of base plus rate times
 	// parameter.
 	meeting = 1e-14
+	// atZero is the size of a moving bound, relative to how far it moves over the span, that is rounding of zero. As a bound it would
+	// be taken for the size of all bounds.
+	atZero = 1e-14
 )
 
 // boundLine is a problem with bounds that move along a line, theta units from where it begins.
@@ -20,6 +23,7 @@ type boundLine struct {
 	moves       []Move
 	base        *Problem // its bounds may cross
 	rows, cols  []boundRate
+	span        float64  // largest theta, when known
 	atParameter *Problem // scratch
 }
 
@@ -76,12 +80,8 @@ func (l *boundLine) move(q *Problem, theta float64) bool {
 			baseLower, baseUpper := l.bounds(l.base, column, i)
 			lower, upper := l.bounds(q, column, i)
 			*lower, *upper = *baseLower, *baseUpper
-			if r.lower != 0 {
-				*lower += theta * r.lower
-			}
-			if r.upper != 0 {
-				*upper += theta * r.upper
-			}
+			l.carry(lower, theta, r.lower)
+			l.carry(upper, theta, r.upper)
 			if *lower > *upper && *lower-*upper <= meeting*(math.Abs(*lower)+math.Abs(*upper)) {
 				*upper = *lower
 			}
@@ -91,6 +91,17 @@ func (l *boundLine) move(q *Problem, theta float64) bool {
 	each(false, l.rows)
 	each(true, l.cols)
 	return ordered
+}
+
+// carry moves one bound.
+func (l *boundLine) carry(bound *float64, theta, rate float64) {
+	if rate == 0 {
+		return
+	}
+	*bound += theta * rate
+	if math.Abs(*bound) <= atZero*l.span*math.Abs(rate) {
+		*bound = 0
+	}
 }
 
 // at returns the problem at theta, which is valid until the next call; false when its bounds cross.

@@ -1,9 +1,6 @@
 package convex
 
-import (
-	"context"
-	"math"
-)
+import "math"
 
 // Tolerances of the walk along moving bounds, in the scaled problem with the fastest bound moving by one per unit.
 const (
@@ -51,15 +48,6 @@ func newWalk(t *session) *walk {
 		t: t, base: t.e, placed: make([]Place, v), lowerRate: make([]float64, v), upperRate: make([]float64, v),
 		rate: make([]float64, v), before: make([]float64, v),
 	}
-}
-
-// extent is how far one slope holds in one direction, in the units of the problem.
-type extent struct {
-	slope  float64 // per unit of the direction [-]
-	scaled float64 // the same in the scaled problem
-	reach  float64 // [-]
-	end    End
-	closed bool // infeasible at once: there is no slope
 }
 
 // setMoves gives each bound its rate per unit of the caller's parameter. False when nothing moves.
@@ -264,96 +252,6 @@ func (w *walk) advance(by float64) {
 	}
 }
 
-// turn makes the basis right for what lies just beyond the present theta by solving the programme of rates: least c'u with
-// r = A u, u at least (at most) the rate of each lower (upper) bound that is reached.
-func (w *walk) turn(ctx context.Context) Status {
-	e, q := w.e, w.rates
-	for v := range e.x {
-		lo, up := math.Inf(-1), math.Inf(1)
-		if b := e.lower[v]; e.place[v] == AtLower || (finite(b) && reachedBound(e.x[v]-b, b)) {
-			lo = w.lowerRate[v]
-		}
-		if b := e.upper[v]; e.place[v] == AtUpper || (finite(b) && reachedBound(b-e.x[v], b)) {
-			up = w.upperRate[v]
-		}
-		if lo > up {
-			w.last = w.named(v, UpperSide)
-			if w.upperRate[v] != 0 {
-				w.last = w.named(v, LowerSide)
-			}
-			return Infeasible
-		}
-		q.trueLow[v], q.trueUp[v] = lo, up
-	}
-	q.unwiden()
-	copy(q.place, e.place)
-	q.adoptPlaces()
-	for v, p := range q.place {
-		if p != Basic {
-			q.settle(v)
-		}
-	}
-	copy(q.cost, q.trueCost)
-	clear(q.cost[q.n:])
-	q.draw = w.base.draw
-	q.limit = q.iterations + Options{}.iterationLimit(q.rows, q.n)
-	switch status, _ := q.optimise(ctx); status {
-	case Optimal:
-	case Infeasible, Interrupted:
-		return status
-	default:
-		return NumericalTrouble
-	}
-	for v, p := range q.place {
-		if p == AtZero && (finite(e.lower[v]) || finite(e.upper[v])) {
-			return NumericalTrouble
-		}
-	}
-	copy(w.placed, q.place)
-	if !w.adopt(w.placed) {
-		return NumericalTrouble
-	}
-	for v, p := range e.place {
-		if p != Basic {
-			continue
-		}
-		by, bound := outside(e.x[v], e.lower[v], e.upper[v])
-		if !(by <= walkViolation*math.Max(1, math.Abs(bound))) {
-			return NumericalTrouble
-		}
-	}
-	return Optimal
-}
-
-// face makes the basis right for what lies just beyond theta and returns the slope there.
-func (w *walk) face(ctx context.Context) (slope float64, status Status) {
-	slope = w.computeRates(w.e)
-	copy(w.before, w.rate)
-	if !(w.outward(w.e) > 0) && !w.opening() {
-		return slope, Optimal
-	}
-	if status = w.turn(ctx); status != Optimal {
-		return 0, status
-	}
-	slope = w.computeRates(w.e)
-	if !(w.outward(w.e) <= turnTolerance*w.top) {
-		return 0, NumericalTrouble
-	}
-	return slope, Optimal
-}
-
-// opening tells that a moving bound parts from the other one of its variable, or crosses it, at the present theta, so that its place
-// must be chosen anew.
-func (w *walk) opening() bool {
-	for _, v := range w.moved {
-		e := w.e
-		if w.lowerRate[v] != w.upperRate[v] && reachedBound(e.upper[v]-e.lower[v], e.lower[v]) {
-			return true
-		}
-	}
-	return false
-}
-
 // differ tells that two slopes of the scaled problem are not the same.
 func (w *walk) differ(a, b float64) bool {
 	return !(math.Abs(a-b) <= math.Max(slopeFloor, slopeTolerance*math.Max(math.Abs(a), math.Abs(b))))
@@ -369,118 +267,3 @@ func (w *walk) toUnits(slope float64) float64 {
 
 // maxSteps bounds the loop of a walk.
 func (w *walk) maxSteps() int { return 1000 + walkSteps*(w.base.n+w.base.rows) }
-
-// oneWay follows one bound up (1) or down (-1) until the slope changes.
-func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent, error) {
-	w.setMoves([]Move{{Of: of, Rate: direction}})
-	if x, ok := w.atOnce(); ok {
-		return x, nil
-	}
-	w.begin()
-	x := extent{}
-	for k := 0; k < w.maxSteps(); k++ {
-		if ctx.Err() != nil {
-			return x, &StatusError{"following a bound", Interrupted}
-		}
-		slope, status := w.face(ctx)
-		switch {
-		case status == Infeasible:
-			x.end, x.closed = End{InfeasibleBeyond, w.last}, k == 0
-			x.reach = w.theta / w.unit
-			return x, nil
-		case status != Optimal:
-			return x, &StatusError{"following a bound", status}
-		case k == 0:
-			x.scaled, x.slope = slope, w.toUnits(slope)
-		case w.differ(slope, x.scaled):
-			x.end = End{SlopeChanges, w.culprit()}
-			x.reach = w.theta / w.unit
-			return x, nil
-		}
-		by, _, _ := w.step(w.e)
-		if !(by <= math.MaxFloat64) {
-			x.end.Kind, x.reach = Endless, math.Inf(1)
-			return x, nil
-		}
-		w.advance(by)
-	}
-	return x, &StatusError{"following a bound", NumericalTrouble}
-}
-
-// culprit returns the bound that adds most to the change of slope of the last turn, which is the sum over all bounds of their new
-// price times the rate at which the old basis would have left them.
-func (w *walk) culprit() SideOf {
-	best, most := w.last, 0.0
-	for v, d := range w.e.d {
-		if w.e.place[v] == Basic || d == 0 {
-			continue
-		}
-		if part := d * (w.rate[v] - w.before[v]); part > most {
-			side := LowerSide
-			if w.e.place[v] == AtUpper {
-				side = UpperSide
-			}
-			best, most = w.named(v, side), part
-		}
-	}
-	return best
-}
-
-// atOnce answers from the base alone where that is certain: no bound that is reached is left behind, and at the next one the pivot
-// raises the dual objective, so that the slope does change there.
-func (w *walk) atOnce() (extent, bool) {
-	e, x := w.base, extent{}
-	for _, v := range w.moved {
-		if w.lowerRate[v] != w.upperRate[v] && reachedBound(e.upper[v]-e.lower[v], e.lower[v]) {
-			return x, false
-		}
-	}
-	x.scaled = w.computeRates(e)
-	if w.outward(e) > 0 {
-		return x, false
-	}
-	x.slope = w.toUnits(x.scaled)
-	by, p, speed := w.step(e)
-	x.reach, x.end = by/w.unit, End{SlopeChanges, w.last}
-	if !(by <= math.MaxFloat64) {
-		x.reach, x.end = math.Inf(1), End{Kind: Endless}
-		return x, true
-	}
-	if p < 0 {
-		x.end.Kind = InfeasibleBeyond
-		return x, true
-	}
-	direction := 1.0
-	if w.last.Side == UpperSide {
-		direction = -1
-	}
-	e.pivotRow(p)
-	e.gatherBreakpoints(direction)
-	if len(e.ratio) == 0 {
-		return x, false
-	}
-	return x, w.differ(x.scaled+e.ratio[0].ratio*speed, x.scaled) && w.alone(e, p, by)
-}
-
-// alone tells that no basic value but that of p is at a bound after a step, nor a moving bound at the other one. Then one pivot is all that p asks for, so that something
-// is feasible beyond.
-func (w *walk) alone(e *engine, p int, by float64) bool {
-	for v, place := range e.place {
-		if place != Basic || v == p {
-			continue
-		}
-		x := e.x[v] + by*w.rate[v]
-		if lo := e.lower[v] + by*w.lowerRate[v]; finite(lo) && reachedBound(x-lo, lo) {
-			return false
-		}
-		if up := e.upper[v] + by*w.upperRate[v]; finite(up) && reachedBound(up-x, up) {
-			return false
-		}
-	}
-	for _, v := range w.moved {
-		if closing := w.lowerRate[v] - w.upperRate[v]; closing > 0 && reachedBound(e.upper[v]-e.lower[v]-by*closing, e.lower[v]) {
-			return false
-		}
-	}
-	return true
-}

@@ -19,17 +19,20 @@ func mustNearest(t testing.TB, p *Problem, s *Solution, target, scale []float64)
 	return tie
 }
 
-// optimaOf returns p with the objective held at its optimum by a row, so that its points are the optima, to rounding.
+// optimaOf returns p with the objective held at its optimum by a row, so that its points are the optima, to the solver's tolerance.
 func optimaOf(t *testing.T, p *Problem, value float64) *Problem {
 	t.Helper()
 	q := p.Clone()
-	a, terms := make([]float64, p.Columns()), 1+math.Abs(value)
+	a := make([]float64, p.Columns())
 	for j := range a {
 		a[j] = p.Column(j).Cost
 	}
-	r := Row{Coefficients: a, Lower: value - 1e-12*terms, Upper: inf}
+	if math.Abs(value) < rounding { // a bound of rounding size would be taken for the size of all bounds
+		value = 0
+	}
+	r := Row{Coefficients: a, Lower: value, Upper: inf}
 	if p.Sense() == Minimise {
-		r.Lower, r.Upper = -inf, value+1e-12*terms
+		r.Lower, r.Upper = -inf, value
 	}
 	if _, err := q.AddRow(r); err != nil {
 		t.Fatal(err)
@@ -347,5 +350,89 @@ func TestNearestFast(t *testing.T) {
 	t.Logf("%d steps, unique %v, %v", tie.Steps, tie.Unique, took)
 	if took > 3*time.Second {
 		t.Errorf("took %v", took)
+	}
+}
+
+// TestNearestManyTies checks problems of middle size in which almost everything is tied.
+func TestNearestManyTies(t *testing.T) {
+	cases := 80
+	if long() {
+		cases = 3000
+	}
+	ties := 0
+	for seed := 0; seed < cases && !t.Failed(); seed++ {
+		rng := rand.New(rand.NewPCG(uint64(seed), 1300))
+		p := manyTies(t, rng)
+		for j := range p.columns {
+			if seed%3 > 0 {
+				p.columns[j].Cost = float64(rng.IntN(seed % 3 * 2))
+			}
+			if p.columns[j].Lower == -inf && seed%2 == 0 {
+				p.columns[j].Lower = -float64(rng.IntN(3))
+			}
+		}
+		s := mustSolve(t, p, Options{})
+		if s.Status != Optimal {
+			continue
+		}
+		target, scale := make([]float64, p.Columns()), make([]float64, p.Columns())
+		for j := range target {
+			target[j], scale[j] = float64(rng.IntN(9)-2), float64(int(1)<<rng.IntN(3))
+		}
+		tie, err := Nearest(context.Background(), p, s, target, scale)
+		if err != nil {
+			t.Fatalf("seed %d: %v", seed, err)
+		}
+		if !tie.Unique {
+			ties++
+		}
+		if seed%8 == 0 {
+			againstAllOptima(t, p, tie, target, scale)
+		}
+		if t.Failed() {
+			t.Logf("seed %d", seed)
+		}
+	}
+	t.Logf("%d ties", ties)
+	if ties < cases/8 {
+		t.Error("one-sided cases")
+	}
+}
+
+// TestNearestLeastCost: the demand of 200 equal wells by hand: all move by the same from their target until their caps.
+func TestNearestLeastCost(t *testing.T) {
+	const wells = 200
+	columns, a, target := make([]Column, wells), make([]float64, wells), make([]float64, wells)
+	sum, rng := 0.0, rand.New(rand.NewPCG(13, 1))
+	for j := range columns {
+		columns[j], a[j] = Column{Cost: 0.1, Upper: 1000}, 1
+		target[j] = 300 + 400*rng.Float64()
+		sum += target[j]
+	}
+	p := mustProblem(t, Minimise, columns, equal(sum+wells*50, a...))
+	tie := mustNearest(t, p, mustOptimal(t, p, Options{}), target, nil)
+	for j, x := range tie.Solution.X {
+		check(t, "rate", x, target[j]+50, 1e-9)
+	}
+	check(t, "distance", tie.Distance, 50*math.Sqrt(wells), 1e-9)
+	if tie.Unique || tie.Other == nil {
+		t.Error("called unique")
+	}
+}
+
+// TestNearestNearlyEqualLimits: two limits that differ in their ninth digit and meet in the plan; the answer must be certified or
+// refused, and here it can be certified.
+func TestNearestNearlyEqualLimits(t *testing.T) {
+	for _, apart := range []float64{1e-3, 1e-6, 1e-9, 1e-12, 0} {
+		p := mustProblem(t, Maximise, threeWells([]float64{1, 1, 1 - 1e-3}, 10), atMost(12, 1, 1, 2), atMost(12+4*apart, 1, 1+apart, 2), atMost(12, 1+apart, 1, 2))
+		s := mustOptimal(t, p, Options{})
+		tie, err := Nearest(context.Background(), p, s, []float64{1, 7, 0}, nil)
+		if err != nil {
+			t.Errorf("apart %g: %v", apart, err)
+			continue
+		}
+		if !near(tie.Solution.Objective, s.Objective, 1e-10) {
+			t.Errorf("apart %g: %v, want %v", apart, tie.Solution.Objective, s.Objective)
+		}
 	}
 }

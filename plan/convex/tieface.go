@@ -111,15 +111,11 @@ func (f *face) moves(ctx context.Context, e *engine, away []float64) (bool, erro
 	return false, nil
 }
 
-// project moves the plan of tie to the point of the face nearest to the target. In u = (x - target) / (scale reach), with rows of
-// norm one, that is the point nearest to zero, and reach, the distance of the vertex, makes it at most one.
-func (f *face) project(ctx context.Context, p *Problem, tie *Tie, target, scale []float64) error {
-	x := tie.Solution.X
-	reach := 0.0
-	begin := make([]float64, len(x)) // target where a column may move
-	var columns []int
+// movable returns the columns that may move, the plan with these at their target, and the largest scaled distance that the vertex x
+// has from it.
+func (f *face) movable(x, target, scale []float64) (columns []int, begin []float64, reach float64) {
+	begin = append([]float64(nil), x...)
 	for j := range x {
-		begin[j] = x[j]
 		if f.kept[j] {
 			continue
 		}
@@ -127,6 +123,14 @@ func (f *face) project(ctx context.Context, p *Problem, tie *Tie, target, scale 
 		columns = append(columns, j)
 		reach = math.Max(reach, math.Abs(x[j]-target[j])/scale[j])
 	}
+	return columns, begin, reach
+}
+
+// project moves the plan of tie to the point of the face nearest to the target. In u = (x - target) / (scale reach), with rows of
+// norm one, that is the point nearest to zero, and reach, the distance of the vertex, makes it near one.
+func (f *face) project(ctx context.Context, p *Problem, tie *Tie, target, scale []float64) error {
+	x := tie.Solution.X
+	columns, begin, reach := f.movable(x, target, scale)
 	if !(reach > 0) {
 		return nil
 	}
@@ -135,8 +139,34 @@ func (f *face) project(ctx context.Context, p *Problem, tie *Tie, target, scale 
 		c := p.columns[j]
 		q.low[k], q.high[k] = (c.Lower-target[j])/scale[j]/reach, (c.Upper-target[j])/scale[j]/reach
 	}
-	var rows []int
-	var norms []float64
+	rows, norms := f.addRows(p, q, columns, begin, scale, reach)
+	if err := q.solve(ctx); err != nil {
+		return err
+	}
+	tie.Steps = q.steps
+	for k, j := range columns {
+		switch q.at[k] {
+		case AtLower:
+			x[j] = p.columns[j].Lower
+		case AtUpper:
+			x[j] = p.columns[j].Upper
+		default:
+			x[j] = target[j] + q.u[k]*reach*scale[j]
+		}
+	}
+	for k, a := range q.active {
+		if math.Abs(q.pull[k]) <= tieNoise {
+			continue
+		}
+		tie.RowPull[rows[a]] = plain(reach * q.pull[k] * q.sign[k] / norms[a])
+	}
+	tie.refresh(p)
+	return nil
+}
+
+// addRows gives q the rows that hold a movable column, those with a price as equations, and returns which they are and the norms
+// that they were divided by.
+func (f *face) addRows(p *Problem, q *nearPoint, columns []int, begin, scale []float64, reach float64) (rows []int, norms []float64) {
 	for i := range p.rowName {
 		g, norm := make([]float64, len(columns)), 0.0
 		for k, j := range columns {
@@ -162,25 +192,7 @@ func (f *face) project(ctx context.Context, p *Problem, tie *Tie, target, scale 
 		q.addRow(g, (lower-value)/unit, (upper-value)/unit, tieViolation+tieRounding*terms/unit)
 		rows, norms = append(rows, i), append(norms, norm)
 	}
-	if err := q.solve(ctx); err != nil {
-		return err
-	}
-	tie.Steps = q.steps
-	for k, j := range columns {
-		switch q.at[k] {
-		case AtLower:
-			x[j] = p.columns[j].Lower
-		case AtUpper:
-			x[j] = p.columns[j].Upper
-		default:
-			x[j] = target[j] + q.u[k]*reach*scale[j]
-		}
-	}
-	for k, a := range q.active {
-		tie.RowPull[rows[a]] = plain(reach * q.pull[k] * q.sign[k] / norms[a])
-	}
-	tie.refresh(p)
-	return nil
+	return rows, norms
 }
 
 // refresh recomputes what follows from X.

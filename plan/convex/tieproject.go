@@ -15,6 +15,8 @@ const (
 	tieDependent = 1e-9
 	// tieLeft is the violation that may stay where a row is such a combination.
 	tieLeft = 1e-8
+	// tieNoise is the multiplier that is rounding of zero.
+	tieNoise = 1e-13
 	// tieSteps bounds the changes of the active set, per row and column.
 	tieSteps = 50
 )
