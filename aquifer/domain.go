@@ -63,6 +63,7 @@ func (d *domainPlan) addLines(s *Site) {
 	}
 	for _, r := range s.Rivers {
 		d.riverLine = append(d.riverLine, add("river "+r.Name, r.Path))
+		d.layer = append(d.layer, layerSize{len(d.domain.Lines) - 1, riverShare * math.Sqrt(d.areaOfSite)})
 	}
 	for _, l := range s.Lakes {
 		first := len(d.domain.Lines)
@@ -73,6 +74,9 @@ func (d *domainPlan) addLines(s *Site) {
 		rings(a.Name, a.Area)
 	}
 }
+
+// riverShare of the square root of the area is the largest edge length along a river: a hundred of them cross the site.
+const riverShare = 1.0 / 100
 
 // resolveLayer sets the edge length along the border of a lake or leaky zone, the lines from first on, by the leakage length there.
 func (d *domainPlan) resolveLayer(s *Site, first int, resistance float64) {

@@ -30,6 +30,12 @@ func (r Radius) Below(bore float64) float64 {
 	return (r.LogR0 - math.Log(effective)) / (r.Angle * r.Mean)
 }
 
+// EquivalentRadius finds the equivalent radius at any node that has a head to be found, also where no well was asked for; the mesh is as it
+// is there.
+func (m *Model) EquivalentRadius(ctx context.Context, node int32) (Radius, error) {
+	return m.equivalentRadius(ctx, node)
+}
+
 // equivalentRadius solves the local discrete problem: a unit sink at the node, the logarithm as boundary data on a patch that
 // spans the graded zone, cut before the nearest change of transmissivity or bend of the outline. Then ln r0 = -angle T* u(node).
 // The neighbour-only formula (Peaceman 1978, SPE Journal 18(3), in the form for any control volume) is the patch of one ring;

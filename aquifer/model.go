@@ -101,7 +101,7 @@ func meshSite(ctx context.Context, site *Site, o Options, bad *problems) (*domai
 }
 
 func (d *domainPlan) meshOptions(site *Site, o Options) mesh.Options {
-	mo := mesh.Options{Nodes: d.nodes, Growth: d.growth, MaxNodes: o.MaxNodes}
+	mo := mesh.Options{Nodes: d.nodes, Growth: d.growth, DetailGrowth: math.Min(1, detailGrowth*orDefault(o.Scale, 1)), MaxNodes: o.MaxNodes}
 	if o.Coarsest > 0 {
 		mo.Coarsest = o.Coarsest * orDefault(o.Scale, 1)
 	}

@@ -44,6 +44,9 @@ const (
 	// defaultGrowth: at a fixed growth g the discrete logarithm is off by about g²/5 of its slope, two thousandths at 0.1; 0.15 is the most
 	// that keeps pairs of near wells within 0.3 %.
 	defaultGrowth = 0.10
+	// detailGrowth is the growth from the outline's and the zones' own short segments: the head is smooth there but at corners, which are refined
+	// by themselves.
+	detailGrowth = 0.5
 	// finestShare of the square root of the area is the default edge length at wells and receptors: 1 m a kilometre.
 	finestShare = 1e-3
 	// nodesPerPlace is what the default spends around each well or receptor before the finest size is raised: a circle that grows from the

@@ -11,6 +11,7 @@ import (
 const (
 	defaultNodes     = 20000
 	defaultGrowth    = 0.15
+	defaultDetail    = 0.5 // a long coast then takes some five nodes a vertex, and angles are kept
 	defaultAngleDeg  = 25
 	largestAngleDeg  = 33   // refinement beyond this is not known to end
 	extraAngleDeg    = 3    // refined to so much more than asked, which costs a few per cent of nodes
@@ -32,6 +33,9 @@ func (o Options) resolved(d Domain) Options {
 	}
 	if o.Growth == 0 {
 		o.Growth = defaultGrowth
+	}
+	if o.DetailGrowth == 0 {
+		o.DetailGrowth = max(defaultDetail, o.Growth)
 	}
 	if o.MinAngleDeg == 0 {
 		o.MinAngleDeg = defaultAngleDeg
@@ -171,7 +175,7 @@ func (c *carved) sizeBases(d Domain) {
 // makeField makes the size field, finds its coarsest size and the number of nodes to expect.
 func (r *refiner) makeField(d Domain, o Options) (*sizeField, float64) {
 	x0, y0, x1, y1 := bounds(r.p)
-	f := newSizeField(r.sources(d.Points, o.Tolerance), o.Growth, x0, y0, x1, y1)
+	f := newSizeField(r.sources(d.Points, o.Tolerance, o.Growth, o.DetailGrowth), x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
 	in := r.integrate(f)
 	if !(o.Coarsest > 0) {

@@ -33,9 +33,14 @@ type Tensor struct {
 
 // Options steer Build. The zero value is 20,000 nodes with the defaults stated at each field.
 type Options struct {
-	Nodes       int     // nodes wanted at least, about; 0 = 20,000
-	Coarsest    float64 // largest edge length wanted; overrides Nodes when > 0 [m]
-	Growth      float64 // growth of edge length per distance; 0 = 0.15 [-]
+	Nodes    int     // nodes wanted at least, about; 0 = 20,000
+	Coarsest float64 // largest edge length wanted; overrides Nodes when > 0 [m]
+	Growth   float64 // growth of edge length per distance from points and lines that ask for a size; 0 = 0.15 [-]
+
+	// DetailGrowth is the growth from the short segments of rings and of lines that ask for no size: detail of a coast is no reason
+	// for fine triangles far from it; 0 = the larger of 0.5 and Growth [-].
+	DetailGrowth float64
+
 	MinAngleDeg float64 // smallest angle wanted; 0 = 25, at most 33 [°]
 	MaxNodes    int     // budget; 0 = 4 times the nodes estimated plus 50,000, but at most 20 times Nodes or 500,000
 	Tolerance   float64 // nearer vertices are brought together; 0 = 1e-8 of the outline's diagonal [m]

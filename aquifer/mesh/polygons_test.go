@@ -108,6 +108,9 @@ func TestPolygons(t *testing.T) {
 				t.Error(f)
 			}
 			q := m.Quality
+			if q.Nodes < 1500 || q.Nodes > 50000 { // 2,000 asked for: a fifth less at most, and a coast's own vertices more
+				t.Errorf("%d nodes", q.Nodes)
+			}
 			if q.BudgetHit || q.PoorOther > 0 || q.EncroachedLeft > 0 || q.MinAngleFreeDeg < 25 {
 				t.Errorf("quality %+v", q)
 			}

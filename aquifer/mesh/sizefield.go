@@ -4,8 +4,9 @@ import "math"
 
 // source is a place that wants small triangles.
 type source struct {
-	x, y float64
-	size float64 // wanted edge length there [m]
+	x, y   float64
+	size   float64 // wanted edge length there [m]
+	growth float64 // of the edge length per distance from it [-]
 }
 
 const (
@@ -14,10 +15,10 @@ const (
 	fieldDepth    = 40   // levels of the quadtree: 10,000 km down to 10 µm
 )
 
-// sizeField is h(x) = min(coarsest, min over sources of size + growth dist). A quadtree holds in each leaf the sources that can
+// sizeField is h(x) = min(coarsest, min over sources of size + growth dist), each source with a growth of its own. A quadtree holds in each leaf the sources that can
 // be the smallest somewhere in it.
 type sizeField struct {
-	coarsest, growth float64
+	coarsest, growth float64 // growth is the largest of any source
 	x, y, side       float64 // lower left corner and side of the root
 	cells            []fieldCell
 	lists            []source
@@ -31,8 +32,12 @@ type fieldCell struct {
 }
 
 // newSizeField builds the quadtree over a box.
-func newSizeField(sources []source, growth, x0, y0, x1, y1 float64) *sizeField {
+func newSizeField(sources []source, x0, y0, x1, y1 float64) *sizeField {
 	side := max(x1-x0, y1-y0) * 1.001
+	growth := 0.0
+	for _, s := range sources {
+		growth = max(growth, s.growth)
+	}
 	f := &sizeField{coarsest: math.Inf(1), growth: growth, x: x0, y: y0, side: side}
 	f.cells = append(f.cells, fieldCell{child: -1})
 	f.scratch = append(make([]source, 0, 8*len(sources)), sources...)
@@ -46,21 +51,21 @@ func newSizeField(sources []source, growth, x0, y0, x1, y1 float64) *sizeField {
 func (f *sizeField) split(c int32, from int, cx, cy, half float64, depth int) {
 	r := half * math.Sqrt2
 	to := len(f.scratch)
-	upper, best := math.Inf(1), source{}
+	upper, best := math.Inf(1), source{} // upper bounds the size anywhere in the cell
 	for _, s := range f.scratch[from:to] {
 		dx, dy := s.x-cx, s.y-cy
-		if u := s.size + f.growth*math.Sqrt(dx*dx+dy*dy); u < upper {
+		if u := s.size + s.growth*(math.Sqrt(dx*dx+dy*dy)+r); u < upper {
 			upper, best = u, s
 		}
 	}
 	for i := from; i < to; i++ {
 		s := f.scratch[i]
 		dx, dy := s.x-cx, s.y-cy
-		if s.size+f.growth*(math.Sqrt(dx*dx+dy*dy)-r) <= upper+f.growth*r {
+		if s.size+s.growth*max(0, math.Sqrt(dx*dx+dy*dy)-r) <= upper {
 			f.scratch = append(f.scratch, s)
 		}
 	}
-	if 2*f.growth*r < leafVariation*upper && len(f.scratch) > to+1 {
+	if 2*f.growth*r < leafVariation*(upper-best.growth*r) && len(f.scratch) > to+1 {
 		f.scratch = append(f.scratch[:to], best)
 	}
 	if len(f.scratch) <= to+leafSources || depth == fieldDepth {
@@ -107,7 +112,7 @@ func (f *sizeField) free(x, y float64) float64 {
 	for i := cell.from; i < cell.to; i++ {
 		s := &f.lists[i]
 		dx, dy := s.x-x, s.y-y
-		h = min(h, s.size+f.growth*math.Sqrt(dx*dx+dy*dy))
+		h = min(h, s.size+s.growth*math.Sqrt(dx*dx+dy*dy))
 	}
 	return h
 }

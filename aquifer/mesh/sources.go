@@ -10,8 +10,9 @@ const (
 )
 
 // sources makes a size-field source of every vertex: its shortest edge, which is how near the next feature is, and what the
-// domain's points ask for, but never less than the tolerance.
-func (c *carved) sources(points []Point, tol float64) []source {
+// domain's points ask for, but never less than the tolerance. What is asked for, at points and along lines, grows by growth; the
+// detail of rings and other lines grows by detail.
+func (c *carved) sources(points []Point, tol, growth, detail float64) []source {
 	size := make([]float64, len(c.p))
 	for i := range size {
 		size[i] = math.Inf(1)
@@ -27,15 +28,28 @@ func (c *carved) sources(points []Point, tol float64) []source {
 			size[a], size[b] = min(size[a], l), min(size[b], l)
 		}
 	}
+	asked := make([]bool, len(c.p))
+	for v := range asked {
+		segments := c.segmentsAt(int32(v))
+		asked[v] = len(segments) == 0
+		for _, s := range segments {
+			asked[v] = asked[v] || c.bases[s].size < math.Inf(1)
+		}
+	}
 	for i, p := range points {
 		if v := c.point[i]; v >= 0 && p.Size > 0 {
 			size[v] = min(size[v], p.Size)
+			asked[v] = true
 		}
 	}
 	out := make([]source, 0, len(c.p))
 	for i := range c.p {
 		if size[i] < math.Inf(1) {
-			out = append(out, source{c.p[i].x, c.p[i].y, max(size[i], tol)})
+			g := detail
+			if asked[i] {
+				g = growth
+			}
+			out = append(out, source{c.p[i].x, c.p[i].y, max(size[i], tol), g})
 		}
 	}
 	return out

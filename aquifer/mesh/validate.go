@@ -406,6 +406,9 @@ func checkOptions(o Options) []Problem {
 	if !(o.Coarsest >= 0) || math.IsInf(o.Coarsest, 0) {
 		bad("Coarsest", o.Coarsest, "want a length, or 0 for none")
 	}
+	if !(o.DetailGrowth >= 0 && o.DetailGrowth <= largestGrowth) {
+		bad("DetailGrowth", o.DetailGrowth, fmt.Sprintf("want 0 (default) to %g", largestGrowth))
+	}
 	if !(o.Growth >= 0 && o.Growth <= largestGrowth) {
 		bad("Growth", o.Growth, fmt.Sprintf("want 0 (default) to %g", largestGrowth))
 	}
