@@ -183,6 +183,7 @@ func (c *Curve) follow(ctx context.Context, w *walk, moves []Move, start, span f
 		}
 		by, _, _ := w.step(w.e)
 		if !(w.theta+by < end) {
+			w.hit = false
 			w.advance(end - w.theta)
 			c.Points = append(c.Points, Breakpoint{At: span, Value: value(), Slope: plain(w.toUnits(slope))})
 			return nil

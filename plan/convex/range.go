@@ -228,8 +228,8 @@ func (w *walk) both(ctx context.Context, r *Range) error {
 	if err != nil {
 		return err
 	}
-	r.Left, r.From, r.Below = plain(-down.slope), r.At-down.reach, down.end
-	r.Right, r.To, r.Above = plain(up.slope), r.At+up.reach, up.end
+	r.Left, r.From, r.Below = plain(-down.slope), plain(down.at), down.end
+	r.Right, r.To, r.Above = plain(up.slope), plain(up.at), up.end
 	worse := 1.0
 	if w.t.p.sense == Maximise {
 		worse = -1

@@ -433,3 +433,40 @@ func TestCheckRange(t *testing.T) {
 		}
 	}
 }
+
+// TestRangesHugeCaps: 1e9 to 1e30 in place of "no cap" must give the ranges of the problem without caps, and for the caps themselves
+// the rates at which they would begin to matter.
+func TestRangesHugeCaps(t *testing.T) {
+	for seed := uint64(0); seed < 6; seed++ {
+		p := planningProblem(t, planningCase{wells: 12, limits: 8, degenerate: seed%2 == 1, seed: 1400 + seed})
+		set := func(upper float64) []Range {
+			for j := 0; j < p.Columns(); j++ {
+				if err := p.SetBounds(j, 0, upper); err != nil {
+					t.Fatal(err)
+				}
+			}
+			return mustRanges(t, p, mustOptimal(t, p, Options{}), AllSides(p)...)
+		}
+		want := map[SideOf]Range{}
+		for _, r := range set(inf) {
+			want[r.Of] = r
+		}
+		caps := map[SideOf]float64{}
+		for _, huge := range []float64{1e6, 1e9, 1e15, 1e30} {
+			for _, r := range set(huge) {
+				w, ok := want[r.Of]
+				switch {
+				case !ok:
+					if last, ok := caps[r.Of]; ok && !(math.Abs(r.From-last) <= 1e-9*(1+last)) {
+						t.Errorf("seed %d, %g for no cap: %v matters from %v, before from %v", seed, huge, r.Of, r.From, last)
+					}
+					caps[r.Of] = r.From
+				case !near(r.Left, w.Left, 1e-9) || !near(r.Right, w.Right, 1e-9) || (r.From != w.From && !near(r.From, w.From, 1e-9)):
+					t.Errorf("seed %d, %g for no cap: %+v, want %+v", seed, huge, r, w)
+				case r.To != w.To && !near(r.To, w.To, 1e-9) && !(r.To > 1e3*r.At):
+					t.Errorf("seed %d, %g for no cap: %+v, want %+v", seed, huge, r, w)
+				}
+			}
+		}
+	}
+}

@@ -9,7 +9,7 @@ import (
 type extent struct {
 	slope  float64 // per unit of the direction [-]
 	scaled float64 // the same in the scaled problem
-	reach  float64 // [-]
+	at     float64 // the bound at its end [-]
 	end    End
 	closed bool // infeasible at once: there is no slope
 }
@@ -17,7 +17,7 @@ type extent struct {
 // oneWay follows one bound up (1) or down (-1) until the slope changes.
 func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent, error) {
 	w.setMoves([]Move{{Of: of, Rate: direction}})
-	if x, ok := w.atOnce(); ok {
+	if x, ok := w.atOnce(of, direction); ok {
 		return x, nil
 	}
 	w.begin()
@@ -30,7 +30,7 @@ func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent
 		switch {
 		case status == Infeasible:
 			x.end, x.closed = End{InfeasibleBeyond, w.last}, k == 0
-			x.reach = w.theta / w.unit
+			x.at = w.present(of)
 			return x, nil
 		case status != Optimal:
 			return x, &StatusError{"following a bound", status}
@@ -38,12 +38,12 @@ func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent
 			x.scaled, x.slope = slope, w.toUnits(slope)
 		case w.differ(slope, x.scaled):
 			x.end = End{SlopeChanges, w.culprit()}
-			x.reach = w.theta / w.unit
+			x.at = w.present(of)
 			return x, nil
 		}
 		by, _, _ := w.step(w.e)
 		if !(by <= math.MaxFloat64) {
-			x.end.Kind, x.reach = Endless, math.Inf(1)
+			x.end.Kind, x.at = Endless, math.Inf(int(direction))
 			return x, nil
 		}
 		w.advance(by)
@@ -51,9 +51,29 @@ func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent
 	return x, &StatusError{"following a bound", NumericalTrouble}
 }
 
+// present returns where the moving bound is, the lower one for BothSides.
+func (w *walk) present(of SideOf) float64 {
+	v := of.Index
+	if !of.Column {
+		v += w.e.n
+	}
+	if of.Side == UpperSide {
+		return w.inUnits(v, w.e.trueUp[v])
+	}
+	return w.inUnits(v, w.e.trueLow[v])
+}
+
+// inUnits takes a value of variable v to the units of the problem.
+func (w *walk) inUnits(v int, value float64) float64 {
+	if v < w.base.n {
+		return value * w.t.s.col[v]
+	}
+	return value / w.t.s.row[v-w.base.n]
+}
+
 // atOnce answers from the base alone where that is certain: no bound that is reached is left behind, and at the next one the pivot
 // raises the dual objective, so that the slope does change there.
-func (w *walk) atOnce() (extent, bool) {
+func (w *walk) atOnce(of SideOf, direction float64) (extent, bool) {
 	e, x := w.base, extent{}
 	for _, v := range w.moved {
 		if w.lowerRate[v] != w.upperRate[v] && reachedBound(e.upper[v]-e.lower[v], e.lower[v]) {
@@ -66,21 +86,24 @@ func (w *walk) atOnce() (extent, bool) {
 	}
 	x.slope = w.toUnits(x.scaled)
 	by, p, speed := w.step(e)
-	x.reach, x.end = by/w.unit, End{SlopeChanges, w.last}
+	x.at, x.end = boundAt(w.t.p, of)+direction*by/w.unit, End{SlopeChanges, w.last}
 	if !(by <= math.MaxFloat64) {
-		x.reach, x.end = math.Inf(1), End{Kind: Endless}
+		x.at, x.end = math.Inf(int(direction)), End{Kind: Endless}
 		return x, true
 	}
 	if p < 0 {
 		x.end.Kind = InfeasibleBeyond
 		return x, true
 	}
-	direction := 1.0
+	if w.own(p) && w.last.Side == of.Side { // exact even when the bound comes from far away
+		x.at = w.inUnits(p, e.x[p]+by*w.rate[p])
+	}
+	towards := 1.0
 	if w.last.Side == UpperSide {
-		direction = -1
+		towards = -1
 	}
 	e.pivotRow(p)
-	e.gatherBreakpoints(direction)
+	e.gatherBreakpoints(towards)
 	if len(e.ratio) == 0 {
 		return x, false
 	}

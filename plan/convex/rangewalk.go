@@ -39,6 +39,7 @@ type walk struct {
 	before    []float64 // the rates before the last turn
 	top       float64   // largest rate
 	last      SideOf    // the bound reached last
+	hit       bool      // it was reached by a value, not by another bound
 }
 
 // newWalk starts from a solved session.
@@ -204,14 +205,14 @@ func (w *walk) named(v int, side Side) SideOf {
 // step returns how far theta may grow until a further bound is reached, and the variable that reaches it; -1 when its own other
 // bound stops a moving one. Ties go to the fastest.
 func (w *walk) step(e *engine) (by float64, p int, speed float64) {
-	by, p = math.Inf(1), -1
+	by, p, w.hit = math.Inf(1), -1, false
 	w.eachApproach(e, func(v int, side Side, bound, room, s float64) {
 		if reachedBound(room, bound) {
 			return
 		}
 		if at := room / s; at < by || (at == by && s > speed) {
 			by, p, speed = at, v, s
-			w.last = w.named(v, side)
+			w.last, w.hit = w.named(v, side), true
 		}
 	})
 	for _, v := range w.moved {
@@ -219,19 +220,20 @@ func (w *walk) step(e *engine) (by float64, p int, speed float64) {
 		if !(closing > 0) {
 			continue
 		}
-		if at := math.Max(0, e.upper[v]-e.lower[v]) / closing; at <= by {
+		if at := math.Max(0, e.upper[v]-e.lower[v]) / closing; at < by {
 			by, p, speed = at, -1, closing
 			side := UpperSide
 			if w.upperRate[v] != 0 {
 				side = LowerSide
 			}
-			w.last = w.named(v, side)
+			w.last, w.hit = w.named(v, side), false
 		}
 	}
 	return by, p, speed
 }
 
-// advance moves the bounds and the values.
+// advance moves the bounds and the values. A bound that was met by the value of its own variable takes that value, which it may have
+// come to from far away.
 func (w *walk) advance(by float64) {
 	e := w.e
 	w.theta += by
@@ -239,17 +241,31 @@ func (w *walk) advance(by float64) {
 		e.x[v] += by * r
 	}
 	for _, v := range w.moved {
-		e.trueLow[v] = w.base.trueLow[v] + w.theta*w.lowerRate[v]
-		e.trueUp[v] = w.base.trueUp[v] + w.theta*w.upperRate[v]
+		e.trueLow[v] += by * w.lowerRate[v]
+		e.trueUp[v] += by * w.upperRate[v]
+		if w.own(v) && w.last.Side == LowerSide && finite(e.trueLow[v]) {
+			e.trueLow[v] = e.x[v]
+		}
+		if w.own(v) && w.last.Side == UpperSide && finite(e.trueUp[v]) {
+			e.trueUp[v] = e.x[v]
+		}
 		if e.trueLow[v] > e.trueUp[v] {
-			// rounding where the two meet
-			e.trueUp[v] = e.trueLow[v]
+			e.trueUp[v] = e.trueLow[v] // rounding where the two meet
 		}
 		e.lower[v], e.upper[v] = e.trueLow[v], e.trueUp[v]
 		if e.place[v] != Basic {
 			e.x[v] = e.rest(v)
 		}
 	}
+}
+
+// own tells that the bound reached last is a moving one of variable v, met by its value.
+func (w *walk) own(v int) bool {
+	rate := w.lowerRate[v]
+	if w.last.Side == UpperSide {
+		rate = w.upperRate[v]
+	}
+	return w.hit && rate != 0 && w.last == w.named(v, w.last.Side)
 }
 
 // differ tells that two slopes of the scaled problem are not the same.
