@@ -19,11 +19,13 @@
 // Where a row is not linear (the worst place beneath a wetland moves as rates change; the level in a bore falls by C Q|Q| besides) its change is convex in the rates; tangents
 // taken at re-solved plans are kept as cuts and the loop ends (Kelley 1960, J. SIAM 8).
 //
+// Every limit's price is given to both sides, with the range over which it holds and what comes then, from the optimum itself (package
+// convex). Of plans as good the one nearest to the present rates is taken.
+//
 // Symbols, units, signs: Q rate [m³/d], pumping positive; change = value without pumping - value, so that pumping makes it larger;
 // headroom = limit - quantity in the limit's own direction; shadow price = change of the aim per unit of the limit.
 //
-// Not done: operating states other than the default one (listed as not assessed); wells that are off or above a least rate; left
-// and right prices and their ranges; a choice among plans as good.
+// Not done: operating states other than the default one (listed as not assessed); wells that are off or above a least rate.
 //
 // Sources: Maddock 1972 (Water Resources Research 8) for the response matrix; Kelley 1960 (J. SIAM 8) for cuts; Mangasarian 1979
 // (Linear Algebra and its Applications 25) for other plans as good.

@@ -92,13 +92,13 @@ func TestSentences(t *testing.T) {
 		phrase string
 	}{
 		{wells.PointLevel, 0.001, wells.Limit{Value: 0.3}, 180, "Holds with 0.12 m to spare (40 % of the limit)."},
-		{wells.PointLevel, 0.001, wells.Limit{Value: 0.3}, 900, "Binds. A contributes 100 %. One more centimetre is worth 10 m³/d."},
-		{wells.PointLevel, 0.0001, wells.Limit{Value: 0.03}, 900, "Binds. A contributes 100 %. One more millimetre is worth 10 m³/d."},
-		{wells.PointLevel, 0.001, wells.Limit{Value: 9.7, Quantity: wells.Value, Sense: wells.AtLeast}, 900, "Binds. A contributes 100 %. One centimetre less is worth 10 m³/d."},
+		{wells.PointLevel, 0.001, wells.Limit{Value: 0.3}, 900, "Binds. A contributes 100 %. One more centimetre is worth 10 m³/d, up to 60 cm more; then A runs at its largest rate."},
+		{wells.PointLevel, 0.0001, wells.Limit{Value: 0.03}, 900, "Binds. A contributes 100 %. One more millimetre is worth 10 m³/d, up to 60 mm more; then A runs at its largest rate."},
+		{wells.PointLevel, 0.001, wells.Limit{Value: 9.7, Quantity: wells.Value, Sense: wells.AtLeast}, 900, "Binds. A contributes 100 %. One centimetre less is worth 10 m³/d, up to 60 cm less; then A runs at its largest rate."},
 		{wells.PointLevel, 0.001, wells.Limit{Value: 9.7, Quantity: wells.Value, Sense: wells.AtLeast}, 180, "Holds with 0.12 m to spare (40 % of the room)."},
-		{wells.SpringFlow, 0.5, wells.Limit{Value: 300}, 900, "Binds. A contributes 100 %. One more m³/d is worth 2.0 m³/d."},
-		{wells.SpringFlow, 0.5, wells.Limit{Value: 345.6, Entered: "4 L/s"}, 900, "Binds. A contributes 100 %. One more L/s is worth 173 m³/d."},
-		{wells.SalineFront, 1e-6, wells.Limit{Value: 0.0004}, 900, "Binds. A contributes 100 %. One more step of 0.0001 is worth 100 m³/d."},
+		{wells.SpringFlow, 0.5, wells.Limit{Value: 300}, 900, "Binds. A contributes 100 %. One more m³/d is worth 2.0 m³/d, up to 150 m³/d more; then A runs at its largest rate."},
+		{wells.SpringFlow, 0.5, wells.Limit{Value: 345.6, Entered: "4 L/s"}, 900, "Binds. A contributes 100 %. One more L/s is worth 173 m³/d, up to 1.2 L/s more; then A runs at its largest rate."},
+		{wells.SalineFront, 1e-6, wells.Limit{Value: 0.0004}, 900, "Binds. A contributes 100 %. One more step of 0.0001 is worth 100 m³/d, up to 5.0 steps more; then A runs at its largest rate."},
 		{wells.SpringFlow, 0.5, wells.Limit{Value: 0.1, Quantity: wells.ShareOfBase}, 50, "Holds with 7.5 % of the undisturbed value to spare (75 % of the limit)."},
 	} {
 		base := map[wells.Kind]float64{wells.PointLevel: 10, wells.SpringFlow: 1000, wells.SalineFront: 0.001}[c.kind]

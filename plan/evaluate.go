@@ -52,7 +52,7 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 		resolved = nil
 	}
 	r := &Report{Schema: SchemaName, Version: SchemaVersion, Aim: string(s.Aim), Status: status, ModelValid: true, State: s.state,
-		Period: "steady", TotalRate: s.total(rates), Demand: s.demand, NotUnique: p.notUnique, DemandPrice: p.demandPrice}
+		Period: "steady", TotalRate: s.total(rates), Demand: s.demand, NotUnique: p.notUnique, DemandPrice: p.demandPrice, DemandRange: p.demandRange}
 	if r.Wells, err = p.wellResults(ctx, rates, resolved); err != nil {
 		return nil, err
 	}

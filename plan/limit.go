@@ -37,6 +37,8 @@ type bound struct {
 	grow     float64 // change of size when the limit is loosened by one unit of the change: -1, 0, 1
 	cuts     []tangent
 	price    float64 // change of the aim per unit by which the limit is loosened
+
+	priceRange *PriceRange // nil when not known
 }
 
 // slack is how much further the change may go before the limit with its reserve, and with a share t kept free, is reached.

@@ -82,7 +82,7 @@ func TestHeadroomIgnoresReserve(t *testing.T) {
 	if l.Unit != "1" {
 		t.Errorf("unit %q", l.Unit)
 	}
-	want := "Binds with its reserve of 25 % kept back. A contributes 67 %, B 33 %. One more per cent of the undisturbed value is worth 15 m³/d."
+	want := "Binds with its reserve of 25 % kept back. A contributes 67 %, B 33 %. One more per cent of the undisturbed value is worth 15 m³/d, up to 53 per cent more; then A runs at its largest rate."
 	if l.Sentence != want {
 		t.Errorf("sentence %q, want %q", l.Sentence, want)
 	}

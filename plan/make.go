@@ -128,7 +128,11 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			return p.fail(ctx, fmt.Sprintf("the programme with %d rows and %d columns ended as %s", g.problem.Rows(), g.problem.Columns(), outcome(sol, err)))
 		}
 		basis = sol.Basis
-		rates := p.rates(sol.X)
+		shown, err := p.nearest(ctx, g, sol)
+		if err != nil {
+			return nil, err
+		}
+		rates := p.rates(shown.X)
 		p.readPrices(g, sol)
 		if _, err := p.oracle.linearise(ctx, rates); err != nil {
 			return nil, err
@@ -149,7 +153,7 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			o.Progress(Progress{Round: round, Total: p.setup.total(rates), Cuts: cuts})
 		}
 		if cuts == 0 {
-			return p.finish(ctx, g, sol, rates)
+			return p.finish(ctx, g, sol, shown, rates)
 		}
 		if round == o.rounds() {
 			report, err := p.assemble(ctx, rates, StatusNotConverged)

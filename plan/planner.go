@@ -21,6 +21,10 @@ type planner struct {
 	minHolds         []bool    // the lower bound holds the rate rather than the upper
 	demandPrice      *float64
 	notUnique        bool
+	tieChosen        bool     // of plans as good the one nearest to the present rates was taken
+	trading          []string // ids of wells whose rates differ in another plan as good
+	demandRange      *PriceRange
+	wellRange        []*PriceRange // nil when not known
 	iterations       int
 	certificate      *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
 	conflictVerified bool                // the irreducible set was proven afresh, member by member

@@ -44,7 +44,7 @@ func TestCanalStripMostYield(t *testing.T) {
 	if r.Wells[1].AtBound != "min" || r.NotUnique {
 		t.Errorf("W2 at bound %q, other plans as good %v", r.Wells[1].AtBound, r.NotUnique)
 	}
-	want := "Binds. W1 contributes 66 %, W3 34 %. One more centimetre is worth 30 m³/d."
+	want := "Binds. W1 contributes 66 %, W3 34 %. One more centimetre is worth 30 m³/d, up to 16 cm more; then W3 stands still."
 	if l1.Sentence != want {
 		t.Errorf("sentence %q, want %q", l1.Sentence, want)
 	}

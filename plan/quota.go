@@ -14,6 +14,8 @@ type quota struct {
 	limit   float64 // as a mean rate; hourly: as a running rate [m³/d]
 	source  string
 	price   float64
+
+	priceRange *PriceRange // nil when not known
 }
 
 // readQuotas turns licences and the brief's quotas into one list: licences first, each with its hour, day and year.
@@ -82,7 +84,7 @@ func (q *quota) sum(rates []float64) float64 {
 // result is the quota's line in the report.
 func (s *setup) quotaResult(q *quota, rates []float64) QuotaResult {
 	r := QuotaResult{Name: q.name, Holder: q.holder, Basis: q.basis, Limit: q.limit, Entered: q.entered, Sum: q.sum(rates),
-		ShadowPrice: tidy(q.price), Source: q.source, Wells: make([]string, len(q.wells))}
+		ShadowPrice: tidy(q.price), Range: q.priceRange, Source: q.source, Wells: make([]string, len(q.wells))}
 	for k, i := range q.wells {
 		r.Wells[k] = s.Wells[i].ID
 	}

@@ -159,7 +159,7 @@ func (p *planner) limitResult(ctx context.Context, k int, rates []float64) (Limi
 	}
 	r.Passed = !(r.Headroom*b.unit >= -near)
 	r.Binds = !r.Passed && b.slack(full, p.share) <= near && b.slack(full, 0) >= -near
-	r.ShadowPrice = tidy(b.price)
+	r.ShadowPrice, r.Range = tidy(b.price), b.priceRange
 	r.ChangeRoom = tidy(b.allowed())
 	var byRecharge []string
 	if !r.Passed {

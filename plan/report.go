@@ -32,6 +32,8 @@ type Report struct {
 	NotUnique   bool     `json:"other_plans_as_good"`
 	DemandPrice *float64 `json:"demand_shadow_price"` // change of the aim per m³/d of demand; as it is, so mostly negative
 
+	DemandRange *PriceRange `json:"demand_price_range"`
+
 	Wells         []WellResult     `json:"wells"`
 	Receptors     []ReceptorResult `json:"receptors"`
 	Sensitivities Table            `json:"sensitivities"` // receptor unit per m³/d: rows receptors, columns wells
@@ -91,6 +93,9 @@ type WellResult struct {
 	AquiferTop       *float64  `json:"aquifer_top_m"`
 	DrawdownByWell   []float64 `json:"drawdown_per_rate_by_well_d_per_m2"` // at this well's node: one a well, the node's own included
 	Source           string    `json:"source"`
+
+	RateRange  *PriceRange `json:"rate_price_range"` // of the bound that holds the rate; null where none does
+	LevelRange *PriceRange `json:"level_price_range"`
 }
 
 // ReceptorResult is a receptor's line.
@@ -145,6 +150,8 @@ type LimitResult struct {
 	Date        string   `json:"date"`
 	Sentence    string   `json:"sentence"` // 'Binds. W4 contributes 38 %. One more centimetre is worth 27 m³/d.'
 	ResultState string   `json:"assessed"` // 'yes', or why not
+
+	Range *PriceRange `json:"price_range"` // null when nothing was optimised
 }
 
 // Table is a matrix with named rows and columns. Rows are the receptors that have a response, in the order of the receptors.
@@ -168,6 +175,21 @@ type QuotaResult struct {
 	Binds       bool     `json:"binds"`
 	ShadowPrice float64  `json:"shadow_price"`
 	Source      string   `json:"source"`
+
+	Range *PriceRange `json:"price_range"` // values of the limit as a mean rate; per hour: as a running rate
+}
+
+// PriceRange is what a limit is worth to both sides, and how far. Prices are changes of the aim per unit by which the limit is
+// loosened: Tighter what the last unit is worth, Looser what one more is worth. The two differ where more limits meet at the plan
+// than fix it. With most-headroom a price moves along with the limit; the range is then that over which the same limits hold the plan.
+type PriceRange struct {
+	Tighter     *float64 `json:"tighter_price"` // null: no plan keeps a tighter limit
+	TighterTo   *float64 `json:"tighter_to"`    // value of the limit to which Tighter holds; null: for ever
+	TighterThen string   `json:"tighter_then"`  // what comes there: 'the limit L2 at Fen binds'
+	Looser      *float64 `json:"looser_price"`  // null: nothing can be loosened
+	LooserTo    *float64 `json:"looser_to"`     // null: for ever
+	LooserThen  string   `json:"looser_then"`
+	HoldsFor    string   `json:"holds_for"` // 'the tangents of this plan' where a row of the programme is not linear; empty: exact
 }
 
 // Capture is one source's share of the pumped water.

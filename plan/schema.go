@@ -31,6 +31,10 @@ var unitSuffixes = []struct{ suffix, unit string }{
 var unitByContext = map[string]string{
 	"shadow_price":          "change of the aim (m³/d, or share of headroom) per unit by which the limit or bound is loosened",
 	"demand_shadow_price":   "change of the aim (m³/d, or share of headroom) per m³/d of demand",
+	"tighter_price":         "change of the aim (m³/d, or share of headroom) per unit of the limit",
+	"looser_price":          "change of the aim (m³/d, or share of headroom) per unit of the limit",
+	"tighter_to":            "value of the limit, in its unit",
+	"looser_to":             "value of the limit, in its unit",
 	"value_no_pumping":      "in unit",
 	"value_others_recent":   "in unit",
 	"value_others_licensed": "in unit",

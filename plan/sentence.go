@@ -15,7 +15,7 @@ const mostContributors = 3
 
 // sentence says in words how a limit stands.
 //
-//	Binds. W4 contributes 38 %. One more centimetre is worth 27 m³/d.
+//	Binds. W4 contributes 38 %. One more centimetre is worth 27 m³/d, up to 4.0 cm more; then the limit L2 at Fen binds.
 //	Holds with 0.12 m to spare (40 % of the limit).
 //	Passed by 0.03 m. W4 contributes 38 %.
 func (p *planner) sentence(b *bound, r *LimitResult, contributions []float64, byRecharge []string) string {
@@ -59,38 +59,6 @@ func limitAmount(r *LimitResult, v float64) string {
 		return percentText(v) + " of the undisturbed value"
 	}
 	return amountText(v, r.Unit)
-}
-
-// worth is the part of a sentence about the shadow price; empty when nothing was optimised.
-func (p *planner) worth(b *bound, r *LimitResult, l wells.Limit) string {
-	if !p.priced {
-		return ""
-	}
-	step, name := 1.0, "m³/d"
-	switch {
-	case l.Quantity == wells.ShareOfBase:
-		step, name = 0.01, "per cent of the undisturbed value"
-	case r.Unit == "m" && b.size > 0 && b.size < 0.05:
-		step, name = 0.001, "millimetre"
-	case r.Unit == "m":
-		step, name = 0.01, "centimetre"
-	case r.Unit == "m3/d" && strings.Contains(l.Entered, "L/s"):
-		step, name = 86.4, "L/s"
-	case r.Unit == "1":
-		step, name = 0.0001, "step of 0.0001"
-	}
-	gain := b.price * step
-	if !(gain > 0) {
-		return "A looser limit alone would bring nothing."
-	}
-	text := flowText(gain)
-	if p.setup.Aim == MostHeadroom {
-		text = percentText(gain) + " of headroom"
-	}
-	if l.Sense == wells.AtLeast {
-		return "One " + name + " less is worth " + text + "."
-	}
-	return "One more " + name + " is worth " + text + "."
 }
 
 // contributors names the wells that drive a change, the largest first, with their parts of what the pumping wells cause.

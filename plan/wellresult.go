@@ -30,6 +30,9 @@ func (p *planner) wellResults(ctx context.Context, rates []float64, resolved *li
 		if p.wellPrice != nil {
 			r.ShadowPrice = tidy(p.wellPrice[i])
 		}
+		if p.wellRange != nil && r.AtBound != "" {
+			r.RateRange = p.wellRange[i]
+		}
 		known, err := p.levels(ctx, i, rates, resolved, &r)
 		if err != nil {
 			return nil, err
@@ -77,7 +80,7 @@ func (p *planner) levels(ctx context.Context, i int, rates []float64, resolved *
 		r.LevelMargin = &margin
 	}
 	if k := p.boundOfWell[i]; k >= 0 {
-		r.LevelShadowPrice = tidy(p.bounds[k].price)
+		r.LevelShadowPrice, r.LevelRange = tidy(p.bounds[k].price), p.bounds[k].priceRange
 	}
 	return known, nil
 }
