@@ -7,8 +7,10 @@ type Aim string
 
 // The aims.
 const (
-	MostYield    Aim = "most-yield"
-	MostHeadroom Aim = "most-headroom"
+	MostYield         Aim = "most-yield"
+	MostHeadroom      Aim = "most-headroom"
+	LeastEnergy       Aim = "least-energy"        // least pumping energy of the decided wells for the demand
+	ClosestToRequests Aim = "closest-to-requests" // least sum of ((rate - requested)/largest rate)²
 )
 
 // Quota bounds the sum of pumped rates over a group of wells.
@@ -31,6 +33,16 @@ type Brief struct {
 	Licences  []wells.Licence
 	States    []wells.OperatingState
 	WellTerms []WellTerm // one a well, in the order of Wells
+
+	AtMostRunning *int        // how many of the decided wells may pump at once; nil: any number
+	Together      []WellGroup // wells that run together or not at all
+	Exclude       []WellGroup // of each group at most one well runs
+}
+
+// WellGroup is a group of wells that a rule about running is about.
+type WellGroup struct {
+	Wells  []string
+	Source string
 }
 
 // WellTerm is what turns a head at a well's node into a level in the bore without losses.

@@ -160,15 +160,13 @@ func (p *planner) checkCertificate(add func(name, result, detail string)) {
 	const name = "Plan is the best one: limits, prices and gap recomputed"
 	c := p.certificate
 	switch {
+	case c == nil && p.search.none:
+		p.checkNone(add)
 	case c == nil:
 		add(name, notDone, "nothing was optimised")
 	case c.Status == convex.Infeasible && c.Accepted:
 		add("No rates keep every limit: proof recomputed", pass, fmt.Sprintf("margin %.2g of its terms", c.ProofMargin))
-		if p.conflictVerified {
-			add("Any one member of the conflict left out, the others can be kept", pass, "seen for each member")
-		} else {
-			add("Any one member of the conflict left out, the others can be kept", notDone, "rounding left it open")
-		}
+		p.checkMembers(add)
 	case c.Accepted:
 		add(name, pass, fmt.Sprintf("violation %.2g, wrong prices %.2g, gap %.2g, each as a share of its terms", c.PrimalViolationScaled, c.DualViolationScaled, c.Gap))
 	default:
@@ -204,6 +202,7 @@ func (p *planner) checkRanges(r *Report, rates []float64, verdict func(string, [
 	for i, w := range s.Wells {
 		near := rateTolerance * s.rateScale(i)
 		switch {
+		case s.switched(i) && rates[i] == 0:
 		case s.column[i] >= 0 && !(rates[i] >= w.Min-near && rates[i] <= w.Max+near):
 			outside = append(outside, fmt.Sprintf("well %s at %s is outside its range from %s to %s", w.ID, flowText(rates[i]), flowText(w.Min), flowText(w.Max)))
 		case (w.Outage || w.Mode == wells.Off) && rates[i] != 0:
@@ -211,6 +210,7 @@ func (p *planner) checkRanges(r *Report, rates []float64, verdict func(string, [
 		}
 	}
 	verdict("Rates are within the wells' ranges", outside, fmt.Sprintf("%d wells up for decision", len(s.decided)))
+	p.checkRunning(rates, verdict)
 	verdict("Wells out of service stand still", running, "none runs")
 }
 

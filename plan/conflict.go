@@ -33,6 +33,9 @@ type member struct {
 	excess   int     // for a row that is not linear: the column that stands for what passes the limit
 	end      bool    // an end of a well's range
 	share    bool    // a share of the undisturbed value
+	runs     int     // for the lowest level in a well that may stand still: the column that says that it runs; 0: none
+	free     float64 // by how much the row may be passed while the well stands still
+	wells    int     // above zero: a rule about so many running wells, which gives way by whole wells
 }
 
 // explain writes the report of a brief that no rates can meet: the table at present pumping, and why.
@@ -50,8 +53,11 @@ func (p *planner) explain(ctx context.Context) (*Report, error) {
 		return nil, fmt.Errorf("plan: stopped while explaining a conflict: %w", ctx.Err())
 	}
 	c := convex.Certify(g.problem, sol)
-	p.certificate = &c
-	if sol.Status != convex.Infeasible || !c.Accepted {
+	if sol.Status == convex.Optimal && p.setup.switches() {
+		if err := p.proveNone(ctx, g); err != nil {
+			return nil, err
+		}
+	} else if p.certificate = &c; sol.Status != convex.Infeasible || !c.Accepted {
 		return p.fail(ctx, "the proof that no rates keep every limit did not pass its check: "+sol.Status.String()+" "+c.Reason)
 	}
 	conflict, err := p.conflict(ctx)
@@ -132,7 +138,11 @@ func (p *planner) conflict(ctx context.Context) (*Conflict, error) {
 
 // irreducible tells which members form a set that cannot be kept, while it can once any one of them is left out. Ends of ranges
 // are tried first, so that limits are named rather than pumps where there is a choice.
-func (p *planner) irreducible(ctx context.Context, problem *convex.Problem, members []member) ([]bool, error) {
+func (p *planner) irreducible(ctx context.Context, mixed *convex.MixedProblem, members []member) ([]bool, error) {
+	if len(mixed.Integer) > 0 {
+		return p.irreducibleRunning(ctx, mixed, members)
+	}
+	problem := mixed.Problem
 	memberOfRow := map[int]int{}
 	var among []int
 	for _, ends := range []bool{true, false} {
@@ -180,6 +190,9 @@ func (p *planner) proofSet(ctx context.Context, problem *convex.Problem, members
 
 // amount writes a relaxation in the member's unit.
 func (m *member) amount(by float64) string {
+	if m.wells > 0 {
+		return fmt.Sprintf("%.0f %s", by, plural(int(by+0.5), "well", "wells"))
+	}
 	if m.share {
 		return percentText(by) + " of it"
 	}

@@ -81,17 +81,22 @@ func TestExistingUsersAlone(t *testing.T) {
 	}
 }
 
-// A least rate against a hard limit: both are in the set, and since a hard limit is not relaxed, the least rate is.
+// A hard limit is not relaxed: a well with a least rate stands still instead, and a demand gives way.
 func TestHardLimitAgainstLeastRate(t *testing.T) {
 	s := newSite(MostYield, decidedWell("W3", 200, 500))
 	s.receptor("R", wells.PointLevel, 10, 0.001)
 	s.limit("Z", "R", 0)
+	r := s.plan(t)
+	if r.Status != StatusOptimal || r.TotalRate != 0 || r.Switching == nil || len(r.Switching.StandStill) != 1 {
+		t.Fatalf("%s, total %v, %+v", r.Status, r.TotalRate, r.Switching)
+	}
+	s.brief.Demand = number(200)
 	c := s.plan(t).Conflict
-	if len(c.Members) != 2 || len(c.Relaxation) != 1 || c.Relaxation[0].Limit != "W3 at least 200 m³/d" {
+	if len(c.Members) != 2 || len(c.Relaxation) != 1 || c.Relaxation[0].Limit != "required total 200 m³/d" {
 		t.Fatalf("%+v", c)
 	}
-	exact(t, "least rate lower by", c.Relaxation[0].By, 200)
-	exact(t, "hard limit alone", *c.Members[0].Alone, 0.2)
+	exact(t, "demand lower by", c.Relaxation[0].By, 200)
+	exact(t, "hard limit alone", *c.Members[1].Alone, 0.2)
 	// only the hard limit can give way
 	s = newSite(MostYield, decidedWell("W3", 0, 500), fixedWell("B", 100))
 	s.receptor("R", wells.PointLevel, 10, 0.001, 0.001)
@@ -154,7 +159,7 @@ func (s *site) keepOnly(set map[string]bool, without string) *site {
 	}
 	out.brief.Wells = append([]wells.Well(nil), s.brief.Wells...)
 	for i, w := range s.brief.Wells {
-		if !holds(w.ID + " at least " + flowText(w.Min)) {
+		if !holds(w.ID + " at least " + flowText(w.Min) + " when it runs") {
 			out.brief.Wells[i].Min = 0
 		}
 		if !holds(w.ID + " at most " + flowText(w.Max)) {
@@ -188,7 +193,7 @@ func (s *site) relaxed(by []ConflictMember, factor float64) *site {
 	}
 	out.brief.Wells = append([]wells.Well(nil), s.brief.Wells...)
 	for i, w := range s.brief.Wells {
-		out.brief.Wells[i].Min -= amount(w.ID + " at least " + flowText(w.Min))
+		out.brief.Wells[i].Min -= amount(w.ID + " at least " + flowText(w.Min) + " when it runs")
 		out.brief.Wells[i].Max += amount(w.ID + " at most " + flowText(w.Max))
 	}
 	out.brief.Demand = number(*s.brief.Demand - amount("required total "+flowText(*s.brief.Demand)))

@@ -12,7 +12,7 @@ import (
 // conflictProgramme writes what must be kept as one row a member, so that each can be left out or relaxed by itself: ends of
 // ranges become rows, so do the signs of the rates, which always hold; and the cuts of a row that is not linear bound a column of their own that stands for the row's change, which
 // one row then limits.
-func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
+func (p *planner) conflictProgramme() (*convex.MixedProblem, []member, error) {
 	s := p.setup
 	g, err := p.build(false)
 	if err != nil {
@@ -29,6 +29,7 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 			columns = append(columns, convex.Column{Name: "excess", Lower: math.Inf(-1), Upper: math.Inf(1)})
 		}
 	}
+	columns, running := p.addRunning(columns)
 	problem, err := convex.NewProblem(convex.Minimise, columns)
 	if err != nil {
 		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
@@ -48,6 +49,16 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 	for r, o := range g.owners {
 		row := g.problem.Row(r)
 		m := p.memberOf(o)
+		if o.kind == ofBound {
+			if i := p.idleBore(p.bounds[o.index]); i >= 0 && running.indicator[i] >= 0 {
+				extended := make([]float64, len(columns))
+				copy(extended, row.Coefficients)
+				big := farRate * p.largestPass(g, row)
+				extended[running.indicator[i]] = big
+				row.Coefficients, row.Upper = extended, row.Upper+big
+				m.runs, m.free = running.indicator[i], big
+			}
+		}
 		column, cut := stands[o]
 		if !cut {
 			add(&m, m.words, row.Lower, row.Upper, func(a []float64) { copy(a, row.Coefficients) })
@@ -63,15 +74,16 @@ func (p *planner) conflictProgramme() (*convex.Problem, []member, error) {
 		})
 		members[memberAt[o]].excess = column
 	}
-	p.addEnds(add)
+	p.addEnds(running, add)
+	p.addRunningRows(running, add)
 	if err != nil {
 		return nil, nil, fmt.Errorf("plan: the programme of the conflict: %w", err)
 	}
-	return problem, members, nil
+	return &convex.MixedProblem{Problem: problem, Integer: running.whole}, members, nil
 }
 
 // addEnds adds, for each decided well, the sign of its rate as a row that always holds and the ends of its range as members.
-func (p *planner) addEnds(add func(m *member, name string, lower, upper float64, set func(a []float64))) {
+func (p *planner) addEnds(running *runningColumns, add func(m *member, name string, lower, upper float64, set func(a []float64))) {
 	s := p.setup
 	for k, i := range s.decided {
 		lower, upper := 0.0, math.Inf(1)
@@ -82,7 +94,25 @@ func (p *planner) addEnds(add func(m *member, name string, lower, upper float64,
 			upper = 0
 		}
 		add(nil, "sign of "+s.Wells[i].ID, lower, upper, func(a []float64) { a[k] = 1 })
+		y := running.indicator[i]
+		if y >= 0 && s.Wells[i].Max > 0 {
+			add(nil, s.Wells[i].ID+" off or not", math.Inf(-1), 0, func(a []float64) { a[k], a[y] = 1, -running.far })
+		}
+		if y >= 0 && s.Wells[i].Min < 0 {
+			add(nil, s.Wells[i].ID+" off or not", 0, math.Inf(1), func(a []float64) { a[k], a[y] = 1, running.far })
+		}
 		for _, m := range rangeEnds(s.Wells[i]) {
+			if y >= 0 {
+				end, lower, upper := s.Wells[i].Min, 0.0, math.Inf(1)
+				if m.upper {
+					end, lower, upper = s.Wells[i].Max, math.Inf(-1), 0
+				}
+				if m.upper == (end < 0) {
+					m.words += " when it runs"
+				}
+				add(&m.member, m.words, lower, upper, func(a []float64) { a[k], a[y] = 1, -end })
+				continue
+			}
 			lower, upper := s.Wells[i].Min, math.Inf(1)
 			if m.upper {
 				lower, upper = math.Inf(-1), s.Wells[i].Max

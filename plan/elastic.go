@@ -13,20 +13,21 @@ import (
 // zero, and each solve starts where the last one ended. (convex.LeastRelaxation would answer for every row alone, when only those of
 // the set are wanted, and gives no rates at which rows that are not linear could be looked at.)
 type elastic struct {
-	problem *convex.Problem
+	problem *convex.MixedProblem
 	members []member
 	first   int   // the first column of relaxation
 	owner   []int // the member of each column of relaxation
 	basis   *convex.Basis
 }
 
-func newElastic(strict *convex.Problem, members []member) (*elastic, error) {
+func newElastic(strict *convex.MixedProblem, members []member) (*elastic, error) {
 	e := &elastic{members: members, first: strict.Columns()}
 	memberOfRow := map[int]int{}
 	for k, m := range members {
 		memberOfRow[m.row] = k
 	}
 	var columns []convex.Column
+	whole := append([]int(nil), strict.Integer...)
 	for j := 0; j < strict.Columns(); j++ {
 		columns = append(columns, strict.Column(j))
 	}
@@ -42,14 +43,18 @@ func newElastic(strict *convex.Problem, members []member) (*elastic, error) {
 			if finite(side.bound) {
 				effect[entry{i, len(columns)}] = side.way * members[k].effect
 				columns = append(columns, convex.Column{Name: "relaxation of " + members[k].words, Cost: 1, Upper: math.Inf(1)})
+				if members[k].wells > 0 {
+					whole = append(whole, len(columns)-1)
+				}
 				e.owner = append(e.owner, k)
 			}
 		}
 	}
-	var err error
-	if e.problem, err = convex.NewProblem(convex.Minimise, columns); err != nil {
+	problem, err := convex.NewProblem(convex.Minimise, columns)
+	if err != nil {
 		return nil, fmt.Errorf("plan: the programme of the relaxation: %w", err)
 	}
+	e.problem = &convex.MixedProblem{Problem: problem, Integer: whole}
 	for i := 0; i < strict.Rows(); i++ {
 		r := strict.Row(i)
 		a := make([]float64, len(columns))
@@ -72,6 +77,9 @@ func (e *elastic) relax(ctx context.Context, p *planner, takes func(k int) bool)
 		upper := 0.0
 		if takes(k) {
 			upper = math.Inf(1)
+			if n := e.members[k].wells; n > 0 {
+				upper = float64(n)
+			}
 		}
 		if err := e.problem.SetBounds(e.first+c, 0, upper); err != nil {
 			return nil, false, fmt.Errorf("plan: the programme of the relaxation: %w", err)
@@ -79,10 +87,7 @@ func (e *elastic) relax(ctx context.Context, p *planner, takes func(k int) bool)
 	}
 	shares = make([]float64, len(e.members))
 	for round := 1; ; round++ {
-		sol, err := convex.Solve(ctx, e.problem, convex.Options{Start: e.basis})
-		if err == nil && e.basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
-			sol, err = convex.Solve(ctx, e.problem, convex.Options{})
-		}
+		sol, err := e.solve(ctx)
 		switch {
 		case err != nil:
 			return nil, false, fmt.Errorf("plan: the programme of the relaxation: %w", err)
@@ -134,6 +139,9 @@ func (e *elastic) addCuts(ctx context.Context, p *planner, shares, x []float64) 
 		if err != nil {
 			return 0, ctx.Err()
 		}
+		if m.runs > 0 && x[m.runs] < 0.5 {
+			continue
+		}
 		if m.bound.slack(tan.at(counted), 0)+shares[k]*m.effect >= -relaxedTolerance*m.bound.scale(s, tan.slope) {
 			continue
 		}
@@ -142,10 +150,41 @@ func (e *elastic) addCuts(ctx context.Context, p *planner, shares, x []float64) 
 		a := make([]float64, e.problem.Columns())
 		copy(a, strict)
 		a[m.excess] = -1
+		if m.runs > 0 {
+			a[m.runs], standing = m.free, standing+m.free
+		}
 		if _, err := e.problem.AddRow(convex.Row{Name: "cut of " + m.words, Coefficients: a, Lower: math.Inf(-1), Upper: standing}); err != nil {
 			return 0, fmt.Errorf("plan: the programme of the relaxation: %w", err)
 		}
 		added++
 	}
 	return added, nil
+}
+
+// relaxationNodes bounds a search for the least relaxation; where it ends there, the best one found is shown.
+const relaxationNodes = 1000
+
+// solve runs the programme from the last basis; where wells may be off it is a search, and its end is told as that of a programme.
+func (e *elastic) solve(ctx context.Context) (*convex.Solution, error) {
+	if len(e.problem.Integer) > 0 {
+		mixed, err := convex.SolveMixed(ctx, e.problem, convex.MixedOptions{Gap: relaxedTolerance, NodeLimit: relaxationNodes})
+		if err != nil {
+			return nil, err
+		}
+		sol := &convex.Solution{Status: convex.Infeasible, X: mixed.X, Iterations: mixed.Pivots}
+		switch {
+		case ctx.Err() != nil:
+			sol.Status = convex.Interrupted
+		case mixed.X != nil:
+			sol.Status = convex.Optimal
+		case mixed.Status != convex.MixedInfeasible:
+			sol.Status = convex.NumericalTrouble
+		}
+		return sol, nil
+	}
+	sol, err := convex.Solve(ctx, e.problem.Problem, convex.Options{Start: e.basis})
+	if err == nil && e.basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
+		sol, err = convex.Solve(ctx, e.problem.Problem, convex.Options{})
+	}
+	return sol, err
 }

@@ -68,6 +68,9 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 	p.worstMargin(r)
 	p.audit(r, resolved)
 	p.check(r, rates, resolved)
+	if r.Switching = p.switchingResult(); r.Switching != nil {
+		s.cautions.addf("%s", r.Switching.Sentence)
+	}
 	r.Headline = p.headline(r)
 	r.Invalid, r.Cautions, r.Findings, r.NotAssessed = s.invalid, s.cautions, s.findings, s.notAssessed
 	r.ModelValid = len(r.Invalid) == 0
@@ -105,7 +108,7 @@ func (p *planner) worstMargin(r *Report) {
 		}
 	}
 	for i, k := range p.boundOfWell {
-		if k >= 0 && r.Wells[i].LevelMargin != nil && p.bounds[k].size > 0 {
+		if k >= 0 && r.Wells[i].LevelMargin != nil && p.bounds[k].size > 0 && !(r.Wells[i].Rate == 0 && s.switched(i)) {
 			take(tidy(*r.Wells[i].LevelMargin/p.bounds[k].size), s.levelWords(i))
 		}
 	}
@@ -120,6 +123,9 @@ func (p *planner) headline(r *Report) string {
 		if s.Aim == MostHeadroom {
 			text = "Rates that keep the largest share of every limit free at a total of " + flowText(r.TotalRate) + ": at least " +
 				percentText(p.share) + " beyond each reserve."
+			if p.share >= mostHeadroom {
+				text = "Rates for a total of " + flowText(r.TotalRate) + ": no limit that has a size concerns the wells that run."
+			}
 		}
 		if assessed, all := countAssessed(r); assessed < all {
 			text += fmt.Sprintf(" Of %d limits entered, %d are assessed.", all, assessed)

@@ -16,6 +16,9 @@ func (p *planner) finish(ctx context.Context, g *programme, vertex, sol *convex.
 	if !c.Accepted {
 		return p.fail(ctx, fmt.Sprintf("the solution did not pass its check: %s", c.Reason))
 	}
+	if err := p.proveRunning(ctx); err != nil {
+		return nil, err
+	}
 	if err := p.findRanges(ctx, g, vertex); err != nil {
 		return nil, err
 	}
@@ -38,6 +41,7 @@ func (p *planner) fail(ctx context.Context, reason string) (*Report, error) {
 
 // unprice forgets the prices of a programme whose rates are not shown.
 func (p *planner) unprice() {
+	p.runs = nil
 	p.priced, p.share, p.wellPrice, p.minHolds, p.demandPrice, p.notUnique = false, 0, nil, nil, nil, false
 	p.trading = nil
 	p.dropRanges()

@@ -2,6 +2,7 @@ package plan
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 
@@ -108,9 +109,16 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 		if err := ctx.Err(); err != nil {
 			return nil, fmt.Errorf("plan: stopped after %d rounds: %w", round-1, err)
 		}
-		g, err := p.build(true)
-		if err != nil {
+		g, err := p.buildRound(ctx)
+		switch {
+		case ctx.Err() != nil:
+			return nil, fmt.Errorf("plan: stopped after %d rounds: %w", round-1, ctx.Err())
+		case errors.Is(err, errUndecided):
+			return p.fail(ctx, err.Error())
+		case err != nil:
 			return nil, err
+		case g == nil:
+			return p.explain(ctx)
 		}
 		sol, err := convex.Solve(ctx, g.problem, convex.Options{Start: basis})
 		if err == nil && basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
@@ -133,6 +141,7 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			return nil, err
 		}
 		rates := p.rates(shown.X)
+		p.lastRates = rates
 		p.readPrices(g, sol)
 		if _, err := p.oracle.linearise(ctx, rates); err != nil {
 			return nil, err
@@ -177,7 +186,7 @@ func outcome(sol *convex.Solution, err error) string {
 func (p *planner) addCuts(ctx context.Context, rates []float64, start bool) (int, error) {
 	added := 0
 	for _, b := range p.bounds {
-		if b.linear || (!b.kept && !start) {
+		if b.linear || (!b.kept && !start) || (p.idle(b) && !start) {
 			continue
 		}
 		tan, counted, err := p.oracle.tangentOf(ctx, b, rates)

@@ -28,7 +28,13 @@ type planner struct {
 	iterations       int
 	certificate      *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
 	conflictVerified bool                // the irreducible set was proven afresh, member by member
-	local            bool                // a limit on a row that is not linear bounds it from below: the plan is locally best
+
+	outOfService []bool    // of each well: out of service beyond the brief; nil: none
+	runs         []bool    // of each well: it runs; nil: there is nothing to choose, or it is not chosen yet
+	lastRates    []float64 // of the last round, where a search may begin
+	search       search
+
+	local bool // a limit on a row that is not linear bounds it from below: the plan is locally best
 }
 
 // cut is one tangent of one bound's row.

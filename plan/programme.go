@@ -19,7 +19,8 @@ func (p *planner) build(withShare bool) (*programme, error) {
 	g := &programme{share: -1}
 	var columns []convex.Column
 	for _, i := range s.decided {
-		c := convex.Column{Name: s.Wells[i].ID, Lower: s.Wells[i].Min, Upper: s.Wells[i].Max}
+		c := convex.Column{Name: s.Wells[i].ID}
+		c.Lower, c.Upper = p.rangeOf(i)
 		if s.Aim == MostYield && s.isYield(i) {
 			c.Cost = 1
 		}
@@ -28,6 +29,9 @@ func (p *planner) build(withShare bool) (*programme, error) {
 	if s.Aim == MostHeadroom && withShare {
 		g.share = len(columns)
 		columns = append(columns, convex.Column{Name: "share of every limit kept free", Cost: 1, Lower: 0, Upper: math.Inf(1)})
+		if s.switches() {
+			columns[g.share].Upper = mostHeadroom // the only limits with a size may be levels of wells that stand still
+		}
 	}
 	var err error
 	if g.problem, err = convex.NewProblem(convex.Maximise, columns); err != nil {
@@ -100,6 +104,9 @@ func (p *planner) indexOf(b *bound) int {
 func (p *planner) addBound(g *programme, k int, tan tangent) error {
 	b := p.bounds[k]
 	row, upper := p.boundRow(b, tan)
+	if p.idle(b) {
+		upper = math.Inf(1)
+	}
 	a := g.coefficients()
 	copy(a, row)
 	if g.share >= 0 {
@@ -172,6 +179,8 @@ func (p *planner) rates(x []float64) []float64 {
 		w, near := s.Wells[i], rateTolerance*s.rateScale(i)
 		rates[i] = tidy(x[k])
 		switch {
+		case p.isOut(i) || p.runs != nil && !p.runs[i]:
+			rates[i] = 0
 		case math.Abs(x[k]-w.Min) <= near:
 			rates[i] = tidy(w.Min)
 		case math.Abs(x[k]-w.Max) <= near:
@@ -194,6 +203,9 @@ func (p *planner) readPrices(g *programme, sol *convex.Solution) {
 	for k, i := range s.decided {
 		p.wellPrice[i] = math.Abs(sol.ReducedCost[k])
 		p.minHolds[i] = sol.ReducedCost[k] < 0
+		if p.runs != nil && !p.runs[i] {
+			p.wellPrice[i], p.minHolds[i] = 0, false // a well that stands still cannot start with one unit
+		}
 	}
 	for _, b := range p.bounds {
 		b.price = 0

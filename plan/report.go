@@ -43,7 +43,8 @@ type Report struct {
 	CaptureWells  []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
 	Balances      []Balance        `json:"balances"`      // without pumping, and at the plan
 	NoFlow        []NoFlowStretch  `json:"no_flow_outline"`
-	Conflict      *Conflict        `json:"conflict"` // why no plan exists; null when there is one
+	Switching     *Switching       `json:"switching"` // which wells run; null when there was nothing to choose
+	Conflict      *Conflict        `json:"conflict"`  // why no plan exists; null when there is one
 	Audit         Audit            `json:"audit"`
 	Checks        []Check          `json:"checks"`
 	HandFormula   *HandFormula     `json:"hand_formula"`
@@ -224,6 +225,17 @@ type NoFlowStretch struct {
 	From     string  `json:"from"`
 	Length   float64 `json:"length_m"`
 	Drawdown float64 `json:"largest_drawdown_m"`
+}
+
+// Switching says which wells stand still and how sure that choice is.
+type Switching struct {
+	Sentence   string   `json:"sentence"`
+	StandStill []string `json:"stand_still"` // wells that could run and do not
+	Rules      []string `json:"rules"`       // about which wells run, in words
+	Proven     bool     `json:"proven"`      // no other choice is better by more than a ten-millionth of the aim
+	Recomputed bool     `json:"recomputed"`  // that was recomputed from the search tree and the data
+	Gap        float64  `json:"gap_share"`   // by which another choice may be better, as a share of the aim
+	Nodes      int      `json:"programmes"`  // linear programmes of the search
 }
 
 // Conflict explains why no plan exists.

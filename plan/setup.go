@@ -17,6 +17,7 @@ type setup struct {
 	column        []int     // column of each well; -1: none
 	standing      []float64 // rates of the wells that are not decided, zero for the decided ones [m³/d]
 	quotas        []quota
+	rules         []runningRule // which wells may run
 
 	findings    notes
 	cautions    notes
@@ -68,6 +69,10 @@ func newSetup(b Brief) (*setup, error) {
 			s.column[i] = len(s.decided)
 			s.decided = append(s.decided, i)
 		}
+	}
+	s.readRules(&faults)
+	if err := faults.err(); err != nil {
+		return nil, err
 	}
 	return s, nil
 }

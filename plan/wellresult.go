@@ -93,6 +93,9 @@ func (p *planner) atBound(i int, rate float64) string {
 	}
 	w := s.Wells[i]
 	near := rateTolerance * s.rateScale(i)
+	if rate == 0 && s.switched(i) {
+		return ""
+	}
 	atMin, atMax := math.Abs(rate-w.Min) <= near, math.Abs(rate-w.Max) <= near
 	switch {
 	case atMin && atMax && p.minHolds != nil && p.minHolds[i]:
@@ -110,7 +113,7 @@ func (p *planner) checkLevels(results []WellResult) (passed []string) {
 	s := p.setup
 	for i, r := range results {
 		k := p.boundOfWell[i]
-		if k < 0 || r.LevelMargin == nil {
+		if k < 0 || r.LevelMargin == nil || (r.Rate == 0 && s.switched(i)) {
 			continue
 		}
 		b := p.bounds[k]
