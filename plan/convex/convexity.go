@@ -14,9 +14,10 @@ const (
 	// convexityShift is added to the diagonal of a Hessian with unit diagonal before its definiteness is asked for: rounding of
 	// the entries and of the factorisation is far below, so that a semidefinite matrix passes.
 	convexityShift = 1e-11
-	// strictPivot is the pivot of the same factorisation above which the matrix counts as definite: unconstrained minima then keep
-	// seven digits.
-	strictPivot = 1e-9
+	// strictPivot is the pivot of the same factorisation above which the matrix counts as definite. The shift shows in the pivot of a
+	// singular matrix over the square of a component of its null vector, the smaller the more columns there are; this leaves room for
+	// 1e-4. Unconstrained minima of a definite matrix keep eight digits.
+	strictPivot = 1e-7
 	// CertifiedCurvature is the least curvature of the wrong sign, relative to the sum of the absolute terms of d'Hd, that counts
 	// as proof that a problem is not convex.
 	CertifiedCurvature = 1e-12

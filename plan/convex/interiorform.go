@@ -120,6 +120,13 @@ func buildForm(p *Problem, h *hessian, typical float64) *interiorForm {
 
 func (f *interiorForm) takeRows(at []int32, fixed []float64) {
 	p := f.p
+	entries := len(p.unit)
+	for _, v := range p.a {
+		if v != 0 {
+			entries++
+		}
+	}
+	f.a.col, f.a.val = make([]int32, 0, entries), make([]float64, 0, entries)
 	for i := range p.rowName {
 		if !finite(p.rowLower[i]) && !finite(p.rowUpper[i]) {
 			continue
@@ -147,6 +154,7 @@ func (f *interiorForm) takeHessian(h *hessian, at []int32, fixed []float64) {
 		}
 		return
 	}
+	f.h.col, f.h.val = make([]int32, 0, len(h.value)), make([]float64, 0, len(h.value))
 	for i := 0; i < h.n; i++ {
 		for k := h.start[i]; k < h.start[i+1]; k++ {
 			j, v := int(h.column[k]), h.value[k]*f.costScale

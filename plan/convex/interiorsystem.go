@@ -132,15 +132,19 @@ func largestOf(v []float64) float64 {
 	return most
 }
 
-// solve solves for b with refinement into v and returns the residual relative to the right-hand side.
+// solve solves for b with refinement into v and returns the residual relative to the right-hand side. Refinement goes on until each
+// of the two blocks is accurate by its own measure, since one of them is often larger by far.
 func (s *interiorSystem) solve(v, b []float64) float64 {
-	size := largestOf(b)
+	n := s.f.n
+	top, bottom := largestOf(b[:n]), largestOf(b[n:])
 	clear(v)
-	if size == 0 {
+	if top == 0 && bottom == 0 {
 		return 0
 	}
+	least := blockShare * math.Max(top, bottom)
+	top, bottom = math.Max(top, least), math.Max(bottom, least)
 	copy(s.residual, b)
-	last := math.Inf(1)
+	last, accuracy := math.Inf(1), math.Inf(1)
 	for pass := 0; ; pass++ {
 		copy(s.trial, s.residual)
 		s.q.solve(s.trial, s.work)
@@ -148,14 +152,20 @@ func (s *interiorSystem) solve(v, b []float64) float64 {
 			s.trial[i] += v[i]
 		}
 		s.apply(s.residual, b, s.trial)
-		now := largestOf(s.residual)
+		above, below := largestOf(s.residual[:n]), largestOf(s.residual[n:])
+		now := math.Max(above/top, below/bottom)
 		if !(now < last) {
-			return last / size
+			return accuracy
 		}
 		copy(v, s.trial)
-		if now <= systemAccurate*size || pass == systemRefinements || now > refinementGain*last {
-			return now / size
+		accuracy = math.Max(above, below) / math.Max(top, bottom)
+		if now <= systemAccurate || pass == systemRefinements || now > refinementGain*last {
+			return accuracy
 		}
 		last = now
 	}
 }
+
+// blockShare is the share of the larger block's right-hand side to which the smaller one is solved at most: the rounding of the
+// residual of the larger.
+const blockShare = 1e-10

@@ -38,6 +38,10 @@ func activeOptimum(ctx context.Context, p *Problem, h *hessian, o Options) *Solu
 		return nil
 	}
 	s := newActiveSet(f)
+	if s == nil && len(h.weight) > 0 && f.n <= denseFreeColumns {
+		f = buildForm(p, h.assembled(), typicalShares[0])
+		s = newActiveSet(f)
+	}
 	if s == nil {
 		return nil
 	}
