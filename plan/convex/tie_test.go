@@ -436,3 +436,31 @@ func TestNearestNearlyEqualLimits(t *testing.T) {
 		}
 	}
 }
+
+// TestNearestEveryPlan takes a flat objective, so that every feasible plan is an optimum, and asks for the one nearest to all caps:
+// many limits and bounds end up active.
+func TestNearestEveryPlan(t *testing.T) {
+	p := planningProblem(t, planningCase{wells: 300, limits: 40, sparse: true, seed: 1180})
+	target, scale := make([]float64, 300), make([]float64, 300)
+	for j := range p.columns {
+		p.columns[j].Cost = 0
+		target[j], scale[j] = p.columns[j].Upper, p.columns[j].Upper
+	}
+	tie := mustNearest(t, p, mustOptimal(t, p, Options{}), target, scale)
+	binding := 0
+	for i, pull := range tie.RowPull {
+		if pull > 0 || math.IsNaN(pull) {
+			t.Errorf("an upper limit pulls upwards: row %d, %v", i, pull)
+		}
+		if pull < 0 {
+			binding++
+			if !near(tie.Solution.RowValue[i], p.rowUpper[i], 1e-11) {
+				t.Errorf("row %d pulls and does not bind", i)
+			}
+		}
+	}
+	t.Logf("%d steps, %d limits bind", tie.Steps, binding)
+	if tie.Unique || binding < 5 {
+		t.Errorf("unique %v, %d limits bind", tie.Unique, binding)
+	}
+}
