@@ -126,6 +126,7 @@ func (p *planner) check(r *Report, rates []float64, resolved *lines) {
 		}
 	}
 	p.checkCertificate(add)
+	p.checkSymmetry(add)
 	var passed []string
 	assessed := 0
 	for _, rec := range r.Receptors {

@@ -65,6 +65,7 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 	if err := p.levelsByRecharge(ctx, rates, r.Wells); err != nil {
 		return nil, err
 	}
+	r.PumpingEnergy, r.Requests = p.totalEnergy(r), p.totalRequests(r)
 	p.worstMargin(r)
 	p.audit(r, resolved)
 	p.check(r, rates, resolved)
@@ -126,6 +127,12 @@ func (p *planner) headline(r *Report) string {
 			if p.share >= mostHeadroom {
 				text = "Rates for a total of " + flowText(r.TotalRate) + ": no limit that has a size concerns the wells that run."
 			}
+		}
+		switch s.Aim {
+		case LeastEnergy:
+			text = p.energyHeadline(r)
+		case ClosestToRequests:
+			text = requestHeadline(r)
 		}
 		if assessed, all := countAssessed(r); assessed < all {
 			text += fmt.Sprintf(" Of %d limits entered, %d are assessed.", all, assessed)

@@ -58,6 +58,9 @@ func Make(ctx context.Context, b Brief, m Model, o Options) (*Report, error) {
 	if _, err := p.oracle.linearise(ctx, start); err != nil {
 		return nil, err
 	}
+	if err := p.startCurved(ctx, start); err != nil {
+		return nil, err
+	}
 	if err := p.buildBounds(ctx); err != nil {
 		return nil, err
 	}
@@ -79,8 +82,12 @@ func (s *setup) checkAim() error {
 		if s.demand == nil {
 			faults.addf("the aim %s needs a demand", s.Aim)
 		}
+	case LeastEnergy:
+		s.checkEnergy(&faults)
+	case ClosestToRequests:
+		s.checkRequests(&faults)
 	default:
-		faults.addf("no aim %q; the aims are %s and %s", s.Aim, MostYield, MostHeadroom)
+		faults.addf("no aim %q; the aims are %s, %s, %s and %s", s.Aim, MostYield, MostHeadroom, LeastEnergy, ClosestToRequests)
 	}
 	if len(s.decided) == 0 {
 		faults.addf("no well is up for decision: all are fixed, off or out of service")
@@ -120,13 +127,7 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 		case g == nil:
 			return p.explain(ctx)
 		}
-		sol, err := convex.Solve(ctx, g.problem, convex.Options{Start: basis})
-		if err == nil && basis != nil && (sol.Status == convex.NumericalTrouble || sol.Status == convex.IterationLimit) {
-			sol, err = convex.Solve(ctx, g.problem, convex.Options{})
-		}
-		if sol != nil {
-			p.iterations += sol.Iterations
-		}
+		sol, err := p.solve(ctx, g, basis)
 		switch {
 		case ctx.Err() != nil:
 			return nil, fmt.Errorf("plan: stopped after %d rounds: %w", round-1, ctx.Err())
@@ -151,12 +152,17 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			return nil, err
 		}
 		if p.local {
-			moved, err := p.moveTangents(ctx, rates, sol.Objective-last)
+			moved, err := p.moveTangents(ctx, rates, p.aimValue-last)
 			if err != nil {
 				return nil, err
 			}
 			cuts += moved
-			last, basis = sol.Objective, nil
+			last, basis = p.aimValue, nil
+		}
+		if moved, err := p.refreshAim(ctx, rates, sol.X); err != nil {
+			return nil, err
+		} else if moved {
+			cuts++
 		}
 		if o.Progress != nil {
 			o.Progress(Progress{Round: round, Total: p.setup.total(rates), Cuts: cuts})
@@ -227,10 +233,13 @@ func (p *planner) moveTangents(ctx context.Context, rates []float64, gain float6
 	return moved, nil
 }
 
-// aimScale is what tolerances on the aim are relative to: 1 for a share, the largest total of the decided wells for a yield [m³/d].
+// aimScale is what tolerances on the aim are relative to: 1 for a share, its own value for a curved aim, the largest total of the decided wells for a yield [m³/d].
 func (p *planner) aimScale() float64 {
 	if p.setup.Aim == MostHeadroom {
 		return 1
+	}
+	if p.curved != nil {
+		return math.Abs(p.aimValue)
 	}
 	sum := 0.0
 	for _, i := range p.setup.decided {

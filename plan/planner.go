@@ -13,6 +13,10 @@ type planner struct {
 	boundOfLimit []int    // index into bounds; -1: not assessed
 	boundOfWell  []int    // index into bounds; -1: no lowest level
 
+	curved       curved          // the aim where it is not linear; nil for a linear one
+	aimValue     float64         // the largest value that the last programme reached; of a curved aim the negative of its least
+	requestParts [][]requestPart // by well: what keeps its rate from its request
+
 	cuts []cut // tangents of rows that are not linear, in the order in which they were added
 
 	priced           bool

@@ -106,7 +106,21 @@ func (p *planner) aimText(v float64) string {
 	if p.setup.Aim == MostHeadroom {
 		return percentText(v) + " of headroom"
 	}
+	switch p.setup.Aim {
+	case LeastEnergy:
+		return energyText(v)
+	case ClosestToRequests:
+		return plainNumber(v, 2, 0, 9) + " of the sum of squares"
+	}
 	return flowText(v)
+}
+
+// gainText says what loosening brings: an aim that is to be small is saved.
+func (p *planner) gainText(v float64) string {
+	if p.setup.Aim.makesSmall() {
+		return "saves " + p.aimText(v)
+	}
+	return "is worth " + p.aimText(v)
 }
 
 // worth is the part of a sentence about the shadow prices; empty when nothing was optimised.
@@ -135,15 +149,15 @@ func (p *planner) worth(b *bound, r *LimitResult, l wells.Limit) string {
 	case cannot && worthless:
 		return "A looser limit alone would bring nothing; a tighter one cannot be kept."
 	case cannot:
-		return more + " is worth " + p.aimText(gain) + far + "; a tighter limit cannot be kept."
+		return more + " " + p.gainText(gain) + far + "; a tighter limit cannot be kept."
 	case !(cost > 0) && worthless:
 		return "A looser limit alone would bring nothing."
 	case worthless:
 		return "Tightening by one " + st.name + " costs " + p.aimText(cost) + ", loosening alone brings nothing."
 	case p.aimText(gain) == p.aimText(cost):
-		return more + " is worth " + p.aimText(gain) + far + "."
+		return more + " " + p.gainText(gain) + far + "."
 	}
-	return "Tightening by one " + st.name + " costs " + p.aimText(cost) + ", loosening is worth " + p.aimText(gain) + far + "."
+	return "Tightening by one " + st.name + " costs " + p.aimText(cost) + ", loosening " + p.gainText(gain) + far + "."
 }
 
 // farWords says how far the price of loosening a limit holds and what comes then.

@@ -11,6 +11,7 @@ import (
 //
 //	most-yield      maximise  sum of pumped rates
 //	most-headroom   maximise  t                        with every limit of nonzero size kept with a share t of its size free
+//	least-energy, closest-to-requests                  no linear aim: solve adds the quadratic one
 //
 // subject to limits, levels, quotas, demand and the wells' ranges. withShare false leaves t and the aim out of most-headroom; the
 // limits are then those of a plan with no headroom at all, which is what a conflict is about.
@@ -48,7 +49,7 @@ func (p *planner) build(withShare bool) (*programme, error) {
 			}
 		}
 		upper := math.Inf(1)
-		if s.Aim == MostHeadroom {
+		if s.Aim == MostHeadroom || s.Aim == LeastEnergy {
 			upper = *s.demand
 		}
 		if err := g.add(owner{kind: ofDemand}, "required total", a, *s.demand, upper); err != nil {
@@ -216,6 +217,9 @@ func (p *planner) readPrices(g *programme, sol *convex.Solution) {
 		case ofQuota:
 			s.quotas[o.index].price = price
 		case ofDemand:
+			if s.Aim.makesSmall() {
+				price = -price // what one more m³/d costs
+			}
 			price = tidy(price)
 			p.demandPrice = &price
 		default:
@@ -223,4 +227,5 @@ func (p *planner) readPrices(g *programme, sol *convex.Solution) {
 			b.price += price * b.unit * (1 - (b.reserve+p.share)*b.grow)
 		}
 	}
+	p.readRequests(g, sol)
 }

@@ -34,6 +34,9 @@ type Report struct {
 
 	DemandRange *PriceRange `json:"demand_price_range"`
 
+	PumpingEnergy *EnergyTotal  `json:"pumping_energy"` // null where a well up for decision lacks a figure
+	Requests      *RequestTotal `json:"requests"`       // null but for closest-to-requests
+
 	Wells         []WellResult     `json:"wells"`
 	Receptors     []ReceptorResult `json:"receptors"`
 	Sensitivities Table            `json:"sensitivities"` // receptor unit per m³/d: rows receptors, columns wells
@@ -56,44 +59,46 @@ type Report struct {
 
 // WellResult is a well's line in the plan.
 type WellResult struct {
-	ID               string    `json:"id"`
-	Name             string    `json:"name"`
-	Owner            string    `json:"owner"`
-	Mode             string    `json:"mode"`   // decided, fixed, off
-	Others           bool      `json:"others"` // an existing user
-	X                float64   `json:"x_m"`
-	Y                float64   `json:"y_m"`
-	Longitude        float64   `json:"longitude_deg"`
-	Latitude         float64   `json:"latitude_deg"`
-	RadiusM          float64   `json:"radius_m"`
-	Rate             float64   `json:"rate_m3_per_d"`
-	Running          float64   `json:"running_rate_m3_per_d"`
-	DutyHours        float64   `json:"duty_hours_h_per_d"`
-	Yearly           float64   `json:"volume_m3_per_yr"`
-	Min              float64   `json:"min_m3_per_d"`
-	Max              float64   `json:"max_m3_per_d"`
-	MaxSource        string    `json:"max_source"`
-	AtBound          string    `json:"at_bound"`     // "", min, max
-	ShadowPrice      float64   `json:"shadow_price"` // change of the aim per m³/d by which the bound that holds the rate is loosened
-	Present          *float64  `json:"present_m3_per_d"`
-	Recent           *float64  `json:"recent_m3_per_d"`
-	Licensed         *float64  `json:"licensed_m3_per_d"`
-	Requested        *float64  `json:"requested_m3_per_d"`
-	StaticLevel      float64   `json:"static_level_m"` // steady state without any pumping
-	NodeLevel        float64   `json:"modelled_head_m"`
-	OwnLogarithm     float64   `json:"own_drawdown_below_node_m"` // Q ln(r0/rw)/(2 pi T)
-	OwnPerRate       float64   `json:"own_drawdown_per_rate_d_per_m2"`
-	LinearLoss       float64   `json:"linear_loss_d_per_m2"`
-	QuadraticLoss    float64   `json:"quadratic_loss_d2_per_m5"`
-	WellLoss         float64   `json:"well_loss_m"`
-	PumpingLevel     float64   `json:"pumping_level_m"`
-	LowestLevel      *float64  `json:"lowest_allowed_level_m"`
-	LowestReason     string    `json:"lowest_allowed_level_reason"`
-	LevelMargin      *float64  `json:"level_margin_m"`
-	LevelShadowPrice float64   `json:"level_shadow_price_m3_per_d_per_m"`
-	AquiferTop       *float64  `json:"aquifer_top_m"`
-	DrawdownByWell   []float64 `json:"drawdown_per_rate_by_well_d_per_m2"` // at this well's node: one a well, the node's own included
-	Source           string    `json:"source"`
+	ID               string       `json:"id"`
+	Name             string       `json:"name"`
+	Owner            string       `json:"owner"`
+	Mode             string       `json:"mode"`   // decided, fixed, off
+	Others           bool         `json:"others"` // an existing user
+	X                float64      `json:"x_m"`
+	Y                float64      `json:"y_m"`
+	Longitude        float64      `json:"longitude_deg"`
+	Latitude         float64      `json:"latitude_deg"`
+	RadiusM          float64      `json:"radius_m"`
+	Rate             float64      `json:"rate_m3_per_d"`
+	Running          float64      `json:"running_rate_m3_per_d"`
+	DutyHours        float64      `json:"duty_hours_h_per_d"`
+	Yearly           float64      `json:"volume_m3_per_yr"`
+	Min              float64      `json:"min_m3_per_d"`
+	Max              float64      `json:"max_m3_per_d"`
+	MaxSource        string       `json:"max_source"`
+	AtBound          string       `json:"at_bound"`     // "", min, max
+	ShadowPrice      float64      `json:"shadow_price"` // change of the aim per m³/d by which the bound that holds the rate is loosened
+	Present          *float64     `json:"present_m3_per_d"`
+	Recent           *float64     `json:"recent_m3_per_d"`
+	Licensed         *float64     `json:"licensed_m3_per_d"`
+	Requested        *float64     `json:"requested_m3_per_d"`
+	StaticLevel      float64      `json:"static_level_m"` // steady state without any pumping
+	NodeLevel        float64      `json:"modelled_head_m"`
+	OwnLogarithm     float64      `json:"own_drawdown_below_node_m"` // Q ln(r0/rw)/(2 pi T)
+	OwnPerRate       float64      `json:"own_drawdown_per_rate_d_per_m2"`
+	LinearLoss       float64      `json:"linear_loss_d_per_m2"`
+	QuadraticLoss    float64      `json:"quadratic_loss_d2_per_m5"`
+	WellLoss         float64      `json:"well_loss_m"`
+	PumpingLevel     float64      `json:"pumping_level_m"`
+	LowestLevel      *float64     `json:"lowest_allowed_level_m"`
+	LowestReason     string       `json:"lowest_allowed_level_reason"`
+	LevelMargin      *float64     `json:"level_margin_m"`
+	LevelShadowPrice float64      `json:"level_shadow_price_m3_per_d_per_m"`
+	AquiferTop       *float64     `json:"aquifer_top_m"`
+	DrawdownByWell   []float64    `json:"drawdown_per_rate_by_well_d_per_m2"` // at this well's node: one a well, the node's own included
+	PumpingEnergy    *WellEnergy  `json:"pumping_energy"`                     // null where efficiency, delivery level or pumping level is not known
+	Request          *WellRequest `json:"request"`                            // null but for closest-to-requests and a well up for decision
+	Source           string       `json:"source"`
 
 	RateRange  *PriceRange `json:"rate_price_range"` // of the bound that holds the rate; null where none does
 	LevelRange *PriceRange `json:"level_price_range"`

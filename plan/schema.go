@@ -15,6 +15,9 @@ const (
 // unitSuffixes are the ends of keys that name a unit, longer ones before the shorter ones that they end with.
 var unitSuffixes = []struct{ suffix, unit string }{
 	{"_m3_per_d_per_m", "m³/d per m"},
+	{"_kwh_per_m3", "kWh/m³"},
+	{"_kwh_per_d", "kWh/d"},
+	{"_kw", "kW"},
 	{"_m3_per_yr", "m³ in a year of 365.25 days"},
 	{"_m3_per_d", "m³/d"},
 	{"_m2_per_d", "m²/d"},
@@ -66,6 +69,7 @@ var withoutUnit = map[string]string{
 	"primal_violation":    "share",
 	"dual_violation":      "share",
 	"dual_gap":            "share",
+	"sum_of_squares":      "sum of squared shares of the largest rates",
 }
 
 // UnitOf returns the unit of a number's key in plan.json; false when the key says none.

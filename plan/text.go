@@ -32,6 +32,7 @@ func plainNumber(v float64, significant, least, most int) string {
 
 func flowText(v float64) string    { return plainNumber(v, 2, 0, 4) + " m³/d" }
 func lengthText(v float64) string  { return plainNumber(v, 2, 2, 6) + " m" }
+func energyText(v float64) string  { return plainNumber(v, 2, 0, 4) + " kWh/d" }
 func percentText(v float64) string { return plainNumber(100*v, 2, 0, 4) + " %" }
 
 // amountText writes an amount in one of the units of rows: m, m3/d or 1.

@@ -40,6 +40,7 @@ func (p *planner) wellResults(ctx context.Context, rates []float64, resolved *li
 		if !known {
 			unknown = append(unknown, w.ID)
 		}
+		r.PumpingEnergy, r.Request = p.wellEnergy(i, known, &r), p.wellRequest(i, rate)
 		out[i] = r
 	}
 	if len(unknown) > 0 {
