@@ -15,8 +15,6 @@ const (
 	cutSpread       = 1e7  // largest ratio of two coefficients of a cut: more would not be met by rounded values
 	cutNegligible   = 1e-9 // coefficient, relative to the largest, that is replaced by its bound
 	cutPerRoundMost = 80
-	cutEntriesMost  = 0.6 // share of the columns that a cut may have when there are many columns
-	cutFewColumns   = 200
 
 	// cutRelief moves the right side of each cut outward, relative to its terms: a thousand times the rounding of its making, so
 	// that no plan is lost.
@@ -34,6 +32,9 @@ type cutter struct {
 	below    [][]variableBound // by column: x >= constant + slope y
 	a, out   []float64         // dense work, zero between uses
 	found    []foundCut
+
+	terms     []roundTerm // work
+	wholeList []int
 }
 
 // variableBound bounds a continuous column by a whole one.
@@ -94,10 +95,13 @@ func (s *search) cutRounds() bool {
 	}
 	s.local.copyFrom(s.global.lo, s.global.hi)
 	s.sync()
-	switch s.lp.first(s.ctx) {
+	switch s.lp.solve(s.ctx, nodePivots, s.cutoff()) {
 	case lpOptimal:
 		s.rootBound = math.Max(s.rootBound, s.raise(s.lp.objective()))
 		s.noteRoot()
+	case lpBeaten:
+		s.exclude(s.raise(s.lp.objective()))
+		return false
 	case lpEmpty:
 		return false
 	case lpHalted:
@@ -266,12 +270,12 @@ func (k *cutter) cosine(f, g foundCut) float64 {
 
 // keep cleans the cut out'x <= limit, held in k.out, and keeps it when the relaxation is far enough beyond. k.out is zero afterwards.
 func (k *cutter) keep(limit float64) bool {
-	top, count := 0.0, 0
+	top := 0.0
 	for j, v := range k.out {
 		top = math.Max(top, math.Abs(v)*k.lp.t.s.col[j])
 	}
 	r := coreRow{lower: math.Inf(-1)}
-	least, norm, value, terms, usable := math.Inf(1), 0.0, 0.0, math.Abs(limit), true
+	norm, value, terms, usable := 0.0, 0.0, math.Abs(limit), true
 	for j, v := range k.out {
 		if v == 0 {
 			continue
@@ -289,16 +293,13 @@ func (k *cutter) keep(limit float64) bool {
 			limit -= v * bound
 			continue
 		}
-		count++
-		least = math.Min(least, f)
 		norm += f * f
 		value += v * k.x[j]
 		terms = math.Max(terms, math.Abs(v*k.x[j]))
 		r.entries = append(r.entries, mixedEntry{j, v})
 	}
 	norm = math.Sqrt(norm)
-	n := len(k.out)
-	if !usable || !(norm > 0) || !finite(limit) || n > cutFewColumns && float64(count) > cutEntriesMost*float64(n) {
+	if !usable || !(norm > 0) || !finite(limit) {
 		return false
 	}
 	r.upper = limit + cutRelief*math.Max(terms, top)

@@ -112,7 +112,7 @@ func eachSwitching(t testing.TB, c *core, q *Problem, f func()) {
 
 // TestReduceKeepsTheOptimum: presolve alone, seen through all switchings of what it leaves.
 func TestReduceKeepsTheOptimum(t *testing.T) {
-	changed, cases := 0, uint64(60)
+	changed, cases := 0, uint64(40)
 	if long() {
 		cases = 1000
 	}

@@ -107,19 +107,18 @@ func (k *cutter) roundedSum(rows []weighted, variable bool, divisors ...float64)
 
 // standard brings the sum in k.a to variables that are not negative, and empties k.a.
 func (k *cutter) standard(s summed, variable bool) ([]roundTerm, float64, bool) {
-	var terms []roundTerm
+	terms := k.terms[:0]
+	defer func() { k.terms = terms }()
 	limit, ok := s.limit, true
-	extra := map[int]bool{}
 	size := 0.0
 	for _, j := range s.list {
 		size = math.Max(size, math.Abs(k.a[j])*k.lp.t.s.col[j])
 	}
-	whole := make([]int, 0, len(s.list))
+	whole := k.wholeList[:0]
 	for _, j := range s.list {
 		v := k.a[j]
 		if k.c.whole[j] {
 			whole = append(whole, j)
-			extra[j] = true
 			continue
 		}
 		k.a[j] = 0
@@ -147,15 +146,18 @@ func (k *cutter) standard(s summed, variable bool) ([]roundTerm, float64, bool) 
 			t.value = -v
 		}
 		if t.slope != 0 {
-			if !extra[t.y] && !k.listed(s.list, t.y) {
-				extra[t.y] = true
+			if k.a[t.y] == 0 && !k.listed(s.list, t.y) {
 				whole = append(whole, t.y)
 			}
 			k.a[t.y] += v * t.slope
+			if k.a[t.y] == 0 {
+				k.a[t.y] = math.SmallestNonzeroFloat64 // stays on the list
+			}
 		}
 		terms = append(terms, t)
 	}
 	sort.Ints(whole)
+	k.wholeList = whole
 	for _, j := range whole {
 		v := k.a[j]
 		k.a[j] = 0

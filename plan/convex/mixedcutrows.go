@@ -36,20 +36,21 @@ func (k *cutter) roundRows() {
 
 // cancelling finds a row that takes the continuous column farthest from its bounds out of the sum.
 func (k *cutter) cancelling(rows []weighted, used map[int]bool) (weighted, bool) {
-	sum := map[int]float64{}
+	sum := k.a
 	var columns []int
 	for _, w := range rows {
 		for _, e := range k.rows[w.row].entries {
-			if _, ok := sum[e.at]; !ok {
+			if sum[e.at] == 0 {
 				columns = append(columns, e.at)
 			}
 			sum[e.at] += w.weight * e.value
 		}
 	}
+	defer k.clear(columns)
 	sort.Ints(columns)
 	at, far := -1, wholeness
 	for _, j := range columns {
-		if k.c.whole[j] || math.Abs(sum[j]) <= cutNegligible {
+		if k.c.whole[j] || math.Abs(sum[j]) <= cutNegligible || j == at {
 			continue
 		}
 		t, ok := k.nearestBound(j, true)

@@ -29,6 +29,7 @@ type nodeLP struct {
 	t     *session
 	e     *engine
 	stale bool // the weights do not belong to the basis
+	kept  []float64
 }
 
 func newNodeLP(p *Problem) *nodeLP {
@@ -116,13 +117,15 @@ func (l *nodeLP) solve(ctx context.Context, pivots int, cutoff float64) lpEnd {
 			e.unshift()
 		}
 		if !e.pricesRight() {
-			l.stale = true
+			l.keepWeights()
 			switch end, _, status := e.primal(ctx, false); end {
 			case halted:
+				l.stale = true
 				return haltedBy(status)
 			case lostAccuracy, noEnd:
 				return l.afresh(ctx)
 			}
+			l.returnWeights()
 			if e.widened {
 				e.unwiden()
 				e.refactor()
@@ -135,13 +138,15 @@ func (l *nodeLP) solve(ctx context.Context, pivots int, cutoff float64) lpEnd {
 		}
 		e.refactor()
 		e.makePricesRight()
-		if l.stale {
-			e.exactWeights()
-			l.stale = false
-		}
 	}
 	return l.afresh(ctx)
 }
+
+// keepWeights puts the dual weights aside while the primal method uses their place; returnWeights brings them back. Variables that
+// have become basic meanwhile get the weight one, which is valid: weights guide, they prove nothing.
+func (l *nodeLP) keepWeights() { l.kept = append(l.kept[:0], l.e.weight...) }
+
+func (l *nodeLP) returnWeights() { copy(l.e.weight, l.kept) }
 
 // afresh lets the full method decide where the quick one failed.
 func (l *nodeLP) afresh(ctx context.Context) lpEnd { return l.first(ctx) }

@@ -93,19 +93,31 @@ func (b *box) spanOf(r *coreRow) span {
 			lo, hi = hi, lo
 		}
 		if finite(lo) {
-			s.low += e.value * lo
-			s.terms = math.Max(s.terms, math.Abs(e.value*lo))
+			v := e.value * lo
+			s.low += v
+			s.note(v)
 		} else {
 			s.lowInf++
 		}
 		if finite(hi) {
-			s.high += e.value * hi
-			s.terms = math.Max(s.terms, math.Abs(e.value*hi))
+			v := e.value * hi
+			s.high += v
+			s.note(v)
 		} else {
 			s.highInf++
 		}
 	}
 	return s
+}
+
+// note keeps the largest term.
+func (s *span) note(v float64) {
+	if v < 0 {
+		v = -v
+	}
+	if v > s.terms {
+		s.terms = v
+	}
 }
 
 func (s *span) reaches(lower float64) bool { return s.lowInf == 0 && s.low >= lower }
