@@ -1,16 +1,18 @@
-// Package convex solves the optimisation problems of a pumping plan. Today that is the linear programme with few, dense rows:
-// which rates give the largest yield, or the least cost, within the limits, and what is each limit worth.
+// Package convex solves the optimisation problems of a pumping plan: linear and convex quadratic programmes with few, dense rows, and
+// linear ones with wells that are on or off. Which rates give the largest yield, or the least cost or energy, within the limits, and what
+// is each limit worth?
 //
 // # Problem
 //
-//	minimise or maximise  c'x
+//	minimise or maximise  c'x + 1/2 x'Hx
 //	subject to            rowLower <= A x <= rowUpper
 //	                      lower    <= x   <= upper
 //
 // Columns are wells and a few helpers, rows are limits, quotas and demand. Any bound may be missing (an infinity of the right sign);
-// equal bounds make an equation or a fixed column. Rows are dense and copied in; nothing about their number is assumed.
+// equal bounds make an equation or a fixed column. Rows are dense and copied in; nothing about their number is assumed. H is symmetric,
+// given as a dense matrix, as entries, or as a diagonal plus few factors; one that bends the wrong way is found out and shown.
 //
-// # Method
+// # Method for linear programmes
 //
 // With r = A x as further variables a basis has one variable for each row. A row whose r is basic says nothing, so that only the
 // block K of the active rows by the basic columns is factored: as large as the number of binding limits, not as the number of
@@ -25,7 +27,20 @@
 // help smallest indices are used, which cannot cycle (Bland 1977). The last basis is factored afresh (LU), its values and prices
 // refined with residuals in about 32 digits, and looked at again with tolerances near rounding.
 //
-// All of this happens in a scaled problem; the factors are powers of two, so that scaling rounds nothing. There is no randomness
+// # Methods for quadratic programmes
+//
+// A definite H goes to the dual active-set method (Goldfarb & Idnani 1983). Columns at a bound are left out: only the block H_FF of the
+// free columns is factored and changed row by row, or, for a diagonal plus a rank k, a k x k matrix (Woodbury 1950); rows at a bound
+// are the equations of the small system A_W H_FF^-1 A_W', which is changed alike. A first guess of the active set exchanges whole sets
+// of bounds; the method proper then needs few steps or none. A step costs about |F|² + rows x columns.
+//
+// Everything else goes to a primal-dual interior-point method: predictor and corrector (Mehrotra 1992), centrality corrections (Gondzio
+// 1996), on the sparse system [-(H+T) A'; A E], whose shifted form has a factor L D L' for every order (Vanderbei 1995); the order is
+// of minimum degree (Amestoy, Davis & Duff 1996), refinement takes the shifts out again, so that free columns and dependent rows need
+// no care. The end is solved for on the bounds that bind. SolveInterior runs it on any problem and SecondOpinion compares: it shares no
+// step with the other two. Infeasible and unbounded problems are shown by the same method on problems that always have an optimum.
+//
+// All methods work in a scaled problem; the factors are powers of two, so that scaling rounds nothing. There is no randomness
 // that is not a fixed sequence and no parallel work: the same problem gives the same bytes.
 //
 // # Symbols, units, signs
@@ -34,8 +49,9 @@
 //	c       Column.Cost             objective per unit of a column
 //	A       Row.Coefficients        row value per unit of a column
 //	x, r    X, RowValue             values
+//	H       Hessian                 twice the objective per unit of a pair of columns
 //	y       RowPrice                change of the objective per unit of the row's active bound
-//	d       ReducedCost             the same for a column's active bound; c - A'y
+//	d       ReducedCost             the same for a column's active bound; c + Hx - A'y
 //
 // Prices are in the problem's own sense: raising the binding upper limit of a maximisation by one unit raises the objective by its
 // price, which is not negative; raising a binding demand of a minimisation raises the cost by its price. The price of a bound that
@@ -50,9 +66,9 @@
 //
 // # Not done
 //
-// Sparse storage and presolve: problems with thousands of rows that are mostly zero work, slowly. Quadratic cost and on/off
-// columns. Left and right prices at a degenerate optimum. Exact arithmetic: a problem infeasible by less than 1e-9 of its scale may
-// be called feasible.
+// Sparse storage and presolve: problems with thousands of rows that are mostly zero work, slowly. On/off columns and ranges of prices with
+// a Hessian. Exact arithmetic: a problem infeasible by less than 1e-9 of its scale may be called feasible, a Hessian with an eigenvalue
+// below zero by less than 1e-11 of its diagonal convex.
 //
 // # Sources
 //
@@ -60,4 +76,7 @@
 // Journal of Operational Research 149, 1-16. Harris (1973) Mathematical Programming 5, 1-28. Bland (1977) Mathematics of Operations
 // Research 2, 103-107. Gill, Golub, Murray & Saunders (1974) Mathematics of Computation 28, 505-535. Chinneck & Dravnieks (1991) ORSA
 // Journal on Computing 3, 157-168. Ogita, Rump & Oishi (2005) SIAM Journal on Scientific Computing 26, 1955-1988. Ruiz (2001) RAL-TR-2001-034.
+// Goldfarb & Idnani (1983) Mathematical Programming 27, 1-33. Mehrotra (1992) SIAM Journal on Optimization 2, 575-601. Gondzio (1996)
+// Computational Optimization and Applications 6, 137-156. Vanderbei (1995) SIAM Journal on Optimization 5, 100-113. Amestoy, Davis & Duff
+// (1996) SIAM Journal on Matrix Analysis and Applications 17, 886-905. Woodbury (1950) Memorandum Report 42, Princeton.
 package convex

@@ -249,7 +249,8 @@ func (s *interiorPoint) longest() (primal, dual float64) {
 	return primal, dual
 }
 
-// run iterates to the target, a halt, or no further progress, and leaves the best point. It returns what stopped it from outside, or zero.
+// run iterates to the target, a halt, or no further progress, and leaves the best point. Without a limit, zero, interiorIterations
+// ends it as well. It returns what stopped it from outside, or zero.
 func (s *interiorPoint) run(ctx context.Context, limit int) Status {
 	s.begin()
 	s.stepP, s.stepD = 1, 1
@@ -271,10 +272,10 @@ func (s *interiorPoint) run(ctx context.Context, limit int) Status {
 		if ctx.Err() != nil {
 			return Interrupted
 		}
-		if s.iterations >= limit {
+		if limit > 0 && s.iterations >= limit {
 			return IterationLimit
 		}
-		if s.iterations >= interiorIterations {
+		if limit == 0 && s.iterations >= interiorIterations {
 			break
 		}
 		s.iterations++

@@ -75,11 +75,7 @@ func interiorAttempt(ctx context.Context, f *interiorForm, o Options) *Solution 
 	p := f.p
 	s := newInteriorPoint(f)
 	s.progress = o.Progress
-	limit := o.MaxIterations
-	if limit == 0 {
-		limit = interiorIterations
-	}
-	if status := s.run(ctx, limit); status != 0 {
+	if status := s.run(ctx, o.MaxIterations); status != 0 {
 		return s.solution(status)
 	}
 	plain := s.solution(Optimal)

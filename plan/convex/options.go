@@ -4,9 +4,10 @@ import "fmt"
 
 // Options steer Solve. The zero value is the documented default.
 type Options struct {
-	// Start is the basis to start from; nil starts from the rows.
+	// Start is the basis to start from; nil starts from the rows. With a definite Hessian it is a guess of the active set, which the
+	// basis of a linear programme may be; the interior method takes none.
 	Start *Basis
-	// MaxIterations ends the solve with IterationLimit; 0 stands for 20,000 + 50 (rows + columns).
+	// MaxIterations ends the solve with IterationLimit; 0 stands for 20,000 + 50 (rows + columns), in the interior method for 200.
 	MaxIterations int
 	// Progress, when given, is called now and then from the calling goroutine.
 	Progress func(Progress)
@@ -14,7 +15,7 @@ type Options struct {
 
 // Progress tells how far a solve is.
 type Progress struct {
-	Stage      string  // "dual" or "primal"
+	Stage      string  // "dual", "primal", "active set" or "interior"
 	Iterations int     // pivots so far
 	Infeasible float64 // sum of violations in the scaled problem [-]
 }

@@ -42,14 +42,14 @@ func (s Status) String() string {
 type Solution struct {
 	Status      Status
 	X           []float64 // value of each column [-]
-	Objective   float64   // cost'x [-]
+	Objective   float64   // cost'x + 1/2 x'Hx [-]
 	RowValue    []float64 // value of each row [-]
 	RowPrice    []float64 // change of the objective per unit of the row's active bound, in the problem's own sense [-]
 	ReducedCost []float64 // change of the objective per unit of the column's active bound, in the problem's own sense [-]
-	Basis       *Basis
-	Ray         *Ray // Infeasible: the proof; Unbounded: the direction; otherwise nil
-	Iterations  int  // pivots, dual and primal
-	Primal      int  // the primal ones among them
+	Basis       *Basis    // with a Hessian: the active set, in which more columns may be basic than there are rows
+	Ray         *Ray      // Infeasible: the proof; Unbounded: the direction; otherwise nil
+	Iterations  int       // pivots, dual and primal; steps of the active set; iterations of the interior method
+	Primal      int       // the primal ones among them
 
 	// PrimalDegenerate tells that a solved-for value sits on its bound: prices may then have other values, and left and right
 	// prices may differ.
