@@ -19,9 +19,12 @@ type MixedProblem struct {
 // BadIndex is the fault of a list that names a column twice or one that is not there.
 const BadIndex Fault = 101
 
-// Validate reports all faults of the two lists in a *DataError.
+// Validate reports all faults of the two lists, and a Hessian, which mixed problems may not have, in a *DataError.
 func (p *MixedProblem) Validate() error {
 	var faults faultList
+	if p.Quadratic() {
+		faults.add(BadHessian, partProblem, 0, "", 0, "whole and zero-or-within columns do not go with a quadratic cost")
+	}
 	for _, list := range []struct {
 		name    string
 		columns []int

@@ -298,6 +298,16 @@ func TestMixedBadInput(t *testing.T) {
 			t.Errorf("accepted %+v", o)
 		}
 	}
+	curved := mustProblem(t, Minimise, []Column{{Upper: 1}})
+	if err := curved.SetHessian(Hessian{Dense: []float64{2}}); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := SolveMixed(context.Background(), &MixedProblem{Problem: curved}, MixedOptions{}); !errors.As(err, &fault) {
+		t.Errorf("took a quadratic cost: %v", err)
+	}
+	if _, err := OnOff(&MixedProblem{Problem: curved}, 0); !errors.As(err, &fault) {
+		t.Errorf("gave a column to a quadratic cost: %v", err)
+	}
 	if _, err := OnOff(p, 1); !errors.As(err, &fault) || p.Columns() != 2 || p.Rows() != 0 {
 		t.Errorf("switched a column without an upper bound: %v", err)
 	}

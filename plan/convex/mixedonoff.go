@@ -20,6 +20,9 @@ func OnOff(p *MixedProblem, column int) (binary int, err error) {
 		faults.add(NotFinite, partColumn, column, x.Name, x.Upper,
 			fmt.Sprintf("bounds %v and %v: a column that is switched needs two finite ones", x.Lower, x.Upper))
 	}
+	if p.hessian != nil {
+		faults.add(BadHessian, partProblem, 0, "", 0, "a problem with a quadratic cost takes no further columns")
+	}
 	if err := faults.err(); err != nil {
 		return -1, err
 	}
