@@ -84,11 +84,11 @@ func (p *planner) tieWords() string {
 // twoPrices tells whether some limit that holds the plan is worth more to one side than to the other.
 func (p *planner) twoPrices() bool {
 	differ := func(r *PriceRange) bool {
-		return r != nil && r.HoldsFor == "" && r.Looser != nil && r.Tighter != nil && *r.Looser != *r.Tighter
+		return r != nil && r.Looser != nil && r.Tighter != nil && *r.Looser != *r.Tighter
 	}
 	ranges := []*PriceRange{p.demandRange}
 	for _, b := range p.bounds {
-		if b.size > 0 || b.reserve == 0 {
+		if b.linear && (b.size > 0 || b.reserve == 0) {
 			ranges = append(ranges, b.priceRange)
 		}
 	}

@@ -190,14 +190,21 @@ func known(v float64) *float64 {
 	return &v
 }
 
-// tangentsOnly says of ranges that they are those of the programme with the tangents at hand, not of the curved rows themselves.
-const tangentsOnly = "the tangents of this plan"
+// What ranges are conditional on: that the programme has tangents in place of the curved rows, and that the same wells run.
+const (
+	tangentsOnly = "the tangents of this plan"
+	sameRunning  = "the wells that run in this plan"
+)
 
 func (p *planner) holdsFor() string {
+	var parts []string
 	if len(p.cuts) > 0 {
-		return tangentsOnly
+		parts = append(parts, tangentsOnly)
 	}
-	return ""
+	if p.runs != nil {
+		parts = append(parts, sameRunning)
+	}
+	return list(parts)
 }
 
 // boundRange turns the range of a row, which moves in the unit of the change, into that of the limit.

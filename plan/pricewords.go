@@ -166,10 +166,10 @@ func (p *planner) farWords(b *bound, r *LimitResult, l wells.Limit, st step) str
 	if x == nil {
 		return ""
 	}
-	if x.HoldsFor != "" && !b.linear {
-		return " for " + x.HoldsFor
-	}
-	if x.LooserTo == nil {
+	switch {
+	case !b.linear:
+		return " for " + tangentsOnly
+	case x.LooserTo == nil:
 		return ""
 	}
 	far := (*x.LooserTo - r.Limit) * b.way() / st.size

@@ -195,7 +195,7 @@ type PriceRange struct {
 	Looser      *float64 `json:"looser_price"`  // null: nothing can be loosened
 	LooserTo    *float64 `json:"looser_to"`     // null: for ever
 	LooserThen  string   `json:"looser_then"`
-	HoldsFor    string   `json:"holds_for"` // 'the tangents of this plan' where a row of the programme is not linear; empty: exact
+	HoldsFor    string   `json:"holds_for"` // 'the tangents of this plan' where a row is not linear, 'the wells that run in this plan' where there was a choice; empty: exact
 }
 
 // Capture is one source's share of the pumped water.

@@ -49,7 +49,8 @@ type commands struct {
 		solving
 		Rates string `arg:"" help:"CSV or XLSX table with the columns id and rate (with its unit), such as the rates.csv that plan leaves."`
 	} `cmd:"" help:"The receptors under rates given in a table, without optimising."`
-	Version bool `help:"Print the version."`
+	Curve   curving `cmd:"" help:"The best yield, or the best headroom, against the value of one limit: table, picture and JSON."`
+	Version bool    `help:"Print the version."`
 }
 
 // version is that of the build: the module's, or the revision it was built from.
@@ -104,6 +105,8 @@ func run(ctx context.Context, args []string, s streams) int {
 		err = runPlan(ctx, c.Plan, s)
 	case "try":
 		err = runTry(ctx, c.Try.solving, c.Try.Rates, s)
+	case "curve":
+		err = runCurve(ctx, c.Curve, s)
 	}
 	if err != nil {
 		fmt.Fprintln(s.err, "springbound:", err)
