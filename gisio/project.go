@@ -48,6 +48,9 @@ type BriefSettings struct {
 	Aim    plan.Aim
 	Demand *float64 // [m³/d]
 	Quotas []plan.Quota
+
+	AtMostRunning     *int
+	Together, Exclude []plan.WellGroup
 }
 
 // MeshSettings are the wishes for the mesh; zero is not stated.
@@ -67,7 +70,7 @@ type ReportSettings struct {
 // PlanBrief returns the brief for the planner; the terms of the wells are for the caller to add.
 func (p *Project) PlanBrief() plan.Brief {
 	return plan.Brief{Aim: p.Brief.Aim, Demand: p.Brief.Demand, Quotas: p.Brief.Quotas, Wells: p.Wells, Receptors: p.Receptors, Limits: p.Limits,
-		Licences: p.Licences, States: p.States}
+		Licences: p.Licences, States: p.States, AtMostRunning: p.Brief.AtMostRunning, Together: p.Brief.Together, Exclude: p.Brief.Exclude}
 }
 
 // ToLonLat returns longitude and latitude [degree] of a place in the plane.

@@ -70,7 +70,7 @@ func (b *builder) readBrief() {
 	if t == nil {
 		t = map[string]any{}
 	}
-	rec := s.record(&b.reader, &briefSection, t, "[brief]", []string{"quota"}, "brief")
+	rec := s.record(&b.reader, &briefSection, t, "[brief]", []string{"quota", "together", "exclude"}, "brief")
 	if i := rec.word("aim", -1); i >= 0 {
 		b.p.Brief.Aim = plan.Aim(briefSection.field("aim").Words[i])
 	}
@@ -78,6 +78,7 @@ func (b *builder) readBrief() {
 	if b.p.Brief.Aim == plan.MostHeadroom && !rec.has("demand") {
 		rec.missing("demand", "the aim most-headroom shares out a demand")
 	}
+	b.readRunning(rec, t)
 	list, ok := t["quota"].([]any)
 	if _, present := t["quota"]; present && !ok {
 		rec.fail(Finding{Property: "quota", Line: s.line("brief", "quota"), Found: valueText(t["quota"]), Allowed: "tables headed [[brief.quota]]"})

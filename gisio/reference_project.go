@@ -2,7 +2,7 @@ package gisio
 
 // sections is the one list of everything that may be written, in the order of the reference page.
 var sections = []*Section{&projectSection, &coordinatesSection, &layersSection, &tablesSection, &fileSection, &aquiferSection, &meshSection, &briefSection,
-	&quotaSection, &reportSection, &extentSection, &edgesSection, &zonesSection, &riversSection, &lakesSection, &springsSection, &wellsSection, &receptorsSection,
+	&quotaSection, &togetherSection, &excludeSection, &reportSection, &extentSection, &edgesSection, &zonesSection, &riversSection, &lakesSection, &springsSection, &wellsSection, &receptorsSection,
 	&observationsSection, &limitsSection, &licencesSection, &statesSection, &ratesSection}
 
 var projectSection = Section{Name: "project", Title: "Top of the project file", About: "Before the first table.", Fields: []Field{
@@ -84,6 +84,7 @@ var meshSection = Section{Name: "mesh", Title: "[mesh]", About: "All may be left
 var briefSection = Section{Name: "brief", Title: "[brief]", About: "What the plan is asked for.", Fields: []Field{
 	{Name: "aim", Class: Word, Words: []string{"most-yield", "most-headroom"}, Required: "yes", Meaning: "most-yield: largest total rate; most-headroom: largest smallest headroom for the demand", Example: `aim = "most-yield"`},
 	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom", Meaning: "total that the decided wells must give", Example: `demand = "60 L/s"`},
+	{Name: "at_most_running", Class: Whole, Bound: ">= 0", Meaning: "how many of the decided wells may pump at once; left out: any number", Example: `at_most_running = 4`},
 }}
 
 var quotaSection = Section{Name: "quota", Title: "[[brief.quota]]", About: "Any number of them.", Fields: []Field{
@@ -92,6 +93,16 @@ var quotaSection = Section{Name: "quota", Title: "[[brief.quota]]", About: "Any 
 	{Name: "per_day", Class: Number, Kind: DayVolume, Bound: ">= 0", Required: "one of the two", Meaning: "most water in a day", Example: `per_day = "4000 m3"`},
 	{Name: "per_year", Class: Number, Kind: YearVolume, Bound: ">= 0", Required: "one of the two", Meaning: "most water in a year", Example: `per_year = "1.2 Mm3"`},
 	{Name: "source", Class: Text, Meaning: "where the quota comes from", Example: `source = "group agreement of 2021"`},
+}}
+
+var togetherSection = Section{Name: "together", Title: "[[brief.together]]", About: "Wells that run together or not at all; any number of groups. Each decided one needs a least rate.", Fields: []Field{
+	{Name: "wells", Class: IDList, Required: "yes", Meaning: "ids of two wells or more", Example: `wells = ["W1", "W2"]`},
+	{Name: "source", Class: Text, Meaning: "where the rule comes from", Example: `source = "one power supply"`},
+}}
+
+var excludeSection = Section{Name: "exclude", Title: "[[brief.exclude]]", About: "Wells of which at most one runs; any number of groups.", Fields: []Field{
+	{Name: "wells", Class: IDList, Required: "yes", Meaning: "ids of two wells or more", Example: `wells = ["W3", "W4"]`},
+	{Name: "source", Class: Text, Meaning: "where the rule comes from", Example: `source = "W4 stands by for W3"`},
 }}
 
 var reportSection = Section{Name: "report", Title: "[report]", About: "All may be left out.", Fields: []Field{

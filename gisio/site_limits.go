@@ -277,4 +277,5 @@ func (b *builder) checkQuotas() {
 		rec := &record{rd: &b.reader, section: &quotaSection, at: Finding{File: b.p.File, Feature: "[[brief.quota]] " + q.Name, Line: b.settings.line("brief", "quota", fmt.Sprint(i), "wells")}}
 		b.checkWellIDs(rec, "wells", q.Wells)
 	}
+	b.checkGroups()
 }

@@ -204,7 +204,7 @@ func (j *job) placeText(at [2]float64) string {
 // brief is what the planner is asked for.
 func (j *job) brief(ctx context.Context) (plan.Brief, error) {
 	p := j.project
-	b := plan.Brief{Aim: p.Brief.Aim, Demand: p.Brief.Demand, Quotas: p.Brief.Quotas, Wells: p.Wells, Receptors: p.Receptors,
+	b := plan.Brief{Aim: p.Brief.Aim, Demand: p.Brief.Demand, Quotas: p.Brief.Quotas, AtMostRunning: p.Brief.AtMostRunning, Together: p.Brief.Together, Exclude: p.Brief.Exclude, Wells: p.Wells, Receptors: p.Receptors,
 		Limits: p.Limits, Licences: p.Licences, States: p.States}
 	base, err := j.field.Base(ctx)
 	if err != nil {
