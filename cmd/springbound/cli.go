@@ -49,6 +49,7 @@ type commands struct {
 		solving
 		Rates string `arg:"" help:"CSV or XLSX table with the columns id and rate (with its unit), such as the rates.csv that plan leaves."`
 	} `cmd:"" help:"The receptors under rates given in a table, without optimising."`
+	Where   siting  `cmd:"" help:"Siting: where a further well could go, and what it is worth to the plan."`
 	Curve   curving `cmd:"" help:"The best yield, or the best headroom, against the value of one limit: table, picture and JSON."`
 	Version bool    `help:"Print the version."`
 }
@@ -103,6 +104,8 @@ func run(ctx context.Context, args []string, s streams) int {
 		err = runDrivers(ctx, c.Drivers, s)
 	case "plan":
 		err = runPlan(ctx, c.Plan, s)
+	case "where":
+		err = runWhere(ctx, c.Where, s)
 	case "try":
 		err = runTry(ctx, c.Try.solving, c.Try.Rates, s)
 	case "curve":

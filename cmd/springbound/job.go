@@ -80,22 +80,30 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 		printWarnings(findings, s)
 	}
 	scaleRecharge(p)
-	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
-		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: c.Workers, Progress: j.progress.report,
-	})
-	if err != nil {
+	if err := j.build(ctx, c.Workers); err != nil {
 		return nil, err
 	}
-	j.field, err = adjoint.NewField(model, p.Wells, p.Receptors)
+	return j, nil
+}
+
+// build meshes, assembles, factors and settles the state without pumping.
+func (j *job) build(ctx context.Context, workers int) error {
+	p := j.project
+	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
+		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: workers, Progress: j.progress.report,
+	})
 	if err != nil {
-		return nil, err
+		return err
+	}
+	if j.field, err = adjoint.NewField(model, p.Wells, p.Receptors); err != nil {
+		return err
 	}
 	base, err := j.field.BaseState(ctx)
 	if err != nil {
-		return nil, err
+		return err
 	}
 	j.field.Switching = len(base.Off) > 0
-	return j, nil
+	return nil
 }
 
 // scaleRecharge applies the default operating state's recharge factor.

@@ -22,6 +22,15 @@ func newMaps(j *job) *maps { return &maps{job: j} }
 
 // add contours a nodal field and writes it in longitude and latitude. unitKey is the property that holds the level, with its unit.
 func (m *maps) add(name, unitKey string, field []float64) error {
+	low, high := math.Inf(1), math.Inf(-1)
+	for _, v := range field {
+		low, high = math.Min(low, v), math.Max(high, v)
+	}
+	return m.addLevels(name, unitKey, field, gisio.NiceLevels(low, high, contourCount), nil)
+}
+
+// addLevels is add for given levels; label, where not nil, turns a level into the number written.
+func (m *maps) addLevels(name, unitKey string, field, levels []float64, label func(level float64) float64) error {
 	if m.mesh == nil {
 		msh := m.job.field.Model.Mesh
 		prepared, err := gisio.NewContourMesh(msh.X, msh.Y, msh.Triangles)
@@ -30,14 +39,14 @@ func (m *maps) add(name, unitKey string, field []float64) error {
 		}
 		m.mesh = prepared
 	}
-	low, high := math.Inf(1), math.Inf(-1)
-	for _, v := range field {
-		low, high = math.Min(low, v), math.Max(high, v)
-	}
-	levels := gisio.NiceLevels(low, high, contourCount)
 	contours, err := m.mesh.Contours(field, levels)
 	if err != nil {
 		return fmt.Errorf("%s: %w", name, err)
+	}
+	for i := range contours {
+		if label != nil {
+			contours[i].Level = label(contours[i].Level)
+		}
 	}
 	data, err := gisio.WriteContours(contours, m.job.project.Plane, unitKey)
 	if err != nil {

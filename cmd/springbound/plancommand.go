@@ -13,6 +13,9 @@ import (
 	"springbound/plan/workbook"
 )
 
+// planningAid ends every printed result.
+const planningAid = "A planning aid (steady, confined, single layer): to be reviewed and signed by a qualified person under local rules."
+
 // runPlan is the main job.
 func runPlan(ctx context.Context, c solving, s streams) error {
 	j, err := newJob(ctx, c, s)
@@ -171,7 +174,7 @@ func printPlan(w io.Writer, r *plan.Report, dir, name string) {
 	}
 	fmt.Fprintf(w, "\nchecks: %d, of which %d failed; not assessed: %d points, listed in the workbook\n", len(r.Checks), bad, len(r.NotAssessed))
 	fmt.Fprintf(w, "written to %s: %s.xlsx, %s.json, contours\n", dir, name, name)
-	fmt.Fprintln(w, "A planning aid (steady, confined, single layer): to be reviewed and signed by a qualified person under local rules.")
+	fmt.Fprintln(w, planningAid)
 }
 
 func who(w plan.WellResult) string {
