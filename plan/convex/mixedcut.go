@@ -16,6 +16,9 @@ const (
 	cutNegligible   = 1e-9 // coefficient, relative to the largest, that is replaced by its bound
 	cutPerRoundMost = 80
 
+	// rootWeightWork caps the work on exact weights after each round [multiplications]; beyond it those of the round before guide.
+	rootWeightWork = 20_000_000
+
 	// cutRelief moves the right side of each cut outward, relative to its terms: a thousand times the rounding of its making, so
 	// that no plan is lost.
 	cutRelief = 1e-9
@@ -63,8 +66,8 @@ func (s *search) cutRounds() bool {
 		if len(chosen) == 0 {
 			break
 		}
-		before := s.keepState()
-		s.extend(append(append([]coreRow(nil), s.cuts...), chosen...), before)
+		kept, state := s.touched()
+		s.extend(append(kept, chosen...), state)
 		switch s.lp.solve(s.ctx, nodePivots, s.cutoff()) {
 		case lpOptimal:
 		case lpBeaten:
@@ -87,7 +90,6 @@ func (s *search) cutRounds() bool {
 			stall = 0
 		}
 		last = cost
-		s.dropSlack()
 		s.noteRoot()
 		s.tightenRoot()
 		s.local.copyFrom(s.global.lo, s.global.hi)
@@ -95,6 +97,7 @@ func (s *search) cutRounds() bool {
 	}
 	s.local.copyFrom(s.global.lo, s.global.hi)
 	s.sync()
+	s.dropSlack()
 	switch s.lp.solve(s.ctx, nodePivots, s.cutoff()) {
 	case lpOptimal:
 		s.rootBound = math.Max(s.rootBound, s.raise(s.lp.objective()))
@@ -119,9 +122,6 @@ func (s *search) withoutCuts() {
 	s.noteRoot()
 }
 
-// keepState returns the places of the present basis.
-func (s *search) keepState() *lpState { return s.lp.state() }
-
 // extend makes the linear programme anew with the given cuts and starts it from a basis of the former one; cuts that the basis
 // does not know are basic.
 func (s *search) extend(cuts []coreRow, from *lpState) {
@@ -132,14 +132,14 @@ func (s *search) extend(cuts []coreRow, from *lpState) {
 	s.sync()
 	if from != nil {
 		s.lp.load(from)
-		s.lp.stale = true
+		k := s.lp.e.kern.k
+		s.lp.stale = k*k*s.lp.e.rows <= rootWeightWork
 	}
 }
 
-// dropSlack leaves out the cuts that the present optimum does not touch.
-func (s *search) dropSlack() {
-	e := s.lp.e
-	first := e.n + len(s.c.rows)
+// touched returns the cuts that the present optimum touches and its basis without the others.
+func (s *search) touched() ([]coreRow, *lpState) {
+	first := s.lp.e.n + len(s.c.rows)
 	state := s.lp.state()
 	var kept []coreRow
 	place, weight := state.place[:first:first], state.weight[:first:first]
@@ -149,11 +149,14 @@ func (s *search) dropSlack() {
 			place, weight = append(place, state.place[v]), append(weight, state.weight[v])
 		}
 	}
-	if len(kept) == len(s.cuts) {
-		return
+	return kept, &lpState{place: place, weight: weight}
+}
+
+// dropSlack leaves out the cuts that the present optimum does not touch.
+func (s *search) dropSlack() {
+	if kept, state := s.touched(); len(kept) < len(s.cuts) {
+		s.extend(kept, state)
 	}
-	s.extend(kept, &lpState{place: place, weight: weight})
-	s.lp.solve(s.ctx, nodePivots, math.Inf(1))
 }
 
 // newCutter prepares the search for cuts at x.

@@ -158,6 +158,12 @@ func (k *cutter) standard(s summed, variable bool) ([]roundTerm, float64, bool) 
 	}
 	sort.Ints(whole)
 	k.wholeList = whole
+	terms, limit, ok = k.standardWhole(terms, whole, limit, ok)
+	return k.standardSlacks(terms, s.slacks), limit, ok
+}
+
+// standardWhole adds the terms of whole columns, measured from the nearer bound, and empties k.a.
+func (k *cutter) standardWhole(terms []roundTerm, whole []int, limit float64, ok bool) ([]roundTerm, float64, bool) {
 	for _, j := range whole {
 		v := k.a[j]
 		k.a[j] = 0
@@ -176,7 +182,12 @@ func (k *cutter) standard(s summed, variable bool) ([]roundTerm, float64, bool) 
 		limit -= v * t.constant
 		terms = append(terms, t)
 	}
-	for _, sl := range s.slacks {
+	return terms, limit, ok
+}
+
+// standardSlacks adds the terms of the slacks.
+func (k *cutter) standardSlacks(terms []roundTerm, slacks []slackTerm) []roundTerm {
+	for _, sl := range slacks {
 		r := k.rows[sl.row]
 		at, bound := k.activity[sl.row]-r.lower, r.lower
 		if sl.upper {
@@ -185,7 +196,7 @@ func (k *cutter) standard(s summed, variable bool) ([]roundTerm, float64, bool) 
 		terms = append(terms, roundTerm{column: -1, slack: sl, whole: r.whole && bound == math.Trunc(bound), value: sl.coefficient,
 			at: math.Max(0, at), reach: math.Inf(1)})
 	}
-	return terms, limit, ok
+	return terms
 }
 
 func (k *cutter) listed(list []int, j int) bool {

@@ -248,45 +248,24 @@ func (s *search) visit(n *mixedNode) (preferred, other *mixedNode) {
 		n.start = nil
 	}
 	for {
-		end := s.lp.solve(s.ctx, nodePivots, s.cutoff())
-		if end == lpEmpty || end == lpBeaten {
-			if end == lpBeaten {
-				s.exclude(math.Max(n.bound, s.raise(s.lp.objective())))
-			}
-			s.proof.leaf(n.proof, s.lp, end)
-			s.guide.failed(n)
+		cost, open := s.solveNode(n)
+		if !open {
 			return nil, nil
 		}
-		if end == lpHalted {
-			s.putBack(n)
-			return nil, nil
-		}
-		if end != lpOptimal {
+		if math.IsNaN(cost) {
 			return s.undecided(n)
-		}
-		cost := s.lp.objective()
-		s.guide.learn(n, cost)
-		n.part = 0
-		n.bound = math.Max(n.bound, s.raise(cost))
-		if n.bound > s.cutoff() {
-			s.exclude(n.bound)
-			s.proof.leaf(n.proof, s.lp, lpBeaten)
-			return nil, nil
 		}
 		x := s.values()
 		list := s.fractional(x)
 		if len(list) == 0 {
-			if s.settled(n, x, cost) {
-				s.exclude(n.bound)
-				s.proof.leaf(n.proof, s.lp, lpBeaten)
-				return nil, nil
+			if !s.settled(n, x, cost) {
+				return s.branchOnRest(n, x)
 			}
-			return s.branchOnRest(n, x)
+			s.exclude(n.bound)
+			s.proof.leaf(n.proof, s.lp, lpBeaten)
+			return nil, nil
 		}
-		s.roundings(x)
-		s.diveNow(n, x)
-		s.neighbours(x)
-		if n.bound > s.cutoff() {
+		if s.lookForPlans(n, x); n.bound > s.cutoff() {
 			s.exclude(n.bound)
 			s.proof.leaf(n.proof, s.lp, lpBeaten)
 			return nil, nil
@@ -310,6 +289,44 @@ func (s *search) visit(n *mixedNode) (preferred, other *mixedNode) {
 		}
 		return s.children(n, choice, cost, list)
 	}
+}
+
+// solveNode solves the linear programme of a node, whose bounds are set. open is false when the node is done with; the cost is NaN
+// when rounding gave no answer.
+func (s *search) solveNode(n *mixedNode) (cost float64, open bool) {
+	end := s.lp.solve(s.ctx, nodePivots, s.cutoff())
+	switch end {
+	case lpEmpty, lpBeaten:
+		if end == lpBeaten {
+			s.exclude(math.Max(n.bound, s.raise(s.lp.objective())))
+		}
+		s.proof.leaf(n.proof, s.lp, end)
+		s.guide.failed(n)
+		return 0, false
+	case lpHalted:
+		s.putBack(n)
+		return 0, false
+	case lpOptimal:
+	default:
+		return math.NaN(), true
+	}
+	cost = s.lp.objective()
+	s.guide.learn(n, cost)
+	n.part = 0
+	n.bound = math.Max(n.bound, s.raise(cost))
+	if n.bound > s.cutoff() {
+		s.exclude(n.bound)
+		s.proof.leaf(n.proof, s.lp, lpBeaten)
+		return 0, false
+	}
+	return cost, true
+}
+
+// lookForPlans lets the heuristics look at a node now and then.
+func (s *search) lookForPlans(n *mixedNode, x []float64) {
+	s.roundings(x)
+	s.diveNow(n, x)
+	s.neighbours(x)
 }
 
 // putBack keeps a node that the context interrupted.
