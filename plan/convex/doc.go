@@ -40,6 +40,16 @@
 // no care. The end is solved for on the bounds that bind. SolveInterior runs it on any problem and SecondOpinion compares: it shares no
 // step with the other two. Infeasible and unbounded problems are shown by the same method on problems that always have an optimum.
 //
+// # Method for whole and zero-or-within columns
+//
+// SolveMixed splits the problem: a whole column is at most k or at least k+1, a well is off or pumps at least its least rate, whose
+// hull 0 <= x <= most needs no helper. Presolve narrows bounds and coefficients (Savelsbergh 1994). At the root cuts are added: sums of
+// rows rounded (Marchand & Wolsey 2001), Gomory's (1960), lifted covers (Balas 1975, Zemel 1989). Columns to split are picked by reliability branching (Achterberg,
+// Koch & Martin 2005); the tree is walked in plunges that start at the least bound or the best estimate. Plans come from rounding, dives
+// and searches around the relaxation and the best plan (Danna, Rothberg & Le Pape 2005). A plan counts once it meets the data; the answer
+// is that of Solve at its switching, and its prices hold there only. CertifyMixed checks the plan always, and the bound where
+// MixedOptions.Proof kept the tree, without cuts and presolve.
+//
 // All methods work in a scaled problem; the factors are powers of two, so that scaling rounds nothing. There is no randomness
 // that is not a fixed sequence and no parallel work: the same problem gives the same bytes.
 //
@@ -79,4 +89,7 @@
 // Goldfarb & Idnani (1983) Mathematical Programming 27, 1-33. Mehrotra (1992) SIAM Journal on Optimization 2, 575-601. Gondzio (1996)
 // Computational Optimization and Applications 6, 137-156. Vanderbei (1995) SIAM Journal on Optimization 5, 100-113. Amestoy, Davis & Duff
 // (1996) SIAM Journal on Matrix Analysis and Applications 17, 886-905. Woodbury (1950) Memorandum Report 42, Princeton.
+// Savelsbergh (1994) ORSA Journal on Computing 6, 445-454. Marchand & Wolsey (2001) Operations Research 49, 363-371. Balas (1975)
+// Mathematical Programming 8, 146-164. Achterberg, Koch & Martin (2005) Operations Research Letters 33, 42-54. Danna, Rothberg & Le Pape
+// (2005) Mathematical Programming 102, 71-90.
 package convex
