@@ -39,6 +39,7 @@ var messageRules = []rule{
 	{"file settings with an unknown key", []edit{{"project.toml", `"rivers.geojson"`, `{file = "rivers.geojson", csr = "EPSG:4326"}`}}},
 	{"file of a wrong type", []edit{{"project.toml", `"rivers.geojson"`, `7`}}},
 	{"aim of no known word", []edit{{"project.toml", `"most-yield"`, `"most-yeild"`}}},
+	{"request that is blank", []edit{{"project.toml", `"most-yield"`, `"closest-to-requests"`}, {"wells.csv", "1440,,1800", ",,1800"}}},
 	{"headroom without demand", []edit{{"project.toml", `"most-yield"`, `"most-headroom"`}}},
 	{"quota of an unknown well", []edit{{"project.toml", `["W3", "W4"]`, `["W3", "W44"]`}}},
 	{"quota without a bound", []edit{{"project.toml", `per_day = "3200 m3"`, ""}}},

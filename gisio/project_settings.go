@@ -78,6 +78,9 @@ func (b *builder) readBrief() {
 	if b.p.Brief.Aim == plan.MostHeadroom && !rec.has("demand") {
 		rec.missing("demand", "the aim most-headroom shares out a demand")
 	}
+	if b.p.Brief.Aim == plan.LeastEnergy && !rec.has("demand") {
+		rec.missing("demand", "the aim least-energy finds the least energy for a demand")
+	}
 	b.readRunning(rec, t)
 	list, ok := t["quota"].([]any)
 	if _, present := t["quota"]; present && !ok {

@@ -82,8 +82,8 @@ var meshSection = Section{Name: "mesh", Title: "[mesh]", About: "All may be left
 }}
 
 var briefSection = Section{Name: "brief", Title: "[brief]", About: "What the plan is asked for.", Fields: []Field{
-	{Name: "aim", Class: Word, Words: []string{"most-yield", "most-headroom"}, Required: "yes", Meaning: "most-yield: largest total rate; most-headroom: largest smallest headroom for the demand", Example: `aim = "most-yield"`},
-	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom", Meaning: "total that the decided wells must give", Example: `demand = "60 L/s"`},
+	{Name: "aim", Class: Word, Words: []string{"most-yield", "most-headroom", "least-energy", "closest-to-requests"}, Required: "yes", Meaning: "most-yield: largest total rate; most-headroom: largest smallest headroom for the demand; least-energy: least pumping energy for the demand, needs pump_efficiency and delivery_level of each decided well; closest-to-requests: least sum of squared differences from the requested rates, each as a share of the well's largest rate, needs requested of each decided well", Example: `aim = "most-yield"`},
+	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom, least-energy", Meaning: "total that the decided wells must give", Example: `demand = "60 L/s"`},
 	{Name: "at_most_running", Class: Whole, Bound: ">= 0", Meaning: "how many of the decided wells may pump at once; left out: any number", Example: `at_most_running = 4`},
 }}
 

@@ -161,6 +161,7 @@ func (b *builder) buildWells() {
 		w.Radius = p.radius()
 		b.wellRates(p, &w)
 		b.wellLevels(p, &w)
+		b.wellForAim(p, &w)
 		at, known := geometryOf[orb.Point](p, "one point")
 		if known {
 			w.At = at

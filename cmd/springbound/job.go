@@ -11,6 +11,7 @@ import (
 	"springbound/aquifer"
 	"springbound/gisio"
 	"springbound/plan"
+	"springbound/wells"
 )
 
 // job is a project with its model: what every solving command starts from.
@@ -97,6 +98,9 @@ func (j *job) build(ctx context.Context, workers int) error {
 	}
 	if j.field, err = adjoint.NewField(model, p.Wells, p.Receptors); err != nil {
 		return err
+	}
+	if p.Brief.Aim == plan.LeastEnergy { // every lift answers to every rate
+		j.field.WatchLevels(func(w wells.Well) bool { return w.Mode == wells.Decided && !w.Outage })
 	}
 	base, err := j.field.BaseState(ctx)
 	if err != nil {
