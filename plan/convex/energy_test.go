@@ -106,10 +106,10 @@ func energyProblem(t testing.TB, wells, limits, modes int, seed uint64) *Problem
 	}
 	for range limits {
 		r := Row{Coefficients: make([]float64, wells), Lower: -inf}
-		at := rng.Float64()
+		at, share := rng.Float64(), 0.34+0.1*rng.Float64() // of what full pumping does, against 0.35 of the demand
 		for j, x := range place {
 			r.Coefficients[j] = 1e-4 * math.Exp(-20*math.Abs(x-at)) * (1 + 0.1*rng.Float64())
-			r.Upper += 0.4 * r.Coefficients[j] * columns[j].Upper
+			r.Upper += share * r.Coefficients[j] * columns[j].Upper
 		}
 		if _, err := p.AddRow(r); err != nil {
 			t.Fatal(err)
