@@ -6,9 +6,10 @@ import (
 )
 
 const (
-	// guessRounds bounds the rounds that change many bounds at once to guess the active set, guessPatience those without fewer faults.
-	guessRounds   = 15
-	guessPatience = 3
+	// guessRounds bounds the rounds that change many bounds at once to guess the active set, guessPatience those without fewer faults: the
+	// number often rises for a few rounds before it falls to nothing, and a round costs as much as a few single steps.
+	guessRounds   = 40
+	guessPatience = 8
 )
 
 // begin sets places and makes them dual feasible: from the given basis, or from all columns free and the equations. Then whole
