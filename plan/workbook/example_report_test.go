@@ -182,7 +182,9 @@ func limitOf(r *plan.Report, k int, row []float64, l plan.LimitResult) plan.Limi
 	case l.Passed:
 		l.Sentence = "Passed by " + figureText(-l.Headroom) + "."
 	case l.Binds:
-		l.Sentence = "Binds. W1 contributes 66 %, W3 34 %. One more centimetre is worth 30 m³/d."
+		l.Sentence = "Binds. W1 contributes 66 %, W3 34 %. One more centimetre is worth 30 m³/d, up to 16 cm more; then W3 stands still."
+		low, high, price := l.Limit-0.12, l.Limit+0.16, l.ShadowPrice
+		l.Range = &plan.PriceRange{Tighter: &price, TighterTo: &low, TighterThen: "W1 stands still", Looser: &price, LooserTo: &high, LooserThen: "W3 stands still"}
 	default:
 		l.Sentence = "Holds with " + figureText(l.Headroom) + " to spare."
 	}

@@ -214,11 +214,11 @@ func (b *book) bindingPart(row int) int {
 	row = s.sectionHead(row, readEnd, "What holds the plan: binding limits, with what each is worth")
 	s.heads(row, 1, "Limit", "As entered", ">Price", "In words", "Source")
 	first := row
-	put := func(what, entered string, price float64, unit, said, source string) {
+	put := func(what, entered string, x *plan.PriceRange, price float64, unit, said, source string) {
 		row++
 		s.text(row, 1, what, line)
 		s.text(row, 2, entered, line)
-		s.text(row, 3, b.priceText(price, unit), rightWords)
+		s.text(row, 3, b.priceBothText(x, price, unit), rightWords)
 		s.text(row, 4, said, line)
 		s.text(row, 5, orWords(source, notStated), line)
 	}
@@ -226,28 +226,31 @@ func (b *book) bindingPart(row int) int {
 		for _, l := range rec.Limits {
 			if l.Binds || l.Passed {
 				put(joinFilled(": ", joinFilled(" ", rec.ID, rec.Name), limitWords(rec, l)), limitText(l),
-					l.ShadowPrice, priceUnit(l.Unit, l.Quantity), l.Sentence, l.Source)
+					l.Range, l.ShadowPrice, priceUnit(l.Unit, l.Quantity), l.Sentence, l.Source)
 			}
 		}
 	}
 	for _, w := range r.Wells {
 		if w.LevelShadowPrice != 0 {
-			put("Lowest level in well "+w.ID, fmt.Sprintf("%s m", figureText(value(w.LowestLevel))), w.LevelShadowPrice, "m", w.LowestReason, w.Source)
+			put("Lowest level in well "+w.ID, fmt.Sprintf("%s m", figureText(value(w.LowestLevel))), w.LevelRange, w.LevelShadowPrice, "m",
+				joinFilled(". ", w.LowestReason, holdsWords(w.LevelRange, value(w.LowestLevel), 1, "m")), w.Source)
 		}
 		if w.AtBound == "max" && w.ShadowPrice != 0 {
-			put("Largest rate of well "+w.ID, figureText(w.Max)+" m³/d", w.ShadowPrice, "m³/d", "", w.MaxSource)
+			put("Largest rate of well "+w.ID, figureText(w.Max)+" m³/d", w.RateRange, w.ShadowPrice, "m³/d", holdsWords(w.RateRange, w.Max, 1, "m³/d"), w.MaxSource)
 		}
 		if w.AtBound == "min" && w.ShadowPrice != 0 && w.Min != 0 {
-			put("Least rate of well "+w.ID, figureText(w.Min)+" m³/d", w.ShadowPrice, "m³/d", "", w.Source)
+			put("Least rate of well "+w.ID, figureText(w.Min)+" m³/d", w.RateRange, w.ShadowPrice, "m³/d", holdsWords(w.RateRange, w.Min, 1, "m³/d"), w.Source)
 		}
 	}
 	for _, q := range r.Quotas {
 		if q.Binds {
-			put(joinFilled(" · ", q.Name, q.Holder), fmt.Sprintf("%s m³ %s", figureText(q.Entered), q.Basis), q.ShadowPrice, "m³/d", wellList(q.Wells), q.Source)
+			put(joinFilled(" · ", q.Name, q.Holder), fmt.Sprintf("%s m³ %s", figureText(q.Entered), q.Basis), q.Range, q.ShadowPrice, "m³/d",
+				joinFilled(". ", wellList(q.Wells), holdsWords(q.Range, q.Limit, entered(q), "m³ "+q.Basis)), q.Source)
 		}
 	}
 	if d := r.DemandPrice; d != nil && *d != 0 {
-		put("Demand", figureText(value(r.Demand))+" m³/d", *d, "m³/d", "change of the aim for each m³/d of demand", "entered")
+		put("Demand", figureText(value(r.Demand))+" m³/d", nil, *d, "m³/d",
+			joinFilled(". ", "Change of the aim for each m³/d of demand", holdsWords(r.DemandRange, value(r.Demand), 1, "m³/d")), "entered")
 	}
 	if row == first {
 		row++
@@ -256,7 +259,7 @@ func (b *book) bindingPart(row int) int {
 	row++
 	remark := "A price is what one more unit of a limit would bring. It holds near the plan, for this model only."
 	if r.NotUnique {
-		remark += " Other plans are as good as this one."
+		remark += " Other plans are as good as this one; the cautions name the wells that could trade places."
 	}
 	return s.paragraph(row, readEnd, remark, muted)
 }

@@ -1,7 +1,6 @@
 package workbook
 
 import (
-	"fmt"
 	"math"
 	"strings"
 
@@ -25,6 +24,7 @@ const (
 	recOthers // others' part; limits: status
 	recValid  // limits: price
 	recWords  // limits: sentence
+	recHolds  // limits: over which values the price holds
 	recFrom   // source
 	recEnd    = recFrom
 )
@@ -44,7 +44,7 @@ type limitLine struct {
 // fillReceptors writes effects on levels and effects on flows, each as receptors and then their limits.
 func (b *book) fillReceptors() {
 	s := b.receptors
-	s.setWidths(1, 10, 19, 17, 17, 6.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 16, 11, 36, 22)
+	s.setWidths(1, 10, 19, 17, 17, 6.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 9.5, 16, 11, 32, 22, 20)
 	s.page = pageSetup{landscape: true, wide: 1, freezeRow: changedRow + 2, freezeColumn: recName + 1}
 	row := firstRow
 	for _, part := range []struct {
@@ -75,7 +75,7 @@ func (b *book) fillReceptors() {
 func (b *book) receptorTable(row int, members []int) int {
 	s := b.receptors
 	s.heads(row, recID, "Receptor", "Name", "Kind", "Owner; use", "Unit", ">No pumping", ">Others at recent rates", ">Others at licensed rates",
-		">At the plan", ">Now", ">Change now", ">Own wells' part", ">Existing users' part", "Table valid", "What the values are; place; note", "Source; date; field check")
+		">At the plan", ">Now", ">Change now", ">Own wells' part", ">Existing users' part", "Table valid", "What the values are; place; note", "", "Source; date; field check")
 	first := row + 1
 	for _, i := range members {
 		row++
@@ -102,7 +102,7 @@ func (b *book) receptorRow(row, i int) {
 	s.text(row, recKind, kindWords(r.Kind), line)
 	s.text(row, recOwner, joinFilled("; ", r.Owner, r.Use), line)
 	s.text(row, recUnit, unitWords(r.Unit), line)
-	s.text(row, recWords, receptorNote(r), line)
+	s.across(row, recWords, recHolds, receptorNote(r), line)
 	checked := "register only"
 	if r.FieldChecked {
 		checked = "checked in the field"
@@ -190,7 +190,7 @@ func (b *book) brokenSprings() term {
 func (b *book) limitTable(row int, members []int) int {
 	s := b.receptors
 	s.heads(row, recID, "Limit", "Receptor", "What is limited", "What counts", "Unit", ">Limit", ">Kept back\nshare", ">Limit less what is kept back",
-		">At the plan", ">Now", ">Headroom now", ">Headroom share", "Now the limit", ">Price at the plan", "In words, at the plan", "Source; date")
+		">At the plan", ">Now", ">Headroom now", ">Headroom share", "Now the limit", ">Price at the plan", "In words, at the plan", "The price holds", "Source; date")
 	first := row + 1
 	for _, i := range members {
 		for k := range b.report.Receptors[i].Limits {
@@ -262,6 +262,11 @@ func (b *book) limitRow(row, i, k int) {
 	}
 	s.text(row, recUnit, unitWords(unit), line)
 	s.text(row, recWords, l.Sentence, line)
+	holds := ""
+	if l.Binds {
+		holds = limitRange(l)
+	}
+	s.text(row, recHolds, holds, line)
 	s.text(row, recFrom, joinFilled("; ", l.Source, l.Date, enteredWords(l)), line)
 	format := unitFormat(unit, []float64{l.Limit}, l.Limit, l.Value)
 	if unit == "m" {
@@ -288,8 +293,7 @@ func (b *book) limitRow(row, i, k int) {
 	s.value(row, recPlan, l.Value, number)
 	b.limitFormulas(row, i, k, unit, number)
 	if l.ShadowPrice != 0 {
-		s.text(row, recValid, fmt.Sprintf("%s %s per %s", figureText(l.ShadowPrice), aimUnit(b.report.Aim), priceUnit(unit, l.Quantity)),
-			rightWords)
+		s.text(row, recValid, b.priceBothText(l.Range, l.ShadowPrice, priceUnit(unit, l.Quantity)), rightWords)
 	} else {
 		s.blank(row, recValid, line)
 	}
