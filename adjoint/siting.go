@@ -14,6 +14,7 @@ type SitingLimit struct {
 	Side       float64 // +1: a growing change uses the limit up; -1: a falling one does
 	Room       float64 // what is left of it [row's unit]
 	Price      float64 // change of the aim per unit of further change [aim per row's unit]
+	ByPlace    bool    // of a worst place: elsewhere in its area the room is larger by as much as the drawdown is smaller there
 	Negligible float64 // a use per rate not above this counts as none [row's unit per m³/d]
 }
 
@@ -32,9 +33,14 @@ type Siting struct {
 // LargestRate is the largest rate at a node that keeps every limit while the other rates stay; +Inf where no limit is touched [m³/d].
 func (s *Siting) LargestRate(node int32) float64 { return 1 / s.Use[node] }
 
+// mostPlaces bounds at how many nodes of an area with a worst place its limits are looked at, one solve a node: influence is smooth, so that
+// every so many-th node of a finer mesh tells as much.
+const mostPlaces = 400
+
 // Siting makes the adjoint solves of all rows in a state and reduces the influence fields, one after the other, to what a further well
 // anywhere would meet: by reciprocity the influence of a row at x is its change per unit rate pumped at x. Fields are not
-// kept, and nothing is factored. For rows that are not linear the result holds near the state's rates.
+// kept, and nothing is factored. A limit on the worst place of an area is kept at each of its nodes, mostPlaces of them at most; its cost is that at
+// the worst place now. Where features switch, the result holds near the state's rates.
 func (f *Field) Siting(ctx context.Context, state *State, limits []SitingLimit, progress func(done, total int)) (*Siting, error) {
 	n := len(f.Model.Mesh.X)
 	s := &Siting{Use: make([]float64, n), First: make([]int, n), Cost: make([]float64, n), Relief: make([]float64, n)}
@@ -43,26 +49,71 @@ func (f *Field) Siting(ctx context.Context, state *State, limits []SitingLimit, 
 	}
 	onField := func(row int, z []float64) error {
 		for k := range limits {
-			if limits[k].Row == row {
-				s.take(k, &limits[k], z)
+			l := &limits[k]
+			if l.Row != row {
+				continue
+			}
+			s.charge(l, z)
+			if !f.worstPlace(row) || l.Side < 0 {
+				s.touch(k, l, z)
 			}
 		}
 		return nil
 	}
-	_, err := f.Sensitivities(ctx, state, Options{Field: onField, Progress: progress})
-	return s, err
+	lin, err := f.Sensitivities(ctx, state, Options{Field: onField, Progress: progress})
+	if err != nil {
+		return nil, err
+	}
+	for k := range limits {
+		if row := limits[k].Row; f.worstPlace(row) && limits[k].Side > 0 {
+			if err := f.sitePlaces(ctx, s, k, &limits[k], state, lin.Rows[row].Place); err != nil {
+				return nil, err
+			}
+		}
+	}
+	return s, nil
 }
 
-// take adds one limit.
-func (s *Siting) take(k int, l *SitingLimit, z []float64) {
+func (f *Field) worstPlace(row int) bool { return f.watched[row].worst != nil }
+
+// sitePlaces adds a limit on the worst place of an area at the area's nodes.
+func (f *Field) sitePlaces(ctx context.Context, s *Siting, k int, l *SitingLimit, state *State, worst int32) error {
+	all, drawdown := f.watched[l.Row].worst, state.drawdown()
+	places := []int32{worst}
+	for i := 0; i < len(all); i += 1 + len(all)/mostPlaces {
+		places = append(places, all[i])
+	}
+	fs := make([]Functional, len(places))
+	for i, n := range places {
+		fs[i] = Functional{Name: "place of an area", Quantity: f.Model.HeadAt(n)}
+	}
+	_, err := Solve(ctx, f.Model, state.State, fs, nil, func(i int, z []float64) error {
+		at := *l
+		if l.ByPlace {
+			at.Room += math.Max(0, drawdown[worst]-drawdown[places[i]])
+		}
+		s.touch(k, &at, z)
+		return nil
+	}, nil)
+	return err
+}
+
+// charge adds what a limit costs or gains.
+func (s *Siting) charge(l *SitingLimit, z []float64) {
 	for i, v := range z {
-		use := l.Side * v
-		switch {
+		switch use := l.Side * v; {
 		case use > 0:
 			s.Cost[i] += l.Price * use
 		case use < 0:
 			s.Relief[i] -= l.Price * use
 		}
+	}
+}
+
+// touch adds the share of what is left of a limit that a unit rate takes.
+func (s *Siting) touch(k int, l *SitingLimit, z []float64) {
+	for i, v := range z {
+		use := l.Side * v
 		if !(use > l.Negligible) {
 			continue
 		}

@@ -12,6 +12,7 @@ type SitingLimit struct {
 	Room     float64 // further change that the kept rates leave, the reserve kept back; 0 where nothing is left or the limit is passed [unit]
 	Size     float64 // the limit's own size; 0 for a hard limit [unit]
 	Passed   bool    // the kept rates pass the limit already
+	AllWells bool    // a limit on the change that every well causes
 	Price    float64 // change of the aim per unit of further change allowed [aim per unit]
 }
 
@@ -61,7 +62,8 @@ func (s *SitingLimit) leave(room float64) {
 
 func sitingLimit(r ReceptorResult, l LimitResult) SitingLimit {
 	unit, side, edge := limitFrame(r, l)
-	s := SitingLimit{Receptor: r.ID, Limit: l.ID, Unit: r.Unit, Side: side, Size: math.Abs(edge), Passed: l.Passed}
+	s := SitingLimit{Receptor: r.ID, Limit: l.ID, Unit: r.Unit, Side: side, Size: math.Abs(edge), Passed: l.Passed,
+		AllWells: l.Counts == "cumulative" && l.Quantity != "value"}
 	s.leave(l.Headroom*unit - l.Reserve*s.Size)
 	return s
 }

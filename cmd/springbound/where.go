@@ -209,7 +209,7 @@ func (w *where) reduce(ctx context.Context, planState *adjoint.State) error {
 	}
 	limits := make([]adjoint.SitingLimit, len(w.limits))
 	for k, l := range w.limits {
-		limits[k] = adjoint.SitingLimit{Row: j.rowOf(l), Side: l.Side, Room: l.Room, Price: l.Price, Negligible: l.Negligible(scale)}
+		limits[k] = adjoint.SitingLimit{Row: j.rowOf(l), Side: l.Side, Room: l.Room, Price: l.Price, ByPlace: l.AllWells, Negligible: l.Negligible(scale)}
 	}
 	progress := func(done, total int) { j.progress.report("influence fields", done, total) }
 	var err error

@@ -13,6 +13,7 @@ import (
 	"testing"
 
 	"springbound/adjoint"
+	"springbound/aquifer"
 	"springbound/gisio"
 	"springbound/plan"
 	"springbound/wells"
@@ -244,5 +245,51 @@ func TestWhereRefusals(t *testing.T) {
 	files, out := whereFiles(t, exitDone, d.write(t))
 	if files["siting/value.geojson"] != nil || !strings.Contains(out, "defined for the aim most-yield only") {
 		t.Errorf("another aim: %s", out)
+	}
+}
+
+// A limit on the worst place of an area holds all over it: checked by full solves with a well at nodes in and around the area.
+func TestLargestRateKeepsAWorstPlace(t *testing.T) {
+	w := sited(t, filepath.Join(moduleRoot(t), "examples", "varrow-bight"), request{spacing: 200, count: 10, keep: "others", radius: 0.2})
+	m, area := w.job.field.Model, -1
+	for i, o := range m.Site.Outlines {
+		if o.Name == "receptor SEDGE-LOW" {
+			area = i
+		}
+	}
+	places := m.NodesIn(area)
+	checked := 0
+	for i, k := range w.siting.First {
+		if !w.open[i] || k < 0 || limitName(w.limits[k]) != "fen-worst on SEDGE-LOW" || checked == 10 {
+			continue
+		}
+		checked++
+		sinks := append(w.job.field.Sinks(w.keptState.Rates), aquifer.Sink{Node: int32(i), Rate: w.siting.LargestRate(int32(i))})
+		h, err := m.Heads(context.Background(), sinks)
+		if err != nil {
+			t.Fatal(err)
+		}
+		largest := 0.0
+		for _, n := range places {
+			largest = math.Max(largest, w.keptState.Base[n]-h[n])
+		}
+		// the limit is 0.75 m; heads of 10 m and changes by the same solves leave about 1e-12 m
+		if !(math.Abs(largest-0.75) <= 1e-9) {
+			t.Errorf("node %d: largest drawdown %.12f m, limit 0.75 m", i, largest)
+		}
+	}
+	if checked == 0 {
+		t.Error("the limit is reached first nowhere: nothing was checked")
+	}
+}
+
+// Where features switch, the result says that it is local.
+func TestWhereSaysLocalWhereFeaturesSwitch(t *testing.T) {
+	m := turns(1)[0]
+	d := twoCanals(m)
+	d.layers["springs"] = []feature{{map[string]any{"name": "idle", "outlet_level_m": 10.5, "conductance_m2_per_d": 200, "effective_radius_m": 2}, "Point", m.at(1500, 300)}}
+	w := sited(t, d.write(t), request{spacing: 200, count: 3, keep: "plan", radius: 0.2})
+	if !w.job.field.Switching || !strings.Contains(strings.Join(w.result.Notes, " "), "hold near it only") {
+		t.Errorf("switching %v: %v", w.job.field.Switching, w.result.Notes)
 	}
 }

@@ -147,7 +147,7 @@ func (w *where) notes() []string {
 	}
 	for _, r := range w.keptState.Rows {
 		if rec := r.Receptor; rec >= 0 && !r.Linear && r.Place >= 0 {
-			out = append(out, fmt.Sprintf("%s is the worst place of an area: its influence is that of its worst place now; a well near it may move the worst place and then does more.", w.job.field.Receptors[rec].ID))
+			out = append(out, fmt.Sprintf("%s is the worst place of an area: the largest further rate keeps its limit all over the area, while the value counts its worst place at the plan only; a well near it may move that place.", w.job.field.Receptors[rec].ID))
 		}
 	}
 	return out
