@@ -154,7 +154,7 @@ func (p *planner) check(r *Report, rates []float64, resolved *lines) {
 			add("Limit "+l.ID+" at "+s.receptorName(l.Receptor), notDone, p.assessed[k])
 		}
 	}
-	add("Demand with the largest well out of service", notDone, "one plan is computed, with the wells that the brief has in service")
+	p.checkFirm(r, add)
 }
 
 func (p *planner) checkCertificate(add func(name, result, detail string)) {

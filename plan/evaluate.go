@@ -69,6 +69,7 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 	p.worstMargin(r)
 	p.audit(r, resolved)
 	p.check(r, rates, resolved)
+	r.Firm = p.firm
 	if r.Switching = p.switchingResult(); r.Switching != nil {
 		s.cautions.addf("%s", r.Switching.Sentence)
 	}

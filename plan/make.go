@@ -168,6 +168,11 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 			o.Progress(Progress{Round: round, Total: p.setup.total(rates), Cuts: cuts})
 		}
 		if cuts == 0 {
+			if o.Firm {
+				if p.firm, err = p.firmCapacity(ctx, rates); err != nil {
+					return nil, err
+				}
+			}
 			return p.finish(ctx, g, sol, shown, rates)
 		}
 		if round == o.rounds() {

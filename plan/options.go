@@ -6,6 +6,8 @@ import "fmt"
 type Options struct {
 	// MaxRounds bounds how often the aquifer is linearised at a new plan when rows are not linear; 0 stands for 200.
 	MaxRounds int
+	// Firm asks for the firm capacity: a further plan with each well out of service.
+	Firm bool
 	// Progress, when given, is called after each round from the calling goroutine.
 	Progress func(Progress)
 }

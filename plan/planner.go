@@ -37,6 +37,7 @@ type planner struct {
 	runs         []bool    // of each well: it runs; nil: there is nothing to choose, or it is not chosen yet
 	lastRates    []float64 // of the last round, where a search may begin
 	search       search
+	firm         *FirmCapacity // nil when it was not asked for
 
 	local bool // a limit on a row that is not linear bounds it from below: the plan is locally best
 }

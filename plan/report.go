@@ -46,8 +46,9 @@ type Report struct {
 	CaptureWells  []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
 	Balances      []Balance        `json:"balances"`      // without pumping, and at the plan
 	NoFlow        []NoFlowStretch  `json:"no_flow_outline"`
-	Switching     *Switching       `json:"switching"` // which wells run; null when there was nothing to choose
-	Conflict      *Conflict        `json:"conflict"`  // why no plan exists; null when there is one
+	Switching     *Switching       `json:"switching"`     // which wells run; null when there was nothing to choose
+	Firm          *FirmCapacity    `json:"firm_capacity"` // null when it was not asked for
+	Conflict      *Conflict        `json:"conflict"`      // why no plan exists; null when there is one
 	Audit         Audit            `json:"audit"`
 	Checks        []Check          `json:"checks"`
 	HandFormula   *HandFormula     `json:"hand_formula"`
@@ -230,6 +231,26 @@ type NoFlowStretch struct {
 	From     string  `json:"from"`
 	Length   float64 `json:"length_m"`
 	Drawdown float64 `json:"largest_drawdown_m"`
+}
+
+// FirmCapacity is what the field gives with one well out of service, whatever the demand.
+type FirmCapacity struct {
+	AllInService float64    `json:"all_in_service_m3_per_d"` // largest total with every well in service
+	Well         string     `json:"well"`                    // whose loss leaves the least
+	Total        *float64   `json:"total_m3_per_d"`          // without that well; null: no rates keep every limit then
+	Note         string     `json:"note"`                    // which wells were taken out
+	Lines        []FirmLine `json:"outages"`
+}
+
+// FirmLine is the plan with one well out of service.
+type FirmLine struct {
+	Well      string   `json:"well"`
+	Recharges bool     `json:"recharges"`
+	Feasible  bool     `json:"feasible"`
+	Settled   bool     `json:"settled"` // false: limits on rows that are not linear were still passed a little, or the plan is locally best
+	Total     *float64 `json:"total_m3_per_d"`
+	Change    *float64 `json:"change_m3_per_d"` // against every well in service
+	Binds     []string `json:"binds"`
 }
 
 // Switching says which wells stand still and how sure that choice is.

@@ -74,7 +74,7 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 		return nil, err
 	}
 	make := func() (*plan.Report, error) {
-		return plan.Make(ctx, b, j, plan.Options{Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
+		return plan.Make(ctx, b, j, plan.Options{Firm: true, Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
 	}
 	r, err := make()
 	if err != nil || j.field.Switching {

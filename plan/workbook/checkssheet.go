@@ -17,6 +17,7 @@ func (b *book) fillChecks() {
 	row = b.handTable(row + 1)
 	row = b.resolvedTable(row + 1)
 	row = b.agreementTable(row + 1)
+	row = b.firmTable(row)
 	b.auditTable(row + 1)
 }
 
