@@ -149,6 +149,8 @@ const (
 	countsOwn        = "own"
 	aimMostYield     = "most-yield"
 	aimMostHeadroom  = "most-headroom"
+	aimEnergy        = "least-energy"
+	aimRequests      = "closest-to-requests"
 	assessedYes      = "yes"
 	modeDecided      = "decided"
 	modeOff          = "off"
@@ -184,6 +186,14 @@ const (
 // kindWords prints a kind of receptor.
 func kindWords(kind string) string { return strings.ReplaceAll(kind, "_", " ") }
 
+// worthWords says what loosening a limit brings: an aim that is to be small is saved.
+func worthWords(aim, amount string) string {
+	if aim == aimEnergy || aim == aimRequests {
+		return "saves " + amount + " " + aimUnit(aim)
+	}
+	return "is worth " + amount + " " + aimUnit(aim)
+}
+
 // aimUnit is what a change of the aim is measured in.
 func aimUnit(aim string) string {
 	switch aim {
@@ -191,6 +201,10 @@ func aimUnit(aim string) string {
 		return "m³/d"
 	case aimMostHeadroom:
 		return "of headroom"
+	case aimEnergy:
+		return "kWh/d"
+	case aimRequests:
+		return "of the sum of squared shortfalls"
 	}
 	return "of the aim"
 }

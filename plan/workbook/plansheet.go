@@ -235,7 +235,7 @@ func (b *book) fillBounds(i, row int) {
 	said := ""
 	if w.ShadowPrice != 0 {
 		s.value(row, p.price, w.ShadowPrice, figures(priceFormat(w.ShadowPrice)))
-		said = fmt.Sprintf("1 m³/d more allowed here is worth %s %s.", figureText(w.ShadowPrice), aimUnit(b.report.Aim))
+		said = fmt.Sprintf("1 m³/d more allowed here %s.", worthWords(b.report.Aim, figureText(w.ShadowPrice)))
 		if w.AtBound == "min" {
 			said = fmt.Sprintf("Each m³/d more from this well would cost %s %s.", figureText(w.ShadowPrice), aimUnit(b.report.Aim))
 		}

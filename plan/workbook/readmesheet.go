@@ -17,6 +17,8 @@ func (b *book) fillReadMe() {
 	row := b.resultPart(firstRow)
 	row = b.conflictPart(row)
 	row = b.bindingPart(row + 1)
+	row = b.energyPart(row)
+	row = b.requestPart(row)
 	row = b.waterPart(row + 1)
 	row = b.listPart(row+1, "Not assessed", b.report.NotAssessed, "The report names nothing.")
 	row = b.listPart(row+1, "Cautions", b.report.Cautions, "The report names none.")
@@ -44,6 +46,10 @@ func (b *book) headline() string {
 		return headlineWords
 	case b.report.Aim == aimMostHeadroom:
 		return "Total rate of the plan with the largest smallest headroom"
+	case b.report.Aim == aimEnergy:
+		return "Least pumping energy for the demand: total rate of the plan"
+	case b.report.Aim == aimRequests:
+		return "Closest to the requests: total rate of the plan"
 	}
 	return "Total rate of the plan"
 }
@@ -208,6 +214,17 @@ func conflictWords(m plan.ConflictMember) string {
 	return by
 }
 
+// demandWords says what the price of the demand is.
+func demandWords(aim string) string {
+	switch aim {
+	case aimEnergy:
+		return "kWh that one more m³ of demand takes"
+	case aimRequests:
+		return "Added to the sum of squared shortfalls by each m³/d of demand"
+	}
+	return "Change of the aim for each m³/d of demand"
+}
+
 // bindingPart lists everything that holds the plan back, with its price and source.
 func (b *book) bindingPart(row int) int {
 	s, r := b.readMe, b.report
@@ -250,7 +267,7 @@ func (b *book) bindingPart(row int) int {
 	}
 	if d := r.DemandPrice; d != nil && *d != 0 {
 		put("Demand", figureText(value(r.Demand))+" m³/d", nil, *d, "m³/d",
-			joinFilled(". ", "Change of the aim for each m³/d of demand", holdsWords(r.DemandRange, value(r.Demand), 1, "m³/d")), "entered")
+			joinFilled(". ", demandWords(r.Aim), holdsWords(r.DemandRange, value(r.Demand), 1, "m³/d")), "entered")
 	}
 	if row == first {
 		row++
