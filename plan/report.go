@@ -94,7 +94,7 @@ type WellResult struct {
 	LowestLevel      *float64     `json:"lowest_allowed_level_m"`
 	LowestReason     string       `json:"lowest_allowed_level_reason"`
 	LevelMargin      *float64     `json:"level_margin_m"`
-	LevelShadowPrice float64      `json:"level_shadow_price_m3_per_d_per_m"`
+	LevelShadowPrice float64      `json:"level_shadow_price"`
 	AquiferTop       *float64     `json:"aquifer_top_m"`
 	DrawdownByWell   []float64    `json:"drawdown_per_rate_by_well_d_per_m2"` // at this well's node: one a well, the node's own included
 	PumpingEnergy    *WellEnergy  `json:"pumping_energy"`                     // null where efficiency, delivery level or pumping level is not known

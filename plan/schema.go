@@ -32,10 +32,11 @@ var unitSuffixes = []struct{ suffix, unit string }{
 
 // unitByContext are the keys whose unit stands beside them or follows from the aim.
 var unitByContext = map[string]string{
-	"shadow_price":          "change of the aim (m³/d, or share of headroom) per unit by which the limit or bound is loosened",
-	"demand_shadow_price":   "change of the aim (m³/d, or share of headroom) per m³/d of demand",
-	"tighter_price":         "change of the aim (m³/d, or share of headroom) per unit of the limit",
-	"looser_price":          "change of the aim (m³/d, or share of headroom) per unit of the limit",
+	"level_shadow_price":    "change of the aim (m³/d, share of headroom, saved kWh/d, saved sum of squares) per m by which the lowest level is lowered",
+	"shadow_price":          "change of the aim (m³/d, share of headroom, saved kWh/d, saved sum of squares) per unit by which the limit or bound is loosened",
+	"demand_shadow_price":   "change of the aim (m³/d, share of headroom, kWh/d, sum of squares) per m³/d of demand",
+	"tighter_price":         "change of the aim (m³/d, share of headroom, saved kWh/d, saved sum of squares) per unit of the limit",
+	"looser_price":          "change of the aim (m³/d, share of headroom, saved kWh/d, saved sum of squares) per unit of the limit",
 	"tighter_to":            "value of the limit, in its unit",
 	"looser_to":             "value of the limit, in its unit",
 	"value_no_pumping":      "in unit",
