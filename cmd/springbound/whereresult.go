@@ -134,6 +134,9 @@ func (w *where) notes() []string {
 	} else {
 		out = append(out, "The value of a well is defined for the aim most-yield only: places are in order of the largest further rate.")
 	}
+	if w.report.Switching != nil && w.value != nil {
+		out = append(out, "The plan chooses which wells run: prices, and so the value of a well, hold at this choice.")
+	}
 	if full := w.usedUp(); full != "" {
 		out = append(out, full)
 	}
