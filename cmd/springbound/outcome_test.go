@@ -180,3 +180,25 @@ func TestOutputFolder(t *testing.T) {
 		t.Error("an old map stayed")
 	}
 }
+
+// Water at rest: both canals at one level, no recharge, no well running. Nothing flows, and the balance is not judged by its rounding.
+func TestWaterAtRest(t *testing.T) {
+	d := twoCanals(turns(1)[0])
+	for _, w := range d.layers["wells"] {
+		w.properties["max_m3_per_d"] = 0.0
+		w.properties["mode"] = "off"
+		delete(w.properties, "max_m3_per_d")
+	}
+	d.layers["wells"][0].properties["mode"] = "decided"
+	d.layers["wells"][0].properties["max_m3_per_d"] = 100.0
+	d.tables["limits"] = "id,receptor,quantity,sense,value,unit,source\nL1,P1,change,at_most,0,m,invented\n"
+	r := planned(t, d.write(t), exitDone)
+	for _, c := range r.Checks {
+		if c.Name == "Water balance closes" && c.Result != "pass" {
+			t.Errorf("%s: %s", c.Result, c.Detail)
+		}
+	}
+	if r.TotalRate != 0 {
+		t.Errorf("total %v", r.TotalRate)
+	}
+}

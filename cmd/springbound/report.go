@@ -17,6 +17,8 @@ import (
 const (
 	// balanceTolerance: in and out are sums of up to a million terms of a direct solve; a lost term is larger by far.
 	balanceTolerance = 1e-9
+	// atRest is the throughflow below which no water moves but by rounding [m³/d]: a millilitre a day.
+	atRest = 1e-6
 	// residualTolerance is a few hundred units of rounding, scaled: what a backward stable direct solve leaves.
 	residualTolerance = 1e-12
 	// reciprocityTolerance: a symmetric matrix gives equal pairs up to the rounding of two solves.
@@ -182,7 +184,7 @@ func (j *job) balances(r *plan.Report, state *adjoint.State) {
 	for _, s := range states {
 		b := m.Balance(s.state.Heads, s.sinks)
 		out := plan.Balance{State: s.name, In: b.In, Out: b.Out}
-		if throughflow > 0 {
+		if throughflow > atRest {
 			out.Error = (b.In - b.Out) / throughflow
 		}
 		for _, f := range append(b.Features, b.Wells) {
