@@ -52,6 +52,17 @@ func Build(ctx context.Context, d Domain, o Options) (*Mesh, error) {
 		return nil, &DomainError{problems}
 	}
 	o = o.resolved(d)
+	m, err := o.build(ctx, d)
+	if err != nil || m.Quality.PoorOther == 0 || o.DetailGrowth <= o.Growth {
+		return m, err
+	}
+	// Lines that cross within a few tolerances can defeat steep grading: grade as gently from them as from the points.
+	o.DetailGrowth = o.Growth
+	return o.build(ctx, d)
+}
+
+// build meshes a domain that is sound with options that are resolved.
+func (o Options) build(ctx context.Context, d Domain) (*Mesh, error) {
 	r, g, err := prepare(ctx, d, o)
 	if err != nil {
 		return nil, err
