@@ -17,8 +17,9 @@
 // Symbols, units, signs: h head [m]; T transmissivity [m²/d]; N recharge [m/d]; c leakage resistance [d]; Q rate [m³/d],
 // positive out; flows in a balance are positive into the aquifer [m³/d].
 //
-// Assumptions: steady, confined, a single layer, T independent of head; exchange linear in head. A spring below its outlet, a
-// river that has lost contact and leakage below the confining layer's base are errors that name the place, not solved here.
+// Assumptions: steady, confined, a single layer, T independent of head. Exchange is linear in head down to a stated level and constant
+// below it: a spring below its outlet, a river or lake below its bed, leakage below the confining layer's base. Heads solves the linear
+// problem in which every feature acts; Settle finds the state with those that switch, the minimum of a strictly convex energy.
 //
 // The package knows no file format and no unit other than metre and day.
 package aquifer
