@@ -52,6 +52,9 @@ var ErrPieceRefused = errors.New("convex: a piece of the curve does not agree wi
 // Parametric computes the optimum as a function of one bound between two values of that bound. s may be nil, or an optimum of p to
 // start from. See ParametricAlong.
 func Parametric(ctx context.Context, p *Problem, s *Solution, side SideOf, from, to float64) (*Curve, error) {
+	if p.Quadratic() {
+		return nil, ErrQuadratic
+	}
 	if err := checkSide(p, side); err != nil {
 		return nil, err
 	}
@@ -73,9 +76,12 @@ func Parametric(ctx context.Context, p *Problem, s *Solution, side SideOf, from,
 // that degeneracy cannot stall it. Where nothing is feasible at the beginning the least feasible t is found first. Every piece is
 // checked by a solve from nothing at its middle.
 //
-// The error is not nil for bounds that do not exist or are infinite, for an empty span, ErrUnbounded, ErrPieceRefused, or a
+// The error is ErrQuadratic, or not nil for bounds that do not exist or are infinite, for an empty span, ErrUnbounded, ErrPieceRefused, or a
 // *StatusError.
 func ParametricAlong(ctx context.Context, p *Problem, s *Solution, moves []Move, from, to float64) (*Curve, error) {
+	if p.Quadratic() {
+		return nil, ErrQuadratic
+	}
 	for _, m := range moves {
 		if err := checkSide(p, m.Of); err != nil {
 			return nil, err

@@ -113,6 +113,9 @@ func AllSides(p *Problem) []SideOf {
 	return list
 }
 
+// ErrQuadratic tells that a problem has a quadratic objective, whose optimum is not made of straight pieces.
+var ErrQuadratic = errors.New("convex: the objective is quadratic; slopes, curves and ties are those of linear programmes")
+
 // PriceRange is Ranges for one bound.
 func PriceRange(ctx context.Context, p *Problem, s *Solution, side SideOf) (Range, error) {
 	list, err := Ranges(ctx, p, s, []SideOf{side})
@@ -130,8 +133,11 @@ func PriceRange(ctx context.Context, p *Problem, s *Solution, side SideOf) (Rang
 // Roos & Terlaky 1997). With that basis the bound moves until another one is reached, and so on until the slope changes. Where the
 // first basis is right at once and its next pivot changes the prices for certain nothing has to be solved again.
 //
-// The error is ErrNotOptimal, says which bound does not exist or is infinite, or is a *StatusError when a solve was stopped.
+// The error is ErrNotOptimal, ErrQuadratic, says which bound does not exist or is infinite, or is a *StatusError when a solve was stopped.
 func Ranges(ctx context.Context, p *Problem, s *Solution, sides []SideOf) ([]Range, error) {
+	if p.Quadratic() {
+		return nil, ErrQuadratic
+	}
 	for _, side := range sides {
 		if err := checkSide(p, side); err != nil {
 			return nil, err

@@ -46,11 +46,14 @@ type Tie struct {
 // prices serves). Over them the strictly convex sum of squares is minimised by a dual active-set method (Goldfarb & Idnani 1983),
 // which cannot stall, from the target itself. The result is checked: Certify of the plan with the prices, and CheckTie.
 //
-// The error is ErrNotOptimal, names the number at fault, or is a *StatusError. It panics when target or scale have a wrong length.
+// The error is ErrNotOptimal, ErrQuadratic, names the number at fault, or is a *StatusError. It panics when target or scale have a wrong length.
 func Nearest(ctx context.Context, p *Problem, s *Solution, target, scale []float64) (*Tie, error) {
 	n := p.Columns()
 	if scale == nil {
 		scale = ones(n)
+	}
+	if p.Quadratic() {
+		return nil, ErrQuadratic
 	}
 	if len(target) != n || len(scale) != n {
 		panic(fmt.Sprintf("convex: Nearest: target of %d and scale of %d for %d columns", len(target), len(scale), n))
