@@ -13,7 +13,7 @@ import (
 )
 
 // everything is a site with every kind of feature: zones 1 : 1000, an anisotropic zone, leakage, a lake, two springs, a river, a hole, all
-// kinds of edge, wells 4 m from the river, 3 m from each other and on the outline.
+// kinds of edge, a well 1 m from the river, less than one cell, two wells 3 m apart, one on the outline.
 func everything(m motion, raise float64) (*aquifer.Site, []wells.Well, []wells.Receptor) {
 	level := func(v float64) *float64 { v += raise; return &v }
 	square := func(x, y, a, b float64) orb.Polygon { return orb.Polygon{m.ring(x, y, x+a, y, x+a, y+b, x, y+b)} }
@@ -38,7 +38,7 @@ func everything(m motion, raise float64) (*aquifer.Site, []wells.Well, []wells.R
 	}
 	low := level(-50)
 	ws := []wells.Well{
-		pumped("W1", m.at(1700, 800), 0.2, 900), pumped("W2", m.at(2400, 1510), 0.2, 400), pumped("W3", m.at(2900, 2200), 0.15, 300),
+		pumped("W1", m.at(1700, 800), 0.2, 900), pumped("W2", m.at(2400, 1492.7), 0.2, 400), pumped("W3", m.at(2900, 2200), 0.15, 300),
 		pumped("W4", m.at(2903, 2200), 0.15, 200), pumped("W5", m.at(3300, 500), 0.2, 5), pumped("W6", m.at(2000, 0), 0.2, 200), pumped("R1", m.at(700, 2200), 0.3, -150),
 	}
 	ws[2].LowestLevel, ws[2].LinearLoss, ws[2].DutyHours = low, 1e-4, 16
