@@ -1,8 +1,6 @@
 package convex
 
 import (
-	"bufio"
-	"compress/gzip"
 	"context"
 	"math"
 	"os"
@@ -24,98 +22,6 @@ const (
 	mixedShort = 2000
 )
 
-// wholeColumns returns the columns between the markers of an MPS file, and those whose bounds say that they are whole.
-func wholeColumns(t testing.TB, path string) []int {
-	f, err := os.Open(path)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer f.Close()
-	z, err := gzip.NewReader(f)
-	if err != nil {
-		t.Fatal(err)
-	}
-	var whole []int
-	in, last, column, section := false, "", -1, ""
-	index, marked := map[string]int{}, map[int]bool{}
-	scan := bufio.NewScanner(z)
-	for scan.Scan() {
-		line := scan.Text()
-		fields := strings.Fields(line)
-		if strings.HasPrefix(line, "*") || len(fields) == 0 {
-			continue
-		}
-		if line[0] != ' ' && line[0] != '\t' {
-			section = fields[0]
-			continue
-		}
-		if j, ok := index[fields[min(2, len(fields)-1)]]; section == "BOUNDS" && ok && (fields[0] == "BV" || fields[0] == "UI") && !marked[j] {
-			marked[j] = true
-			whole = append(whole, j)
-		}
-		if section != "COLUMNS" {
-			continue
-		}
-		if strings.Contains(line, "'MARKER'") {
-			in = strings.Contains(line, "'INTORG'")
-			continue
-		}
-		if fields[0] != last {
-			last = fields[0]
-			column++
-			index[last] = column
-			if marked[column] = in; in {
-				whole = append(whole, column)
-			}
-		}
-	}
-	return whole
-}
-
-// readMixed reads a mixed-integer MPS file. Marker lines are taken by the reader of linear programmes for columns named MARKER, so
-// that they are filtered out first.
-func readMixed(t testing.TB, path string) (*MixedProblem, float64) {
-	t.Helper()
-	f, err := os.Open(path)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer f.Close()
-	z, err := gzip.NewReader(f)
-	if err != nil {
-		t.Fatal(err)
-	}
-	plainPath := filepath.Join(t.TempDir(), "linear.mps.gz")
-	out, err := os.Create(plainPath)
-	if err != nil {
-		t.Fatal(err)
-	}
-	w := gzip.NewWriter(out)
-	scan := bufio.NewScanner(z)
-	for scan.Scan() {
-		line := scan.Text()
-		if strings.Contains(line, "'MARKER'") {
-			continue
-		}
-		if f := strings.Fields(line); len(f) > 2 && f[0] == "BV" {
-			line = " UP BND " + f[2] + " 1"
-		} else if len(f) > 0 && f[0] == "UI" {
-			line = strings.Replace(line, "UI", "UP", 1)
-		}
-		if _, err := w.Write([]byte(line + "\n")); err != nil {
-			t.Fatal(err)
-		}
-	}
-	if err := w.Close(); err != nil {
-		t.Fatal(err)
-	}
-	if err := out.Close(); err != nil {
-		t.Fatal(err)
-	}
-	p, constant := readMPS(t, plainPath)
-	return &MixedProblem{Problem: p, Integer: wholeColumns(t, path)}, constant
-}
-
 // TestMixedFiles compares with objectives computed by other solvers. A proof may be missing, an answer never wrong.
 func TestMixedFiles(t *testing.T) {
 	dir := sharedData(t, "mip")
@@ -128,7 +34,8 @@ func TestMixedFiles(t *testing.T) {
 		if !long() && !strings.Contains(" egout flugpl lseu p0033 mod008 p0282 rgn ", " "+name+" ") {
 			continue
 		}
-		p, constant := readMixed(t, filepath.Join(dir, row["file"]))
+		m := openModel(t, filepath.Join(dir, row["file"]))
+		p, constant := &MixedProblem{Problem: m.Problem, Integer: m.Integer}, m.Constant
 		if want, _ := strconv.Atoi(row["integer_cols"]); want != len(p.Integer) {
 			t.Errorf("%s: %d whole columns, the index says %d", name, len(p.Integer), want)
 		}
