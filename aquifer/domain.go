@@ -187,8 +187,14 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 	d.fit(allowed, finest, set)
 }
 
+// fitTolerance is how near to the target, as a logarithm, the estimate of nodes is brought: it is itself good to a few per cent only.
+const fitTolerance = 0.04
+
+// fitSteps bounds the search: three or four do.
+const fitSteps = 20
+
 // fit raises the finest size until about the allowed number of nodes is enough, or, where the outline's own vertices ask for more than
-// that, until the places add no more than a third to them. The estimate falls as the size grows, so halving its logarithm finds it.
+// that, until the places add no more than a third to them.
 func (d *domainPlan) fit(allowed, finest float64, set func(float64)) {
 	unbounded := mesh.Options{Growth: d.growth, Coarsest: math.Sqrt(d.areaOfSite) / 10}
 	estimate := func(f float64) float64 {
@@ -196,20 +202,38 @@ func (d *domainPlan) fit(allowed, finest float64, set func(float64)) {
 		return mesh.EstimateNodes(d.domain, unbounded)
 	}
 	allowed *= 0.9 // the estimate is good to a few per cent, and the coarsest size still has to be reached
-	if estimate(finest) <= allowed {
+	atLow := estimate(finest)
+	if atLow <= allowed {
 		return
 	}
 	low, high := finest, math.Sqrt(d.areaOfSite)/10
 	if high <= low {
 		return
 	}
-	target := math.Max(allowed, 4*estimate(high)/3)
-	for range 7 {
-		middle := math.Sqrt(low * high)
-		if estimate(middle) <= target {
-			high = middle
-		} else {
-			low = middle
+	atHigh := estimate(high)
+	target := math.Max(allowed, 4*atHigh/3)
+	if !(atLow > target) {
+		set(finest)
+		return
+	}
+	// False position in logarithms; an end that is kept twice counts for half (Dowell & Jarratt 1971, BIT 11, the Illinois rule).
+	over, under := math.Log(atLow/target), math.Log(atHigh/target)
+	kept := 0
+	for step := 0; step < fitSteps && under < -fitTolerance && math.Log(high/low) > fitTolerance; step++ {
+		middle := math.Exp((math.Log(high)*over - math.Log(low)*under) / (over - under))
+		switch miss := math.Log(estimate(middle) / target); {
+		case miss <= 0:
+			high, under = middle, miss
+			if kept > 0 {
+				over /= 2
+			}
+			kept = 1
+		default:
+			low, over = middle, miss
+			if kept < 0 {
+				under /= 2
+			}
+			kept = -1
 		}
 	}
 	set(high)

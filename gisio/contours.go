@@ -42,7 +42,7 @@ func Contours(x, y []float64, triangles []int32, values, levels []float64) ([]Co
 }
 
 // ContourMesh is a mesh that many fields are contoured on: its edges are found once. It is not for use by several goroutines at
-// once.
+// once; each takes its own by Share.
 type ContourMesh struct{ tracer contourTracer }
 
 // NewContourMesh prepares a mesh as Contours takes it, with the same errors and panics.
@@ -58,6 +58,14 @@ func NewContourMesh(x, y []float64, triangles []int32) (*ContourMesh, error) {
 	m := &ContourMesh{contourTracer{x: x, y: y, triangles: triangles}}
 	m.tracer.findEdges()
 	return m, nil
+}
+
+// Share returns a mesh over the same edges that another goroutine may use at the same time.
+func (m *ContourMesh) Share() *ContourMesh {
+	t := &m.tracer
+	shared := &ContourMesh{contourTracer{x: t.x, y: t.y, edges: t.edges, ofTriangle: t.ofTriangle, triangles: t.triangles}}
+	shared.tracer.clearMeeting()
+	return shared
 }
 
 // Contours is the function of the same name for one field over the mesh.
@@ -79,10 +87,10 @@ func (m *ContourMesh) Contours(values, levels []float64) ([]Contour, error) {
 	}
 	slices.Sort(levels)
 	levels = slices.Compact(levels)
-	t.take(values)
+	t.take(values, levels)
 	out := make([]Contour, len(levels))
 	for i, level := range levels {
-		out[i] = Contour{Level: level + 0, Lines: t.lines(level)}
+		out[i] = Contour{Level: level + 0, Lines: t.lines(i, level)}
 	}
 	return out, nil
 }
@@ -92,9 +100,8 @@ type contourTracer struct {
 	x, y, values []float64
 	edges        [][2]int32 // nodes of each edge, the smaller number first
 	ofTriangle   [][3]int32 // edges of each triangle: opposite to corner 0, 1, 2
-	lowest       []float64  // of each triangle
-	highest      []float64
 	triangles    []int32
+	crossed      [][]int32 // by level: the triangles that it crosses, ascending
 
 	// Of the level at hand; segments at each edge, -1 = none.
 	meeting  [][2]int32
@@ -111,7 +118,6 @@ type contourSegment struct {
 func (t *contourTracer) findEdges() {
 	n := len(t.triangles) / 3
 	t.ofTriangle = make([][3]int32, n)
-	t.lowest, t.highest = make([]float64, n), make([]float64, n)
 	type half struct {
 		b, slot int32 // the larger node; 3 triangle + corner opposite
 	}
@@ -160,24 +166,36 @@ func (t *contourTracer) findEdges() {
 			t.ofTriangle[h.slot/3][h.slot%3] = int32(len(t.edges) - 1)
 		}
 	}
+	t.clearMeeting()
+}
+
+func (t *contourTracer) clearMeeting() {
 	t.meeting = make([][2]int32, len(t.edges))
 	for i := range t.meeting {
 		t.meeting[i] = [2]int32{-1, -1}
 	}
 }
 
-// take makes the tracer ready for a field.
-func (t *contourTracer) take(values []float64) {
+// take makes the tracer ready for a field: one pass over the triangles finds which levels cross each.
+func (t *contourTracer) take(values, levels []float64) {
 	t.values = values
+	t.crossed = make([][]int32, len(levels))
 	for k := range t.ofTriangle {
 		v0, v1, v2 := values[t.triangles[3*k]], values[t.triangles[3*k+1]], values[t.triangles[3*k+2]]
-		t.lowest[k], t.highest[k] = min(v0, v1, v2), max(v0, v1, v2)
+		highest := max(v0, v1, v2)
+		i, found := slices.BinarySearch(levels, min(v0, v1, v2))
+		if found {
+			i++ // a level at the lowest corner counts as just below it
+		}
+		for ; i < len(levels) && levels[i] <= highest; i++ {
+			t.crossed[i] = append(t.crossed[i], int32(k))
+		}
 	}
 }
 
-// lines gives the lines of one level in their order.
-func (t *contourTracer) lines(level float64) []ContourLine {
-	t.collect(level)
+// lines gives the lines of level i in their order.
+func (t *contourTracer) lines(i int, level float64) []ContourLine {
+	t.collect(t.crossed[i], level)
 	var out []ContourLine
 	keep := func(points orb.LineString) {
 		closed := points[0] == points[len(points)-1] // a loop, or ends that fall on one node of the outline
@@ -216,13 +234,12 @@ func (t *contourTracer) lines(level float64) []ContourLine {
 	return out
 }
 
-// collect finds the segments of a level and enters them at their edges.
-func (t *contourTracer) collect(level float64) {
+// collect finds the segments of a level in the triangles that it crosses and enters them at their edges.
+func (t *contourTracer) collect(crossed []int32, level float64) {
 	t.segments = t.segments[:0]
-	for k, edges := range t.ofTriangle {
-		if !(t.lowest[k] < level && t.highest[k] >= level) {
-			continue
-		}
+	for _, triangle := range crossed {
+		k := int(triangle)
+		edges := t.ofTriangle[k]
 		above := [3]bool{}
 		for i := range 3 {
 			above[i] = t.values[t.triangles[3*k+i]] >= level

@@ -66,7 +66,11 @@ func runDrivers(ctx context.Context, c solving, s streams) error {
 		return fmt.Errorf("drivers: %w", err)
 	}
 	data = append(data, '\n')
-	files := append([]outputFile{{"drivers.json", data}, {"sensitivities.csv", t.csv()}}, maps.files...)
+	drawn, err := maps.wait()
+	if err != nil {
+		return err
+	}
+	files := append([]outputFile{{"drivers.json", data}, {"sensitivities.csv", t.csv()}}, drawn...)
 	if err := writeOutputs(c.outDir(j), files); err != nil {
 		return err
 	}

@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"math"
+	"runtime"
 
 	"springbound/adjoint"
 	"springbound/gisio"
@@ -11,14 +12,55 @@ import (
 // contourCount is about how many lines a map gets: enough to read a gradient, few enough to label.
 const contourCount = 10
 
-// maps gathers the contour files of a run.
+// maps gathers the contour files of a run. Fields are contoured in the background while the run goes on; what comes out stands in the order
+// in which the maps were asked for.
 type maps struct {
 	job   *job
-	mesh  *gisio.ContourMesh
-	files []outputFile
+	idle  chan *gisio.ContourMesh // one mesh for each worker that may contour at the same time
+	slots []*mapFile
+}
+
+// mapFile is one map: being drawn until done is closed.
+type mapFile struct {
+	outputFile
+	err  error
+	done chan struct{}
 }
 
 func newMaps(j *job) *maps { return &maps{job: j} }
+
+// wait returns the files when all are drawn, with the first error in their order.
+func (m *maps) wait() ([]outputFile, error) {
+	files := make([]outputFile, len(m.slots))
+	var first error
+	for i, s := range m.slots {
+		<-s.done
+		if s.err != nil && first == nil {
+			first = s.err
+		}
+		files[i] = s.outputFile
+	}
+	return files, first
+}
+
+// prepare finds the edges of the mesh once and makes a contour mesh for each worker.
+func (m *maps) prepare() error {
+	if m.idle != nil {
+		return nil
+	}
+	msh := m.job.field.Model.Mesh
+	mesh, err := gisio.NewContourMesh(msh.X, msh.Y, msh.Triangles)
+	if err != nil {
+		return err
+	}
+	workers := runtime.GOMAXPROCS(0)
+	m.idle = make(chan *gisio.ContourMesh, workers)
+	m.idle <- mesh
+	for range workers - 1 {
+		m.idle <- mesh.Share()
+	}
+	return nil
+}
 
 // add contours a nodal field and writes it in longitude and latitude. unitKey is the property that holds the level, with its unit.
 func (m *maps) add(name, unitKey string, field []float64) error {
@@ -29,37 +71,50 @@ func (m *maps) add(name, unitKey string, field []float64) error {
 	return m.addLevels(name, unitKey, field, gisio.NiceLevels(low, high, contourCount), nil)
 }
 
-// addLevels is add for given levels; label, where not nil, turns a level into the number written.
+// addLevels is add for given levels; label, where not nil, turns a level into the number written. The field may not change afterwards.
 func (m *maps) addLevels(name, unitKey string, field, levels []float64, label func(level float64) float64) error {
-	if m.mesh == nil {
-		msh := m.job.field.Model.Mesh
-		prepared, err := gisio.NewContourMesh(msh.X, msh.Y, msh.Triangles)
-		if err != nil {
-			return fmt.Errorf("%s: %w", name, err)
-		}
-		m.mesh = prepared
-	}
-	contours, err := m.mesh.Contours(field, levels)
-	if err != nil {
+	if err := m.prepare(); err != nil {
 		return fmt.Errorf("%s: %w", name, err)
 	}
-	for i := range contours {
-		if label != nil {
-			contours[i].Level = label(contours[i].Level)
+	s := &mapFile{outputFile: outputFile{name: name}, done: make(chan struct{})}
+	m.put(s)
+	mesh := <-m.idle
+	go func() {
+		defer func() {
+			m.idle <- mesh
+			close(s.done)
+		}()
+		contours, err := mesh.Contours(field, levels)
+		if err != nil {
+			s.err = fmt.Errorf("%s: %w", name, err)
+			return
 		}
-	}
-	data, err := gisio.WriteContours(contours, m.job.project.Plane, unitKey)
-	if err != nil {
-		return err
-	}
-	for i := range m.files {
-		if m.files[i].name == name { // planned again with features that switch
-			m.files[i].data = data
-			return nil
+		for i := range contours {
+			if label != nil {
+				contours[i].Level = label(contours[i].Level)
+			}
 		}
-	}
-	m.files = append(m.files, outputFile{name, data})
+		s.data, s.err = gisio.WriteContours(contours, m.job.project.Plane, unitKey)
+	}()
 	return nil
+}
+
+// put takes a map into the list; one of the same name is replaced: planned again with features that switch.
+func (m *maps) put(s *mapFile) {
+	for i := range m.slots {
+		if m.slots[i].name == s.name {
+			m.slots[i] = s
+			return
+		}
+	}
+	m.slots = append(m.slots, s)
+}
+
+// finished takes a file that is drawn already.
+func (m *maps) finished(f outputFile) {
+	done := make(chan struct{})
+	close(done)
+	m.put(&mapFile{outputFile: f, done: done})
 }
 
 // influence contours a receptor's sensitivity to a unit rate pumped anywhere.

@@ -49,7 +49,11 @@ func runPlan(ctx context.Context, c solving, s streams) error {
 		return err
 	}
 	dir := c.outDir(j)
-	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}, {"rates.csv", ratesTable(r)}}, maps.files...)
+	drawn, err := maps.wait()
+	if err != nil {
+		return err
+	}
+	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}, {"rates.csv", ratesTable(r)}}, drawn...)
 	if err := writeOutputs(dir, files); err != nil {
 		return err
 	}

@@ -50,10 +50,14 @@ func runTry(ctx context.Context, c solving, table string, s streams) error {
 	if dir == "" {
 		dir = filepath.Join(j.project.Dir, "out-try")
 	}
-	if err := writeOutputs(dir, append([]outputFile{{"try.json", data}, {"try.xlsx", book}}, maps.files...)); err != nil {
+	drawn, err := maps.wait()
+	if err != nil {
 		return err
 	}
-	if err := dropStale(dir, "influence", maps.files); err != nil {
+	if err := writeOutputs(dir, append([]outputFile{{"try.json", data}, {"try.xlsx", book}}, drawn...)); err != nil {
+		return err
+	}
+	if err := dropStale(dir, "influence", drawn); err != nil {
 		return err
 	}
 	j.progress.clear()

@@ -102,7 +102,11 @@ func runWhere(ctx context.Context, c siting, s streams) error {
 	}
 	j.progress.report("writing", 0, 1)
 	dir := c.outDir(j)
-	files := append([]outputFile{{"where.json", data}, {"where.csv", w.result.csv()}}, maps.files...)
+	drawn, err := maps.wait()
+	if err != nil {
+		return err
+	}
+	files := append([]outputFile{{"where.json", data}, {"where.csv", w.result.csv()}}, drawn...)
 	if err := writeOutputs(dir, files); err != nil {
 		return err
 	}

@@ -242,7 +242,7 @@ func (w *where) drawRegion(m *maps) error {
 	if err != nil {
 		return err
 	}
-	m.files = append(m.files, outputFile{"siting/rate_fits.geojson", data})
+	m.finished(outputFile{"siting/rate_fits.geojson", data})
 	return nil
 }
 
