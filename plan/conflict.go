@@ -45,6 +45,15 @@ func (p *planner) explain(ctx context.Context) (*Report, error) {
 	if err != nil {
 		return nil, err
 	}
+	var m *mixedProgramme
+	if p.keepProblem && p.setup.switches() {
+		if m, err = p.mixed(g); err != nil {
+			return nil, err
+		}
+	}
+	if err := p.keep(g, m, nil); err != nil {
+		return nil, err
+	}
 	sol, err := convex.Solve(ctx, g.problem, convex.Options{})
 	if err != nil {
 		return nil, fmt.Errorf("plan: the programme of the conflict: %w", err)

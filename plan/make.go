@@ -70,7 +70,12 @@ func Make(ctx context.Context, b Brief, m Model, o Options) (*Report, error) {
 	if _, err := p.addCuts(ctx, start, true); err != nil {
 		return nil, err
 	}
-	return p.optimise(ctx, o)
+	p.keepProblem = o.Problem != nil
+	report, err := p.optimise(ctx, o)
+	if report != nil && p.problem != nil {
+		o.Problem(p.problem)
+	}
+	return report, err
 }
 
 // checkAim reports an aim that cannot be planned for.
@@ -144,6 +149,9 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 		rates := p.rates(shown.X)
 		p.lastRates = rates
 		p.readPrices(g, sol)
+		if err := p.keep(g, p.search.problem, sol); err != nil {
+			return nil, err
+		}
 		if _, err := p.oracle.linearise(ctx, rates); err != nil {
 			return nil, err
 		}

@@ -8,6 +8,8 @@ type Options struct {
 	MaxRounds int
 	// Firm asks for the firm capacity: a further plan with each well out of service.
 	Firm bool
+	// Problem, when given, is called once with the programme that the rates or the conflict of the report come from.
+	Problem func(*ProblemFile)
 	// Progress, when given, is called after each round from the calling goroutine.
 	Progress func(Progress)
 }

@@ -38,6 +38,8 @@ type planner struct {
 	lastRates    []float64 // of the last round, where a search may begin
 	search       search
 	firm         *FirmCapacity // nil when it was not asked for
+	problem      *ProblemFile  // the last programme; nil when it was not asked for
+	keepProblem  bool
 
 	local bool // a limit on a row that is not linear bounds it from below: the plan is locally best
 }

@@ -38,13 +38,19 @@ type solving struct {
 	Workers int    `placeholder:"N" help:"Processors to use; left out: all. Results are the same for any number."`
 }
 
+// planning are the flags of the main job.
+type planning struct {
+	solving
+	Problem string `type:"path" placeholder:"FILE" help:"Also write the plan's programme to this file, in the free MPS format, so that another solver can be handed it."`
+}
+
 type commands struct {
 	Start struct {
 		Dir string `arg:"" help:"Folder to make; it must not hold a project yet."`
 	} `cmd:"" help:"Write a commented starter project."`
-	Check   common  `cmd:"" help:"Read everything, report every problem at once, solve nothing."`
-	Drivers solving `cmd:"" help:"Sensitivities: which wells drive each receptor."`
-	Plan    solving `cmd:"" help:"The main job: the best rates inside the limits, as workbook, JSON and maps."`
+	Check   common   `cmd:"" help:"Read everything, report every problem at once, solve nothing."`
+	Drivers solving  `cmd:"" help:"Sensitivities: which wells drive each receptor."`
+	Plan    planning `cmd:"" help:"The main job: the best rates inside the limits, as workbook, JSON and maps."`
 	Try     struct {
 		solving
 		Rates string `arg:"" help:"CSV or XLSX table with the columns id and rate (with its unit), such as the rates.csv that plan leaves."`

@@ -22,6 +22,9 @@ type job struct {
 	linear   *adjoint.Linear // sensitivities and capture, solved once
 	progress *progress
 	onField  func(row int, influence []float64) error
+
+	keepProblem bool              // the plan's programme is asked for
+	problem     *plan.ProblemFile // ... and found
 }
 
 // projectFile resolves what the user named.

@@ -9,8 +9,17 @@ import (
 
 // outputFile is a result that is ready to be written.
 type outputFile struct {
-	name string // with forward slashes, below the output folder
+	name string // with forward slashes, below the output folder; or the whole path of a file that was named
 	data []byte
+}
+
+// path is where the file goes.
+func (f outputFile) path(dir string) string {
+	name := filepath.FromSlash(f.name)
+	if filepath.IsAbs(name) {
+		return name
+	}
+	return filepath.Join(dir, name)
 }
 
 // writeOutputs writes all files or none: first under other names beside their places, then, when every one is on disk, each takes its
@@ -25,7 +34,7 @@ func writeOutputs(dir string, files []outputFile) (err error) {
 		}
 	}()
 	for _, f := range files {
-		path := filepath.Join(dir, filepath.FromSlash(f.name))
+		path := f.path(dir)
 		if err := os.MkdirAll(filepath.Dir(path), 0o755); err != nil {
 			return fmt.Errorf("cannot make the output folder: %w", err)
 		}
@@ -36,7 +45,7 @@ func writeOutputs(dir string, files []outputFile) (err error) {
 		}
 	}
 	for i, f := range files {
-		if err := os.Rename(staged[i], filepath.Join(dir, filepath.FromSlash(f.name))); err != nil {
+		if err := os.Rename(staged[i], f.path(dir)); err != nil {
 			return fmt.Errorf("cannot put results in place: %w", err)
 		}
 	}

@@ -17,12 +17,19 @@ import (
 const planningAid = "A planning aid (steady, confined, single layer): to be reviewed and signed by a qualified person under local rules."
 
 // runPlan is the main job.
-func runPlan(ctx context.Context, c solving, s streams) error {
-	j, err := newJob(ctx, c, s)
+func runPlan(ctx context.Context, c planning, s streams) error {
+	if err := c.checkProblemPath(); err != nil {
+		return err
+	}
+	j, err := newJob(ctx, c.solving, s)
 	if err != nil {
 		return err
 	}
 	defer j.progress.clear()
+	if err := c.checkProblemPlace(j); err != nil {
+		return err
+	}
+	j.keepProblem = c.Problem != ""
 	maps := newMaps(j)
 	j.onField = maps.influence
 	r, err := j.makePlan(ctx)
@@ -54,6 +61,13 @@ func runPlan(ctx context.Context, c solving, s streams) error {
 		return err
 	}
 	files := append([]outputFile{{"plan.json", data}, {"plan.xlsx", book}, {"rates.csv", ratesTable(r)}}, drawn...)
+	if j.problem != nil {
+		text, err := problemText(j.problem)
+		if err != nil {
+			return err
+		}
+		files = append(files, outputFile{c.Problem, text})
+	}
 	if err := writeOutputs(dir, files); err != nil {
 		return err
 	}
@@ -78,7 +92,11 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 		return nil, err
 	}
 	make := func() (*plan.Report, error) {
-		return plan.Make(ctx, b, j, plan.Options{Firm: true, Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }})
+		o := plan.Options{Firm: true, Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }}
+		if j.keepProblem {
+			o.Problem = func(f *plan.ProblemFile) { j.problem = f }
+		}
+		return plan.Make(ctx, b, j, o)
 	}
 	r, err := make()
 	if err != nil || j.field.Switching {
