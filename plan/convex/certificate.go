@@ -14,9 +14,15 @@ const (
 	CertifiedStationarity    = 1e-9 // cost less the prices of the rows less the reduced cost
 	CertifiedComplementarity = 1e-9 // price times distance from its bound, per objective
 	CertifiedGap             = 1e-9 // primal less dual objective
-	CertifiedProof           = 1e-10
+	CertifiedProof           = 1e-9 // margin of a proof: what the solver's tolerance on the bounds in it could explain
 	CertifiedNegligible      = 1e-9 // part of a proof or direction that meets an infinite bound
+	// CertifiedStray is the share of the margin of a proof that its parts at infinite bounds, and the rounding of all others, may explain
+	// with values as large as the largest bound: a thousandth, for values that a system of condition 1e3 makes of that bound.
+	CertifiedStray = 1e-3
 )
+
+// twofoldRounding is the relative rounding of a sum in twofold precision: 2^-106 per term, for a million terms.
+const twofoldRounding = 0x1p-86
 
 // Certificate is what the data say about a solution. Every number is computed from the problem and the values and prices of the
 // solution, in twofold precision where terms cancel, by code that shares nothing with the solver.
@@ -35,6 +41,7 @@ type Certificate struct {
 	DualObjective         float64 // [-]
 	Gap                   float64 // |primal - dual objective| relative to the objective's terms [-]
 	ProofMargin           float64 // Infeasible: distance of the combined rows and bounds from what they can reach, relative to its terms [-]
+	ProofStray            float64 // Infeasible: share of the margin that values as large as the largest bound could explain [-]
 	DirectionGain         float64 // Unbounded: gain along the direction relative to its terms [-]
 	DirectionViolation    float64 // Unbounded: largest move towards a bound along the direction, relative to its terms [-]
 	Curvature             float64 // NotConvex: d'Hd relative to its terms [-]
@@ -251,36 +258,22 @@ func (d *dualSum) take(price, value, lower, upper float64) bool {
 }
 
 // checkProof computes the margin of a proof of infeasibility: with z = -A'y, y'r + z'x is zero for r = A x, so that a largest
-// value below zero within all bounds excludes every x.
+// value below zero within all bounds excludes every x. What a multiplier contributes at an infinite bound has no limit; it is rounding
+// only when values as large as the largest bound of the problem make nothing of it beside the margin, however small that is beside
+// the other multipliers.
 func (c *Certificate) checkProof(p *Problem, ray *Ray, u yardstick) {
 	if ray == nil || len(ray.Rows) != p.Rows() {
 		c.Reason = "there is no proof"
 		return
 	}
-	var top twofold
-	terms, stray := 0.0, 0.0
-	take := func(price, lower, upper, own float64) {
-		bound := upper
-		if price < 0 {
-			bound = lower
-		}
-		if price == 0 {
-			return
-		}
-		if !finite(bound) {
-			stray = largest(stray, share(math.Abs(price), own))
-			return
-		}
-		top.addProduct(price, bound)
-		terms += math.Abs(price * bound)
-	}
+	var s proofSum
 	z, own := make([]twofold, p.allColumns()), make([]float64, p.allColumns())
 	size := 0.0
 	for i, y := range ray.Rows {
 		size = largest(size, math.Abs(y)/u.row[i])
 	}
 	for i, y := range ray.Rows {
-		take(y, p.rowLower[i], p.rowUpper[i], size*u.row[i])
+		s.take(y, p.rowLower[i], p.rowUpper[i], size*u.row[i], 0, u.most/u.row[i])
 		if y == 0 {
 			continue
 		}
@@ -291,12 +284,44 @@ func (c *Certificate) checkProof(p *Problem, ray *Ray, u yardstick) {
 	}
 	for j := range z {
 		column := p.anyColumn(j)
-		take(z[j].value(), column.Lower, column.Upper, math.Max(own[j], size/u.col[j]))
+		s.take(z[j].value(), column.Lower, column.Upper, math.Max(own[j], size/u.col[j]), own[j]*twofoldRounding, u.most*u.col[j])
 	}
-	c.ProofMargin = -share(top.value(), math.Max(terms, size*u.value))
-	c.require("the part of the proof that meets an infinite bound", stray, CertifiedNegligible)
+	c.ProofMargin = -share(s.top.value(), math.Max(s.terms, size*u.value))
+	c.ProofStray = share(s.explained, -s.top.value())
+	c.require("the part of the proof that meets an infinite bound", s.stray, CertifiedNegligible)
 	if !(c.ProofMargin >= CertifiedProof) && c.Reason == "" {
 		c.Reason = fmt.Sprintf("the margin of the proof %.3g is below %.3g", c.ProofMargin, CertifiedProof)
+	}
+	c.require("the share of the margin that values without bound could explain", c.ProofStray, CertifiedStray)
+}
+
+// proofSum collects the terms of a proof.
+type proofSum struct {
+	top       twofold // largest value within the bounds
+	terms     float64 // sum of absolute terms
+	stray     float64 // largest multiplier at an infinite bound, relative to its own terms
+	explained float64 // what values of the given sizes and rounding could add to top
+}
+
+// take adds the term of one multiplier: own is the size of the terms that it is made of, rounding its own error and value the
+// size that the row or column may have.
+func (s *proofSum) take(price, lower, upper, own, rounding, value float64) {
+	bound := upper
+	if price < 0 {
+		bound = lower
+	}
+	if finite(lower) && finite(upper) {
+		value = math.Max(math.Abs(lower), math.Abs(upper))
+	}
+	s.explained += rounding * value
+	switch {
+	case price == 0:
+	case finite(bound):
+		s.top.addProduct(price, bound)
+		s.terms += math.Abs(price * bound)
+	default:
+		s.stray = largest(s.stray, share(math.Abs(price), own))
+		s.explained += math.Abs(price) * value
 	}
 }
 

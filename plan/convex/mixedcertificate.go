@@ -189,7 +189,7 @@ func (c *MixedCertificate) checkTree(p *MixedProblem, t *proofTree) {
 		whole[j] = true
 		b.lo[j], b.hi[j] = math.Ceil(b.lo[j]), math.Floor(b.hi[j])
 	}
-	least, complete := math.Inf(1), true
+	least, complete, unit := math.Inf(1), true, measure(p.Problem)
 	var walk func(k int)
 	walk = func(k int) {
 		n := &t.nodes[k]
@@ -200,7 +200,7 @@ func (c *MixedCertificate) checkTree(p *MixedProblem, t *proofTree) {
 					return
 				}
 			}
-			least = math.Min(least, leafBound(p.Problem, t.sign, n, b))
+			least = math.Min(least, leafBound(p.Problem, t.sign, n, b, unit))
 			return
 		}
 		j := n.column

@@ -64,13 +64,13 @@ func (t *proofTree) split(k int, l *nodeLP, c candidate, down, up *mixedNode) {
 //
 //	sum over columns of min (c - A'y) x  +  sum over rows of min y r
 //
-// With empty set the cost is left out, and the result is +Inf when it is above zero beyond rounding, which no x allows, and -Inf
-// otherwise.
-func leafBound(p *Problem, sign float64, n *proofNode, b *box) float64 {
+// With empty set the cost is left out, and the result is +Inf when it is above zero beyond rounding and beyond what values as large as
+// the largest bound make of the prices that meet an infinite one, which no x allows, and -Inf otherwise.
+func leafBound(p *Problem, sign float64, n *proofNode, b *box, u yardstick) float64 {
 	var sum twofold
-	terms := 0.0
+	terms, explained := 0.0, 0.0
 	ok := true
-	take := func(price, lower, upper, own float64) {
+	take := func(price, lower, upper, own, size float64) {
 		bound := lower
 		if price < 0 {
 			bound = upper
@@ -80,6 +80,7 @@ func leafBound(p *Problem, sign float64, n *proofNode, b *box) float64 {
 		}
 		if !finite(bound) {
 			ok = ok && math.Abs(price) <= CertifiedNegligible*own
+			explained += math.Abs(price) * size
 			return
 		}
 		sum.addProduct(price, bound)
@@ -96,7 +97,7 @@ func leafBound(p *Problem, sign float64, n *proofNode, b *box) float64 {
 		if y == 0 {
 			continue
 		}
-		take(y, p.rowLower[i], p.rowUpper[i], 0)
+		take(y, p.rowLower[i], p.rowUpper[i], 0, 0)
 		for j, a := range p.row(i) {
 			if a != 0 {
 				d[j].addProduct(-y, a)
@@ -105,7 +106,7 @@ func leafBound(p *Problem, sign float64, n *proofNode, b *box) float64 {
 		}
 	}
 	for j := range d {
-		take(d[j].value(), b.lo[j], b.hi[j], own[j])
+		take(d[j].value(), b.lo[j], b.hi[j], own[j], u.most*u.col[j])
 	}
 	v := sum.value()
 	switch {
@@ -113,7 +114,7 @@ func leafBound(p *Problem, sign float64, n *proofNode, b *box) float64 {
 		return math.Inf(-1)
 	case !n.empty:
 		return v
-	case v > CertifiedProof*terms:
+	case v > CertifiedProof*terms && explained <= CertifiedStray*v:
 		return math.Inf(1)
 	}
 	return math.Inf(-1)

@@ -28,11 +28,22 @@ type scaled struct {
 
 // scale brings the entries near one by geometric means (Curtis & Reid 1972 treat the same aim by least squares), the costs to at
 // most one and the typical bound to one.
-func scale(p *Problem) *scaled {
+func scale(p *Problem) *scaled { return scaleAbout(p, typicalMedian) }
+
+// typical names the bound that becomes one.
+type typical int
+
+const (
+	typicalMedian  typical = iota // the smaller of the medians over rows and over columns
+	typicalLargest                // the largest, where tiny bounds among large ones make the first choice a bad one
+)
+
+// scaleAbout is scale with the choice of the typical bound.
+func scaleAbout(p *Problem, t typical) *scaled {
 	m, n, u := len(p.rowName), len(p.columns), len(p.unit)
 	s := &scaled{row: ones(m), col: ones(n + u)}
 	s.balance(p)
-	s.centreBounds(p)
+	s.centreBounds(p, t)
 	s.scaleCost(p)
 	s.matrix = &matrix{rows: m, dense: n, cols: n + u, a: make([]float64, m*n), unitRow: p.unitRow, unitValue: make([]float64, u)}
 	for i := 0; i < m; i++ {
@@ -140,7 +151,7 @@ func powerOfTwo(v float64) float64 {
 // centreBounds multiplies columns and divides rows by one factor so that the typical bound is one: the smaller of the medians over
 // rows and over columns. A median passes over the large numbers that stand for "no bound"; and where the two differ the smaller one
 // makes for the stricter tolerance.
-func (s *scaled) centreBounds(p *Problem) {
+func (s *scaled) centreBounds(p *Problem, t typical) {
 	var rows, columns []float64
 	note := func(list *[]float64, b, f float64) {
 		if b != 0 && finite(b) {
@@ -158,6 +169,11 @@ func (s *scaled) centreBounds(p *Problem) {
 	middle := math.Min(median(rows), median(columns))
 	if math.IsInf(middle, 1) {
 		return
+	}
+	if t == typicalLargest {
+		for _, v := range append(rows, columns...) {
+			middle = math.Max(middle, v)
+		}
 	}
 	g := math.Ldexp(1, int(math.Round(middle)))
 	for i := range s.row {

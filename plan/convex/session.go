@@ -13,7 +13,10 @@ type session struct {
 
 // newSession scales p. The session reads p again only to report, so that p must not change meanwhile.
 func newSession(p *Problem) *session {
-	s := scale(p)
+	return newSessionOf(p, scale(p))
+}
+
+func newSessionOf(p *Problem, s *scaled) *session {
 	return &session{p: p, s: s, e: newEngine(s.matrix, s.cost, s.lower, s.upper)}
 }
 

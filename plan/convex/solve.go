@@ -12,7 +12,8 @@ import (
 // How it ended is in Solution.Status, which is never more than the arithmetic supports: Certify checks it from the data alone. The
 // error is not nil only for bad options. On a cancelled context the status is Interrupted.
 //
-// Method without H: dual simplex with bound flipping and steepest-edge prices, primal simplex to finish where costs had to be shifted.
+// Method without H: dual simplex with bound flipping and steepest-edge prices, primal simplex to finish where costs had to be shifted;
+// where rounding stands in the way a second attempt in other units, whose answer counts when its certificate is accepted.
 // With a definite H: dual active set; with a semidefinite one, or where that fails: interior point. A Hessian that bends the wrong
 // way gives NotConvex. See the package comment for the sources.
 func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
@@ -22,11 +23,30 @@ func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
 	if p.hessian != nil {
 		return solveQuadratic(ctx, p, o), nil
 	}
-	t := newSession(p)
+	first := solveLinear(ctx, p, scale(p), o)
+	endless := first.Status == IterationLimit && o.MaxIterations == 0
+	if first.Status != NumericalTrouble && !endless {
+		return first, nil
+	}
+	o.Start = first.Basis
+	if second := solveLinear(ctx, p, scaleAbout(p, typicalLargest), o); second.Status != NumericalTrouble && Certify(p, second).Accepted {
+		second.Iterations += first.Iterations
+		second.Primal += first.Primal
+		return second, nil
+	}
+	return first, nil
+}
+
+// solveLinear solves a linear programme in the given scales. A proof of infeasibility that the data do not support is none.
+func solveLinear(ctx context.Context, p *Problem, s *scaled, o Options) *Solution {
+	t := newSessionOf(p, s)
 	t.e.progress = o.Progress
 	t.e.start(o.Start)
-	status := t.solve(ctx, o.iterationLimit(t.e.rows, t.e.n))
-	return report(t, status), nil
+	out := report(t, t.solve(ctx, o.iterationLimit(t.e.rows, t.e.n)))
+	if out.Status == Infeasible && !Certify(p, out).Accepted {
+		out.Status, out.Ray = NumericalTrouble, nil
+	}
+	return out
 }
 
 // start adopts a basis, or the rows when there is none or its number of columns differs.

@@ -37,9 +37,8 @@ const (
 	// refactorEvery is the number of changes of the kernel after which it is factored afresh.
 	refactorEvery = 400
 	// proofMargin is the least distance from feasible, relative to the sum of absolute terms, that a proof of infeasibility must
-	// show: a thousand times the rounding of a twofold sum over single-precision-clean data would be far smaller, so that
-	// this is a statement about the data, not about the arithmetic.
-	proofMargin = 1e-10
+	// show: what feasibilityTolerance on the bounds in it could explain.
+	proofMargin = feasibilityTolerance
 	// negligibleShare is the multiplier of an unbounded value, relative to the largest multiplier, that counts as zero.
 	negligibleShare = 1e-9
 	// maxRounds bounds how often the dual and the primal method hand over to each other.

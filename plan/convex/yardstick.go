@@ -11,6 +11,7 @@ import (
 type yardstick struct {
 	row, col    []float64
 	value, cost float64
+	most        float64 // size of the largest finite bound, at least value
 }
 
 // yardstickSweeps is the number of sweeps of the equilibration; after two the largest entries of rows and columns are one within
@@ -63,6 +64,7 @@ func (u *yardstick) setValue(p *Problem) {
 	note := func(kind int, b, f float64) {
 		if b != 0 && finite(b) {
 			sizes[kind] = append(sizes[kind], math.Abs(b)*f)
+			u.most = math.Max(u.most, math.Abs(b)*f)
 		}
 	}
 	for i, f := range u.row {
@@ -84,6 +86,7 @@ func (u *yardstick) setValue(p *Problem) {
 	if finite(least) {
 		u.value = least
 	}
+	u.most = math.Max(u.most, u.value)
 }
 
 // setCost takes the largest cost, or what the natural unit of a column makes of its own curvature.
