@@ -77,3 +77,34 @@ func TestNothingStopsTheReader(t *testing.T) {
 		}
 	}
 }
+
+// TestPlaceInAHole: a well in a hole is not merely outside, and the message says so.
+func TestPlaceInAHole(t *testing.T) {
+	const hole = `[-30.6, 47.0]], [[-30.5410, 47.0275], [-30.5410, 47.0300], [-30.5380, 47.0300], [-30.5380, 47.0275], [-30.5410, 47.0275]]]`
+	_, findings := apply(t, edit{"extent.geojson", "[-30.6, 47.0]]]", hole}).read()
+	for _, f := range findings {
+		if text := f.String(); f.Severity == Error && strings.Contains(text, `"W2"`) && strings.Contains(text, "it is in a hole of the extent") {
+			return
+		}
+	}
+	t.Errorf("no word on the hole among\n%s", findingLines(findings))
+}
+
+// TestSalineFrontWithoutSaltWater: a front is watched, but nothing says where the salt water stands.
+func TestSalineFrontWithoutSaltWater(t *testing.T) {
+	warned := func(edits ...edit) bool {
+		_, findings := apply(t, edits...).read()
+		for _, f := range findings {
+			if f.Severity == Warning && strings.Contains(f.String(), "while no edge is saline") {
+				return true
+			}
+		}
+		return false
+	}
+	if warned() {
+		t.Error("warned although the coast is saline")
+	}
+	if !warned(edit{"edges.geojson", `"saline": true, `, ""}) {
+		t.Error("no warning where no edge is saline")
+	}
+}

@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"github.com/paulmach/orb"
+	"github.com/paulmach/orb/planar"
 
 	"springbound/aquifer"
 )
@@ -44,6 +45,11 @@ func (b *builder) outsideHint(at orb.Point) string {
 	if lon, lat, err := b.p.Plane.Inverse(at[0], at[1]); err == nil && math.Abs(lon) <= 90 {
 		if x, y, err := b.p.Plane.Forward(lat, lon); err == nil && b.inside(orb.Point{x, y}) {
 			return exchangedHint
+		}
+	}
+	for i, ring := range b.p.Site.Extent {
+		if i > 0 && planar.RingContains(ring, at) {
+			return fmt.Sprintf("it is in a hole of the extent, %s m from the hole's edge; take the hole out of the extent if water flows there", roundMetres(distanceToPolygon(b.p.Site.Extent, at)))
 		}
 	}
 	return fmt.Sprintf("it is %s m from the outline", roundMetres(distanceToPolygon(b.p.Site.Extent, at)))

@@ -205,10 +205,15 @@ func (b *builder) frontReceptor(p placed, r *wells.Receptor) {
 			return
 		}
 	}
+	saline := false
 	for _, e := range b.p.Site.Edges {
+		saline = saline || e.Saline
 		if e.Saline && len(e.Path) > 1 && distanceToLine(e.Path, r.At) < distanceToLine(e.Path, r.To) {
 			p.warn(Finding{Property: p.spot(), Found: "a line whose first point is nearer to the saline edge " + quoted(e.Name), Allowed: "from inland towards the salt water", Hint: "is it drawn the wrong way round?"})
 		}
+	}
+	if !saline {
+		p.warn(Finding{Property: "kind", Found: "saline_front, while no edge is saline", Allowed: "a prescribed_head edge with saline = true where the salt water stands", Hint: "without it no inward flow of salt water is looked for"})
 	}
 	b.node("receptor "+r.ID, r.At, 0, false)
 	b.node("receptor "+r.ID+" to", r.To, 0, false)
