@@ -171,6 +171,9 @@ func (f *Field) Sensitivities(ctx context.Context, state *State, o Options) (*Li
 				r.Slope[w] -= fs[i].Direct[w]
 			}
 		}
+		if f.Alter != nil {
+			f.Alter(i, r.Slope)
+		}
 		lin.Rows = append(lin.Rows, r)
 	}
 	if o.Capture {

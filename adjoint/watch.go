@@ -65,6 +65,9 @@ type Field struct {
 	// something off, before rows are asked for.
 	Switching bool
 
+	// Alter, where set, changes a row's slopes after its adjoint solve, to prove that the audit sees it; tests only.
+	Alter func(row int, slope []float64)
+
 	placeSlope map[int32][]float64 // slopes of worst places solved before
 }
 

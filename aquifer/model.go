@@ -256,6 +256,9 @@ func (m *Model) finish(ctx context.Context, o Options) error {
 	if err := m.addSprings(ctx); err != nil {
 		return err
 	}
+	if o.Alter != nil {
+		o.Alter(Terms{m})
+	}
 	err = m.refactor(ctx)
 	o.report("factor", 1, 1)
 	return err

@@ -13,6 +13,9 @@ type Options struct {
 	Workers  int     // processors to use; 0 = all; results do not depend on it
 
 	Progress func(stage string, done, total int) // optional; called from one goroutine
+
+	// Alter, where set, changes terms after assembly, to prove that the audit sees it; tests only.
+	Alter func(Terms)
 }
 
 // Validate names the first option that is out of range.
