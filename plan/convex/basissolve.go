@@ -51,7 +51,7 @@ func (e *engine) computeValues() {
 		e.x[j] = 0
 	}
 	rows := e.x[e.n:]
-	e.m.times(e.dr, e.x[:e.n])
+	e.m.times(e.dr, e.x[:e.n], e.byCol)
 	for t, i := range e.rList {
 		e.dxJ[t] = rows[i] - e.dr[i]
 	}

@@ -165,7 +165,7 @@ func (f *filter) compact() Status {
 			continue
 		}
 		f.origin = append(f.origin, i)
-		small.a = append(small.a, f.p.row(i)...)
+		small.a = append(small.a, f.p.row(i))
 		small.rowName = append(small.rowName, f.p.rowName[i])
 		small.rowLower = append(small.rowLower, lower)
 		small.rowUpper = append(small.rowUpper, upper)

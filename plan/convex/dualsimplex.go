@@ -283,16 +283,21 @@ func (e *engine) passBounds() {
 	}
 }
 
-// addColumns adds delta[f] times column list[f] to dst; entries of list that are rows are passed over.
+// addColumns adds delta[f] times column list[f] to dst; entries of list that are rows are passed over. It overwrites delta.
 func (e *engine) addColumns(dst []float64, list []int, delta []float64) {
+	for f, v := range list {
+		if v < e.m.dense {
+			delta[f] *= e.m.colScale[v]
+		}
+	}
 	for i := range dst {
-		row, sum := e.m.row(i), 0.0
+		row, sum := e.m.a[i], 0.0
 		for f, v := range list {
-			if v < e.m.dense {
+			if v < len(row) {
 				sum += row[v] * delta[f]
 			}
 		}
-		dst[i] += sum
+		dst[i] += sum * e.m.rowScale[i]
 	}
 	for f, v := range list {
 		if v >= e.m.dense && v < e.n {

@@ -121,9 +121,11 @@ func buildForm(p *Problem, h *hessian, typical float64) *interiorForm {
 func (f *interiorForm) takeRows(at []int32, fixed []float64) {
 	p := f.p
 	entries := len(p.unit)
-	for _, v := range p.a {
-		if v != 0 {
-			entries++
+	for _, row := range p.a {
+		for _, v := range row {
+			if v != 0 {
+				entries++
+			}
 		}
 	}
 	f.a.col, f.a.val = make([]int32, 0, entries), make([]float64, 0, entries)

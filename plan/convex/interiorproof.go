@@ -87,7 +87,7 @@ func recession(p *Problem) *Problem {
 		q.columns = append(q.columns, c)
 	}
 	add := func(lower, upper float64) []float64 {
-		q.a = append(q.a, make([]float64, all)...)
+		q.a = append(q.a, make([]float64, all))
 		q.rowName = append(q.rowName, "")
 		q.rowLower = append(q.rowLower, lower)
 		q.rowUpper = append(q.rowUpper, upper)

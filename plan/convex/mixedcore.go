@@ -163,11 +163,13 @@ func (c *core) expand(x []float64) []float64 {
 func (c *core) problem(cuts []coreRow) *Problem {
 	n, m := len(c.cost), len(c.rows)+len(cuts)
 	p := &Problem{sense: Minimise, columns: make([]Column, n), rowName: make([]string, m), rowLower: make([]float64, m),
-		rowUpper: make([]float64, m), a: make([]float64, m*n)}
+		rowUpper: make([]float64, m), a: make([][]float64, m)}
 	for j := range p.columns {
 		p.columns[j] = Column{Cost: c.cost[j], Lower: c.lpLower[j], Upper: c.lpUpper[j]}
 	}
+	all := make([]float64, m*n)
 	for i := 0; i < m; i++ {
+		p.a[i] = all[i*n : i*n+n : i*n+n]
 		r := c.rowOrCut(cuts, i)
 		p.rowLower[i], p.rowUpper[i] = r.lower, r.upper
 		dst := p.row(i)

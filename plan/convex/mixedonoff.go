@@ -69,9 +69,10 @@ func holds(list []int, v int) bool {
 // appendColumn adds a column with no entries in the rows and returns its index.
 func (p *Problem) appendColumn(c Column) int {
 	n, m := len(p.columns), len(p.rowName)
-	a := make([]float64, m*(n+1))
-	for i := 0; i < m; i++ {
-		copy(a[i*(n+1):i*(n+1)+n], p.row(i))
+	a := make([][]float64, m)
+	for i := range a {
+		a[i] = make([]float64, n+1)
+		copy(a[i], p.row(i))
 	}
 	p.columns = append(p.columns, c)
 	p.a = a

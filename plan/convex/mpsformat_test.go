@@ -193,9 +193,11 @@ func sameModel(t testing.TB, a, b *Model) {
 			t.Errorf("column %d: %+v became %+v", j, c, d)
 		}
 	}
-	for k := range p.a {
-		if p.a[k] != q.a[k] {
-			t.Fatalf("entry %d: %v became %v", k, p.a[k], q.a[k])
+	for i := range p.a {
+		for j, v := range p.a[i] {
+			if v != q.a[i][j] {
+				t.Fatalf("entry %d of row %d: %v became %v", j, i, v, q.a[i][j])
+			}
 		}
 	}
 	for i := range p.rowLower {

@@ -221,7 +221,6 @@ func (m *mpsParser) model() (*Model, error) {
 			a[e.row*n+j] = e.value
 		}
 	}
-	p.a = make([]float64, 0, len(a))
 	for i, r := range m.rows {
 		lower, upper := r.bounds()
 		if _, err := p.AddRow(Row{Name: r.name, Coefficients: a[i*n : i*n+n], Lower: lower, Upper: upper}); err != nil {

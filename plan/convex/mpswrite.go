@@ -153,7 +153,7 @@ func (x *mpsWriter) columnSection() {
 		mark(whole[j])
 		fmt.Fprintf(x.w, " %s %s %s\n", n, x.cost, number(x.p.columns[j].Cost))
 		for i, r := range x.row {
-			if v := x.p.a[i*len(x.col)+j]; v != 0 {
+			if v := x.p.a[i][j]; v != 0 {
 				fmt.Fprintf(x.w, " %s %s %s\n", n, r, number(v))
 			}
 		}

@@ -63,7 +63,7 @@ func (e *engine) polishValues(f *denseFactor) {
 		}
 	}
 	rows := e.x[e.n:]
-	e.m.times(rows, e.x[:e.n])
+	e.m.times(rows, e.x[:e.n], e.byCol)
 	for _, i := range e.rList {
 		rows[i] = e.rest(e.n + i)
 	}
@@ -71,9 +71,9 @@ func (e *engine) polishValues(f *denseFactor) {
 
 // subtractRow subtracts row i times x.
 func (e *engine) subtractRow(sum *twofold, i int) {
-	for j, a := range e.m.row(i) {
+	for j, a := range e.m.a[i] {
 		if x := e.x[j]; a != 0 && x != 0 {
-			sum.addProduct(-a, x)
+			sum.addProduct(-a*(e.m.rowScale[i]*e.m.colScale[j]), x)
 		}
 	}
 	for u, r := range e.m.unitRow {

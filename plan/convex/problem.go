@@ -49,11 +49,11 @@ type Problem struct {
 	rowName  []string
 	rowLower []float64
 	rowUpper []float64
-	a        []float64 // row after row, each len(columns) long
-	unitRow  []int     // helper columns with a single entry, behind the dense ones: the row ...
-	unitSign []float64 // ... and the entry, +1 or -1
-	unit     []Column  // ... with cost and bounds
-	hessian  *hessian  // of the dense columns, nil for a linear programme; never changed
+	a        [][]float64 // coefficients by row, each len(columns) long
+	unitRow  []int       // helper columns with a single entry, behind the dense ones: the row ...
+	unitSign []float64   // ... and the entry, +1 or -1
+	unit     []Column    // ... with cost and bounds
+	hessian  *hessian    // of the dense columns, nil for a linear programme; never changed
 }
 
 // maxEntries caps rows x columns, so that a wrong size is an error and not an attempt to take all memory (8 bytes each).
@@ -87,16 +87,18 @@ func (p *Problem) AddRow(r Row) (rowIndex int, err error) {
 	if (i+1)*max(len(p.columns), 1) > maxEntries {
 		faults.add(BadSize, partRow, i, r.Name, float64(i), "the problem is too large for dense storage")
 	}
-	for j, v := range r.Coefficients {
-		if !finite(v) {
-			faults.add(NotFinite, partRow, i, r.Name, v, fmt.Sprintf("coefficient of column %d is not a finite number", j))
+	if !allFinite(r.Coefficients) {
+		for j, v := range r.Coefficients {
+			if !finite(v) {
+				faults.add(NotFinite, partRow, i, r.Name, v, fmt.Sprintf("coefficient of column %d is not a finite number", j))
+			}
 		}
 	}
 	faults.checkBounds(partRow, i, r.Name, r.Lower, r.Upper)
 	if err := faults.err(); err != nil {
 		return -1, err
 	}
-	p.a = append(p.a, r.Coefficients...)
+	p.a = append(p.a, append([]float64(nil), r.Coefficients...))
 	p.rowName = append(p.rowName, r.Name)
 	p.rowLower = append(p.rowLower, r.Lower)
 	p.rowUpper = append(p.rowUpper, r.Upper)
@@ -172,7 +174,10 @@ func (p *Problem) Clone() *Problem {
 	q.rowName = append([]string(nil), p.rowName...)
 	q.rowLower = append([]float64(nil), p.rowLower...)
 	q.rowUpper = append([]float64(nil), p.rowUpper...)
-	q.a = append([]float64(nil), p.a...)
+	q.a = make([][]float64, len(p.a))
+	for i, row := range p.a {
+		q.a[i] = append([]float64(nil), row...)
+	}
 	q.unitRow = append([]int(nil), p.unitRow...)
 	q.unitSign = append([]float64(nil), p.unitSign...)
 	q.unit = append([]Column(nil), p.unit...)
@@ -180,10 +185,7 @@ func (p *Problem) Clone() *Problem {
 }
 
 // row returns the stored coefficients of row i.
-func (p *Problem) row(i int) []float64 {
-	n := len(p.columns)
-	return p.a[i*n : i*n+n : i*n+n]
-}
+func (p *Problem) row(i int) []float64 { return p.a[i] }
 
 func (p *Problem) mustColumn(j int) {
 	if j < 0 || j >= len(p.columns) {

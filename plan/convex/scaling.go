@@ -15,8 +15,8 @@ const scaleGain = 0.8
 // evenSpread is the spread of entries that needs no scaling at all.
 const evenSpread = 64
 
-// scaled is a problem in scaled form, minimised: entry a_ij row_i col_j, cost c_j col_j cost, bounds of columns divided by col_j,
-// bounds of rows times row_i. All factors are powers of two.
+// scaled is a problem in scaled form, minimised: entry a_ij row_i col_j, which is never stored, cost c_j col_j cost, bounds of columns
+// divided by col_j, bounds of rows times row_i. All factors are powers of two.
 type scaled struct {
 	matrix       *matrix
 	cost         []float64
@@ -45,13 +45,8 @@ func scaleAbout(p *Problem, t typical) *scaled {
 	s.balance(p)
 	s.centreBounds(p, t)
 	s.scaleCost(p)
-	s.matrix = &matrix{rows: m, dense: n, cols: n + u, a: make([]float64, m*n), unitRow: p.unitRow, unitValue: make([]float64, u)}
-	for i := 0; i < m; i++ {
-		dst, src, r := s.matrix.row(i), p.row(i), s.row[i]
-		for j := range dst {
-			dst[j] = src[j] * (r * s.col[j])
-		}
-	}
+	s.matrix = &matrix{rows: m, dense: n, cols: n + u, a: p.a, rowScale: s.row, colScale: s.col[:n], unitRow: p.unitRow,
+		unitValue: make([]float64, u)}
 	for k, i := range p.unitRow {
 		s.matrix.unitValue[k] = p.unitSign[k] * s.row[i] * s.col[n+k]
 	}
@@ -113,33 +108,6 @@ func (s *scaled) balance(p *Problem) {
 	}
 	for k, i := range p.unitRow {
 		s.col[n+k] = 1 / s.row[i]
-	}
-}
-
-// extremes returns the smallest and the largest |row_j col_j| that is not zero.
-func extremes(row, col []float64) (low, high float64) {
-	low = math.Inf(1)
-	for j, v := range row {
-		v = math.Abs(v) * col[j]
-		if v > high {
-			high = v
-		}
-		if v < low && v > 0 {
-			low = v
-		}
-	}
-	return low, high
-}
-
-func noteColumns(row []float64, factor float64, small, large []float64) {
-	for j, v := range row {
-		v = math.Abs(v) * factor
-		if v > large[j] {
-			large[j] = v
-		}
-		if v < small[j] && v > 0 {
-			small[j] = v
-		}
 	}
 }
 

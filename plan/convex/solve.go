@@ -148,7 +148,7 @@ func proofRay(p *Problem, s *scaled, proof []float64) *Ray {
 		var z twofold
 		for i, y := range r.Rows {
 			if y != 0 {
-				z.addProduct(-y, p.a[i*len(p.columns)+j])
+				z.addProduct(-y, p.a[i][j])
 			}
 		}
 		r.Columns[j] = z.value()

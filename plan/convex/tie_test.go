@@ -229,8 +229,10 @@ func TestNearestPlanning(t *testing.T) {
 		}
 		for _, f := range []float64{1e6, 1e-6} {
 			q, want, moved := p.Clone(), mustNearest(t, p, s, target, nil).Solution.X, make([]float64, len(target))
-			for k := range q.a {
-				q.a[k] /= f
+			for i, row := range p.a {
+				for j, v := range row {
+					q.a[i][j] = v / f
+				}
 			}
 			for j := range q.columns {
 				q.columns[j].Lower, q.columns[j].Upper, moved[j] = q.columns[j].Lower*f, q.columns[j].Upper*f, target[j]*f
@@ -241,8 +243,10 @@ func TestNearestPlanning(t *testing.T) {
 					t.Errorf("seed %d, rates times %g: well %d at %v, want %v", seed, f, j, x/f, want[j])
 				}
 			}
-			for k := range q.a {
-				q.a[k] = p.a[k] * f
+			for i, row := range p.a {
+				for j, v := range row {
+					q.a[i][j] = v * f
+				}
 			}
 			copy(q.columns, p.columns)
 			for i := range q.rowUpper {
