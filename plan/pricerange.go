@@ -15,9 +15,6 @@ import (
 // is the optimum itself, so that the ends of a range follow exactly from t there.
 func (p *planner) findRanges(ctx context.Context, g *programme, sol *convex.Solution) error {
 	p.dropRanges()
-	if g.problem.Quadratic() {
-		return nil // the optimum is not made of straight pieces
-	}
 	asked, err := p.rangeProgramme(ctx, g, sol)
 	if err == nil {
 		err = p.askRanges(ctx, g, asked)
@@ -70,7 +67,7 @@ func (p *planner) rangeProgramme(ctx context.Context, g *programme, sol *convex.
 		columns = append(columns, g.problem.Column(j))
 	}
 	for k, n := range rows {
-		if n > 1 {
+		if n > 1 && !g.problem.Quadratic() { // whose bounds move as a group
 			r.moving[k] = len(columns)
 			columns = append(columns, convex.Column{Name: "tangents of " + p.setup.boundWords(p.bounds[k])})
 		}
@@ -155,6 +152,9 @@ func (p *planner) askRanges(ctx context.Context, g *programme, r *rangeProgramme
 			p.wellRange[i] = found
 		})
 	}
+	if g.problem.Quadratic() {
+		return p.askQuadratic(ctx, g, r, sides, take)
+	}
 	ranges, err := convex.Ranges(ctx, r.problem, r.solution, sides)
 	if err != nil {
 		return err
@@ -197,7 +197,7 @@ const (
 )
 
 func (p *planner) holdsFor() string {
-	var parts []string
+	parts := p.curvedHolds()
 	if len(p.cuts) > 0 {
 		parts = append(parts, tangentsOnly)
 	}

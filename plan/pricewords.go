@@ -17,9 +17,15 @@ func (p *planner) endWords(g *programme, x convex.Range, end convex.End) string 
 		return "no rates keep every limit"
 	}
 	if end.Binds.Column == x.Of.Column && end.Binds.Index == x.Of.Index && !x.Of.Column {
+		if end.Leaves {
+			return "it no longer binds"
+		}
 		return "it binds"
 	}
-	return p.sideWords(g, end.Binds, true)
+	if !end.Binds.Column && !x.Of.Column && p.curved != nil && g.owners[end.Binds.Index] == g.owners[x.Of.Index] {
+		return "another tangent of the same limit binds"
+	}
+	return p.sideWords(g, end.Binds, !end.Leaves)
 }
 
 // sideWords says of a row's or column's bound that it is reached, or that it is left.
@@ -177,7 +183,7 @@ func (p *planner) farWords(b *bound, r *LimitResult, l wells.Limit, st step) str
 	if l.Sense == wells.AtLeast {
 		more = " less"
 	}
-	text := ", up to " + plainNumber(far, 2, 0, 4) + " " + st.many + more
+	text := p.upTo() + plainNumber(far, 2, 0, 4) + " " + st.many + more
 	if x.LooserThen != "" {
 		text += "; then " + x.LooserThen
 	}

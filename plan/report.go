@@ -188,7 +188,8 @@ type QuotaResult struct {
 
 // PriceRange is what a limit is worth to both sides, and how far. Prices are changes of the aim per unit by which the limit is
 // loosened: Tighter what the last unit is worth, Looser what one more is worth. The two differ where more limits meet at the plan
-// than fix it. With most-headroom a price moves along with the limit; the range is then that over which the same limits hold the plan.
+// than fix it. With most-headroom and with aims that are not linear a price moves along with the limit; the range is then that over which
+// the same limits hold the plan.
 type PriceRange struct {
 	Tighter     *float64 `json:"tighter_price"` // null: no plan keeps a tighter limit
 	TighterTo   *float64 `json:"tighter_to"`    // value of the limit to which Tighter holds; null: for ever

@@ -58,6 +58,8 @@ type End struct {
 	// Binds is the bound that is reached there and forces the change; no meaning for Endless. Where several are reached at once it
 	// is the one that takes the largest part in the change.
 	Binds SideOf
+	// Leaves tells that Binds is left there, its price at zero, and not reached; quadratic programmes only.
+	Leaves bool
 }
 
 // Range is what the optimum does when one bound moves: v(b) is concave for a maximisation, convex for a minimisation, and made of

@@ -133,7 +133,7 @@ func (a *activePiece) follow(g []Move, way, least float64) (quadraticSide, bool)
 	stuck, reached := false, 0
 	type gap struct{ room, rate, near float64 }
 	var gaps []gap // of values
-	at, side := -1, Side(0)
+	at, side, leaving := -1, Side(0), false
 	look := func(v int, which Side, room, rate, near, tiny float64, leaves bool) {
 		if !leaves {
 			gaps = append(gaps, gap{room, rate, near})
@@ -143,7 +143,7 @@ func (a *activePiece) follow(g []Move, way, least float64) (quadraticSide, bool)
 		case room <= near:
 			stuck = true
 		case room/-rate < out.reach:
-			out.reach, out.leaves = room/-rate, leaves
+			out.reach, leaving = room/-rate, leaves
 			at, side = v, which
 		}
 	}
@@ -175,8 +175,8 @@ func (a *activePiece) follow(g []Move, way, least float64) (quadraticSide, bool)
 			}
 		}
 		out.crowded = reached > 1
-		out.end = End{Kind: SlopeChanges, Binds: a.side(at, side)}
-		if !out.leaves && a.places[at] == Basic && a.blocked(at, side) || !out.leaves && a.places[at] != Basic {
+		out.end = End{Kind: SlopeChanges, Binds: a.side(at, side), Leaves: leaving}
+		if !leaving && a.places[at] == Basic && a.blocked(at, side) || !leaving && a.places[at] != Basic {
 			out.end.Kind = InfeasibleBeyond
 		}
 	}

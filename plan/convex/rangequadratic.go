@@ -13,8 +13,6 @@ type QuadraticRange struct {
 	Range
 	LeftBend, RightBend   float64 // change of the slope per unit of the bound, on either side [-]
 	LeftKnown, RightKnown bool
-	// BelowLeaves and AboveLeaves tell that the bound that Below or Above names is left there, its price at zero, and not reached.
-	BelowLeaves, AboveLeaves bool
 }
 
 const (
@@ -66,7 +64,9 @@ func QuadraticRanges(ctx context.Context, p *Problem, s *Solution, groups [][]Mo
 			return nil, err
 		}
 		r.LeftKnown, r.Left, r.LeftBend, r.From, r.Below = down.known, down.price, down.bend, r.At-down.reach*g[0].Rate, down.end
-		r.BelowLeaves, r.AboveLeaves = down.leaves, up.leaves
+		if r.LeftKnown && r.RightKnown && math.Abs(r.Left-r.Right) <= rangeSingular*math.Max(math.Abs(r.Left), math.Abs(r.Right)) {
+			r.Right = r.Left // the two differ by rounding
+		}
 		r.RightKnown, r.Right, r.RightBend, r.To, r.Above = up.known, up.price, up.bend, r.At+up.reach*g[0].Rate, up.end
 		list[k] = r
 	}
@@ -79,7 +79,6 @@ type quadraticSide struct {
 	price, bend float64
 	reach       float64
 	end         End
-	leaves      bool
 	crowded     bool // more than one bound is reached at the end
 }
 
@@ -154,7 +153,7 @@ func (q *quadraticSide) lookBeyond(ctx context.Context, p *Problem, s *Solution,
 		ok = t.Status != Infeasible
 	}
 	if !ok {
-		q.end.Kind, q.leaves = InfeasibleBeyond, false
+		q.end.Kind, q.end.Leaves = InfeasibleBeyond, false
 	}
 	return nil
 }

@@ -220,7 +220,7 @@ func TestQuadraticRangeByHand(t *testing.T) {
 		t.Fatal(err)
 	}
 	r := list[0]
-	if !near(r.Left, 4, 1e-12) || !near(r.Right, 4, 1e-12) || !near(r.RightBend, -2, 1e-12) || !near(r.To, 5, 1e-12) || !r.AboveLeaves || r.Above.Binds != side {
+	if !near(r.Left, 4, 1e-12) || !near(r.Right, 4, 1e-12) || !near(r.RightBend, -2, 1e-12) || !near(r.To, 5, 1e-12) || !r.Above.Leaves || r.Above.Binds != side {
 		t.Errorf("%+v", r)
 	}
 	if !near(r.From, 0, 1e-12) || r.Below.Kind != InfeasibleBeyond {

@@ -29,7 +29,7 @@ func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent
 		slope, status := w.face(ctx)
 		switch {
 		case status == Infeasible:
-			x.end, x.closed = End{InfeasibleBeyond, w.last}, k == 0
+			x.end, x.closed = End{Kind: InfeasibleBeyond, Binds: w.last}, k == 0
 			x.at = w.present(of)
 			return x, nil
 		case status != Optimal:
@@ -37,7 +37,7 @@ func (w *walk) oneWay(ctx context.Context, of SideOf, direction float64) (extent
 		case k == 0:
 			x.scaled, x.slope = slope, w.toUnits(slope)
 		case w.differ(slope, x.scaled):
-			x.end = End{SlopeChanges, w.culprit()}
+			x.end = End{Kind: SlopeChanges, Binds: w.culprit()}
 			x.at = w.present(of)
 			return x, nil
 		}
@@ -86,7 +86,7 @@ func (w *walk) atOnce(of SideOf, direction float64) (extent, bool) {
 	}
 	x.slope = w.toUnits(x.scaled)
 	by, p, speed := w.step(e)
-	x.at, x.end = boundAt(w.t.p, of)+direction*by/w.unit, End{SlopeChanges, w.last}
+	x.at, x.end = boundAt(w.t.p, of)+direction*by/w.unit, End{Kind: SlopeChanges, Binds: w.last}
 	if !(by <= math.MaxFloat64) {
 		x.at, x.end = math.Inf(int(direction)), End{Kind: Endless}
 		return x, true

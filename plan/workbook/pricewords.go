@@ -63,6 +63,9 @@ func holdsWords(x *plan.PriceRange, at, scale float64, unit string) string {
 	if text == "" {
 		return ""
 	}
+	if strings.HasPrefix(x.HoldsFor, plan.PriceMoves) {
+		return "The same limits hold " + text + "."
+	}
 	return "Price holds " + text + "."
 }
 
