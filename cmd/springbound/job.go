@@ -23,8 +23,10 @@ type job struct {
 	progress *progress
 	onField  func(row int, influence []float64) error
 
-	keepProblem bool              // the plan's programme is asked for
-	problem     *plan.ProblemFile // ... and found
+	alter       func(aquifer.Terms) // plants a fault in the flow model, to prove that the audit sees it; tests only
+	withoutFirm bool                // the firm capacity is not asked for
+	keepProblem bool                // the plan's programme is asked for
+	problem     *plan.ProblemFile   // ... and found
 }
 
 // projectFile resolves what the user named.
@@ -92,13 +94,22 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 
 // build meshes, assembles, factors and settles the state without pumping.
 func (j *job) build(ctx context.Context, workers int) error {
-	p := j.project
-	model, err := aquifer.Build(ctx, &p.Site, aquifer.Options{
-		Nodes: p.Mesh.Nodes, Finest: p.Mesh.Finest, Growth: p.Mesh.Growth, Workers: workers, Progress: j.progress.report,
-	})
+	model, err := aquifer.Build(ctx, &j.project.Site, j.modelOptions(workers))
 	if err != nil {
 		return err
 	}
+	return j.watch(ctx, model)
+}
+
+// modelOptions are the wishes for the mesh.
+func (j *job) modelOptions(workers int) aquifer.Options {
+	m := j.project.Mesh
+	return aquifer.Options{Nodes: m.Nodes, Finest: m.Finest, Growth: m.Growth, Workers: workers, Progress: j.progress.report, Alter: j.alter}
+}
+
+// watch puts wells and receptors into a model and settles the state without pumping.
+func (j *job) watch(ctx context.Context, model *aquifer.Model) (err error) {
+	p := j.project
 	if j.field, err = adjoint.NewField(model, p.Wells, p.Receptors); err != nil {
 		return err
 	}

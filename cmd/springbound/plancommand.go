@@ -92,7 +92,7 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 		return nil, err
 	}
 	make := func() (*plan.Report, error) {
-		o := plan.Options{Firm: true, Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }}
+		o := plan.Options{Firm: !j.withoutFirm, Progress: func(p plan.Progress) { j.progress.report("planning", p.Round, p.Round+1) }}
 		if j.keepProblem {
 			o.Problem = func(f *plan.ProblemFile) { j.problem = f }
 		}
