@@ -39,7 +39,7 @@ type Certificate struct {
 	Complementarity       float64 // largest price times distance from its bound, relative to the objective's terms [-]
 	PrimalObjective       float64 // [-]
 	DualObjective         float64 // [-]
-	Gap                   float64 // |primal - dual objective| relative to the objective's terms [-]
+	Gap                   float64 // |primal - dual objective|, and what the errors of reduced costs may add, relative to the objective's terms [-]
 	ProofMargin           float64 // Infeasible: distance of the combined rows and bounds from what they can reach, relative to its terms [-]
 	ProofStray            float64 // Infeasible: share of the margin that values as large as the largest bound could explain [-]
 	DirectionGain         float64 // Unbounded: gain along the direction relative to its terms [-]
@@ -186,13 +186,14 @@ func (c *Certificate) checkPrimal(p *Problem, x []float64, u yardstick) primalTe
 	return t
 }
 
-// checkDual computes signs, stationarity, slackness and the gap. Prices are turned to those of a minimisation.
+// checkDual computes signs, stationarity, slackness and the gap. Prices are turned to those of a minimisation. The gap is rated by the terms
+// of the objective, not by those of the prices, which are huge where two rows are nearly the same and then hide an error of any size.
 func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardstick) {
 	sign := 1.0
 	if p.sense == Maximise {
 		sign = -1
 	}
-	residual, terms := make([]twofold, len(s.X)), make([]float64, len(s.X))
+	residual, terms, astray := make([]twofold, len(s.X)), make([]float64, len(s.X)), 0.0
 	for j := range residual {
 		residual[j].add(sign * t.gradient[j].high)
 		residual[j].add(sign * t.gradient[j].low)
@@ -210,7 +211,9 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 	}
 	for j := range residual {
 		terms[j] = math.Max(terms[j]+math.Abs(s.ReducedCost[j]), u.cost/u.col[j])
-		c.Stationarity = largest(c.Stationarity, share(math.Abs(residual[j].value()), terms[j]))
+		off := math.Abs(residual[j].value())
+		c.Stationarity = largest(c.Stationarity, share(off, terms[j]))
+		astray += off * math.Max(math.Abs(s.X[j]), u.natural(j, p.anyColumn(j)))
 	}
 	d := dualSum{}
 	for i, price := range s.RowPrice {
@@ -227,16 +230,16 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 			c.DualViolationScaled = largest(c.DualViolationScaled, share(math.Abs(price), terms[j]))
 		}
 	}
-	scale := math.Max(math.Max(t.objective, d.terms), u.cost*u.value)
 	c.DualObjective = sign*d.sum.value() - t.quadratic
-	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective), scale)
+	scale := math.Max(math.Max(t.objective, math.Abs(c.DualObjective)), u.worth)
+	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective)+astray, scale)
 	c.Complementarity = share(d.slackness, scale)
 }
 
 // dualSum collects the dual objective.
 type dualSum struct {
-	sum              twofold
-	terms, slackness float64
+	sum       twofold
+	slackness float64
 }
 
 // take adds the term of one price; false when no finite bound supports its sign.
@@ -252,7 +255,6 @@ func (d *dualSum) take(price, value, lower, upper float64) bool {
 		return false
 	}
 	d.sum.addProduct(price, bound)
-	d.terms += math.Abs(price * bound)
 	d.slackness = largest(d.slackness, math.Abs(price*(value-bound)))
 	return true
 }

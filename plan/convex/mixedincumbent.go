@@ -127,7 +127,7 @@ const cancelled = 1e-6
 
 // sizeOf returns |value|, or a share of the terms that it is made of where that is larger.
 func (b *incumbent) sizeOf(x []float64, value float64) float64 {
-	terms := b.unit.cost * b.unit.value
+	terms := b.unit.worth
 	sum := 0.0
 	for j, v := range x {
 		sum += math.Abs(b.c.cost[j] * v)

@@ -271,5 +271,5 @@ func objectiveTerms(p *Problem, x []float64) float64 {
 	for j, c := range p.columns {
 		sum += math.Abs(c.Cost * x[j])
 	}
-	return math.Max(sum, unit.cost*unit.value)
+	return math.Max(sum, unit.worth)
 }

@@ -15,6 +15,9 @@ const scaleGain = 0.8
 // evenSpread is the spread of entries that needs no scaling at all.
 const evenSpread = 64
 
+// widestUnit bounds the unit of a column without entries, so that its bounds keep their digits.
+const widestUnit = 0x1p200
+
 // scaled is a problem in scaled form, minimised: entry a_ij row_i col_j, which is never stored, cost c_j col_j cost, bounds of columns
 // divided by col_j, bounds of rows times row_i. All factors are powers of two.
 type scaled struct {
@@ -22,6 +25,7 @@ type scaled struct {
 	cost         []float64
 	lower, upper []float64
 	row, col     []float64
+	empty        []bool  // by dense column: no row has an entry in it
 	costFactor   float64 // negative for a maximisation
 	report       Scaling
 }
@@ -103,8 +107,10 @@ func (s *scaled) balance(p *Problem) {
 	for i := range s.row {
 		s.row[i] = powerOfTwo(s.row[i])
 	}
+	s.empty = make([]bool, n)
 	for j := range col {
 		col[j] = powerOfTwo(col[j])
+		s.empty[j] = !(large[j] > 0)
 	}
 	for k, i := range p.unitRow {
 		s.col[n+k] = 1 / s.row[i]
@@ -131,8 +137,10 @@ func (s *scaled) centreBounds(p *Problem, t typical) {
 		note(&rows, p.rowUpper[i], r)
 	}
 	for j, c := range p.columns {
-		note(&columns, c.Lower, 1/s.col[j])
-		note(&columns, c.Upper, 1/s.col[j])
+		if !s.empty[j] {
+			note(&columns, c.Lower, 1/s.col[j])
+			note(&columns, c.Upper, 1/s.col[j])
+		}
 	}
 	middle := math.Min(median(rows), median(columns))
 	if math.IsInf(middle, 1) {
@@ -161,14 +169,27 @@ func median(list []float64) float64 {
 	return list[(len(list)-1)/2]
 }
 
-// scaleCost sets the factor of the cost, with the sign that makes it a minimisation.
+// scaleCost sets the factor of the cost, with the sign that makes it a minimisation. A column without entries has no natural unit; it
+// gets one in which its cost is not lost beside those of the others, since nothing but its sign matters.
 func (s *scaled) scaleCost(p *Problem) {
 	largest := 0.0
 	for j, c := range p.columns {
-		largest = math.Max(largest, math.Abs(c.Cost)*s.col[j])
+		if !s.empty[j] {
+			largest = math.Max(largest, math.Abs(c.Cost)*s.col[j])
+		}
 	}
 	for k, c := range p.unit {
 		largest = math.Max(largest, math.Abs(c.Cost)*s.col[len(p.columns)+k])
+	}
+	if !(largest > 0) {
+		for j, c := range p.columns {
+			largest = math.Max(largest, math.Abs(c.Cost)*s.col[j])
+		}
+	}
+	for j, c := range p.columns {
+		if s.empty[j] && c.Cost != 0 {
+			s.col[j] = math.Min(math.Max(1, powerOfTwo(largest/math.Abs(c.Cost))), widestUnit)
+		}
 	}
 	s.costFactor = 1
 	if largest > 0 {

@@ -12,6 +12,8 @@ type yardstick struct {
 	row, col    []float64
 	value, cost float64
 	most        float64 // size of the largest finite bound, at least value
+	worth       float64 // objective of the dearest column at a typical value
+	empty       []bool  // columns without entries, which have no unit but their own bounds and cost
 }
 
 // yardstickSweeps is the number of sweeps of the equilibration; after two the largest entries of rows and columns are one within
@@ -21,7 +23,7 @@ const yardstickSweeps = 2
 // measure equilibrates by roots of the largest entries (Ruiz 2001).
 func measure(p *Problem) yardstick {
 	m, n := p.Rows(), p.allColumns()
-	u := yardstick{row: ones(m), col: ones(n), value: 1, cost: 1}
+	u := yardstick{row: ones(m), col: ones(n), value: 1, cost: 1, worth: 1, empty: make([]bool, n)}
 	for sweep := 0; sweep < yardstickSweeps; sweep++ {
 		most := make([]float64, n)
 		for i := 0; i < m; i++ {
@@ -47,7 +49,7 @@ func measure(p *Problem) yardstick {
 			}
 		}
 		for j, top := range most {
-			if top > 0 {
+			if u.empty[j] = !(top > 0); top > 0 {
 				u.col[j] /= math.Sqrt(top)
 			}
 		}
@@ -72,9 +74,10 @@ func (u *yardstick) setValue(p *Problem) {
 		note(0, p.rowUpper[i], f)
 	}
 	for j, f := range u.col {
-		c := p.anyColumn(j)
-		note(1, c.Lower, 1/f)
-		note(1, c.Upper, 1/f)
+		if c := p.anyColumn(j); !u.empty[j] {
+			note(1, c.Lower, 1/f)
+			note(1, c.Upper, 1/f)
+		}
 	}
 	least := math.Inf(1)
 	for _, list := range sizes {
@@ -89,18 +92,45 @@ func (u *yardstick) setValue(p *Problem) {
 	u.most = math.Max(u.most, u.value)
 }
 
-// setCost takes the largest cost, or what the natural unit of a column makes of its own curvature.
+// setCost takes the largest cost, or what the natural unit of a column makes of its own curvature, and the worth of a typical value,
+// or of the bounds of the column where they are nearer. Columns without entries count only where there are no others.
 func (u *yardstick) setCost(p *Problem) {
-	top := 0.0
-	for j, f := range u.col {
-		top = math.Max(top, math.Abs(p.anyColumn(j).Cost)*f)
-	}
-	if p.hessian != nil {
-		for j, v := range p.hessian.diagonal() {
-			top = math.Max(top, math.Abs(v)*u.col[j]*u.col[j]*u.value)
-		}
+	top, worth := u.dearest(p, false)
+	if !(top > 0) {
+		top, worth = u.dearest(p, true)
 	}
 	if top > 0 {
 		u.cost = top
 	}
+	if worth > 0 {
+		u.worth = worth
+	}
+}
+
+func (u *yardstick) dearest(p *Problem, empty bool) (top, worth float64) {
+	var curvature []float64
+	if p.hessian != nil {
+		curvature = p.hessian.diagonal()
+	}
+	for j, f := range u.col {
+		if u.empty[j] != empty && curvature == nil {
+			continue
+		}
+		c := p.anyColumn(j)
+		cost := math.Abs(c.Cost) * f
+		if j < len(curvature) {
+			cost = math.Max(cost, math.Abs(curvature[j])*f*f*u.value)
+		}
+		top, worth = math.Max(top, cost), math.Max(worth, cost*u.natural(j, c)/f)
+	}
+	return top, worth
+}
+
+// natural returns a typical value of column j: of its bounds where they are nearer than the typical bound.
+func (u *yardstick) natural(j int, c Column) float64 {
+	value := u.value * u.col[j]
+	if most := math.Max(math.Abs(c.Lower), math.Abs(c.Upper)); most > 0 {
+		return math.Min(value, most)
+	}
+	return value
 }
