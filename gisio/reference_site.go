@@ -103,7 +103,7 @@ var wellsSection = Section{Name: "wells", Title: "Layer or table wells", About: 
 	{Name: "licensed", Class: Number, Kind: Rate, Meaning: "licensed rate", Example: `"licensed_ML_per_yr": 400`},
 	{Name: "requested", Class: Number, Kind: Rate, Meaning: "requested rate", Example: `"requested_L_per_s": 14`},
 	{Name: "fixed_rate", Class: Number, Kind: Rate, Required: "for a fixed well, unless an existing user's licensed rate is known", Meaning: "rate of a fixed well; left out for an existing user: the licensed rate", Example: `"fixed_rate_m3_per_d": 650`},
-	{Name: "min", Class: Number, Kind: Rate, Meaning: "least rate of a well that runs; the plan lets the well stand still or run at this at least (the aims least-energy and closest-to-requests: run at this at least); left out: none", Example: `"min_L_per_s": 4`},
+	{Name: "min", Class: Number, Kind: Rate, Meaning: "least rate of a well that runs; the plan lets the well stand still or run at this at least; left out: none", Example: `"min_L_per_s": 4`},
 	{Name: "max", Class: Number, Kind: Rate, Required: "for a decided well", Meaning: "largest daily mean rate", Example: `"max_L_per_s": 18`},
 	{Name: "duty_hours", Class: Number, Kind: Plain, Bound: "> 0", Meaning: "hours a day that the pump runs; left out: 24", Example: `"duty_hours": 20`},
 	{Name: "outage", Class: Flag, Meaning: "out of service", Example: `"outage": false`},

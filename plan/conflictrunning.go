@@ -33,7 +33,7 @@ func (p *planner) addRunning(columns []convex.Column) ([]convex.Column, *running
 	ruled := p.ruled()
 	for i := range s.Wells {
 		r.indicator[i] = -1
-		if s.column[i] >= 0 && s.linearAim() && (ruled[i] || s.switched(i)) {
+		if s.column[i] >= 0 && (ruled[i] || s.switched(i)) {
 			r.indicator[i] = len(columns)
 			r.whole = append(r.whole, len(columns))
 			columns = append(columns, convex.Column{Name: s.Wells[i].ID + " runs", Upper: 1})

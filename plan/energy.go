@@ -54,7 +54,9 @@ func (e *energyAim) at(ctx context.Context, p *planner, rates []float64) error {
 		e.loss = append(e.loss, w.QuadraticLoss*run*run)
 		row := make([]float64, len(s.decided))
 		for k, j := range s.decided {
-			row[k] = tan.slope[j]
+			if s.Wells[j].Max > 0 { // a well that cannot pump has no lift of its own, and would bend the energy one way only
+				row[k] = tan.slope[j]
+			}
 		}
 		e.mutual = append(e.mutual, row)
 	}

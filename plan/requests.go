@@ -119,7 +119,10 @@ func (p *planner) readRequests(g *programme, sol *convex.Solution) {
 			take(words, half*sol.RowPrice[r]*g.problem.Row(r).Coefficients[k])
 		}
 		end := "its largest rate " + flowText(s.Wells[i].Max)
-		if sol.ReducedCost[k] < 0 {
+		switch {
+		case p.runs != nil && !p.runs[i]:
+			end = "standing still"
+		case sol.ReducedCost[k] < 0:
 			end = "its least rate " + flowText(s.Wells[i].Min)
 		}
 		take(end, half*sol.ReducedCost[k])
