@@ -119,6 +119,7 @@ type builder struct {
 	tolerance   float64             // what counts as on the outline [m]
 	names       map[string]string   // of edges, rivers, lakes and springs, which results tell apart by name
 	kept        map[string][]placed // records of the features by kind, for findings later
+	brief       *record             // [brief]
 }
 
 // layerData is one layer as read: its features in their own system, and in the plane.

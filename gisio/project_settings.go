@@ -75,12 +75,7 @@ func (b *builder) readBrief() {
 		b.p.Brief.Aim = plan.Aim(briefSection.field("aim").Words[i])
 	}
 	b.p.Brief.Demand = rec.optional("demand")
-	if b.p.Brief.Aim == plan.MostHeadroom && !rec.has("demand") {
-		rec.missing("demand", "the aim most-headroom shares out a demand")
-	}
-	if b.p.Brief.Aim == plan.LeastEnergy && !rec.has("demand") {
-		rec.missing("demand", "the aim least-energy finds the least energy for a demand")
-	}
+	b.brief = rec
 	b.readRunning(rec, t)
 	list, ok := t["quota"].([]any)
 	if _, present := t["quota"]; present && !ok {
@@ -105,9 +100,10 @@ func (b *builder) readBrief() {
 // readQuota reads one quota.
 func (b *builder) readQuota(i int, table map[string]any) plan.Quota {
 	rec := b.settings.record(&b.reader, &quotaSection, table, "[[brief.quota]]", nil, "brief", "quota", fmt.Sprint(i))
-	q := plan.Quota{Name: rec.text("name"), Wells: rec.ids("wells"), PerDay: rec.optional("per_day"), PerYear: rec.optional("per_year"), Source: rec.text("source")}
-	if !rec.has("per_day") && !rec.has("per_year") {
-		rec.fail(Finding{Property: "per_day, per_year", Found: "missing, both of them", Allowed: "one of them or both"})
+	q := plan.Quota{Name: rec.text("name"), Wells: rec.ids("wells"), PerHour: rec.optional("per_hour"), PerDay: rec.optional("per_day"), PerYear: rec.optional("per_year"),
+		StartDay: rec.startDay("start_day"), Months: rec.months("months"), Source: rec.text("source")}
+	if !rec.has("per_hour") && !rec.has("per_day") && !rec.has("per_year") {
+		rec.fail(Finding{Property: "per_hour, per_day, per_year", Found: "missing, all of them", Allowed: "at least one"})
 	}
 	return q
 }

@@ -83,15 +83,18 @@ var meshSection = Section{Name: "mesh", Title: "[mesh]", About: "All may be left
 
 var briefSection = Section{Name: "brief", Title: "[brief]", About: "What the plan is asked for.", Fields: []Field{
 	{Name: "aim", Class: Word, Words: []string{"most-yield", "most-headroom", "least-energy", "closest-to-requests"}, Required: "yes", Meaning: "most-yield: largest total rate; most-headroom: largest smallest headroom for the demand; least-energy: least pumping energy for the demand, needs pump_efficiency and delivery_level of each decided well; closest-to-requests: least sum of squared differences from the requested rates, each as a share of the well's largest rate, needs requested of each decided well", Example: `aim = "most-yield"`},
-	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom, least-energy", Meaning: "total that the decided wells must give", Example: `demand = "60 L/s"`},
+	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom, least-energy, unless the states have it", Meaning: "total that the decided wells must give in the default state, unless the table of states says it", Example: `demand = "60 L/s"`},
 	{Name: "at_most_running", Class: Whole, Bound: ">= 0", Meaning: "how many of the decided wells may pump at once; left out: any number", Example: `at_most_running = 4`},
 }}
 
 var quotaSection = Section{Name: "quota", Title: "[[brief.quota]]", About: "Any number of them.", Fields: []Field{
 	{Name: "name", Class: Text, Required: "yes", Meaning: "shown in the results", Example: `name = "northern group"`},
 	{Name: "wells", Class: IDList, Required: "yes", Meaning: "ids of its wells", Example: `wells = ["W1", "W2"]`},
-	{Name: "per_day", Class: Number, Kind: DayVolume, Bound: ">= 0", Required: "one of the two", Meaning: "most water in a day", Example: `per_day = "4000 m3"`},
-	{Name: "per_year", Class: Number, Kind: YearVolume, Bound: ">= 0", Required: "one of the two", Meaning: "most water in a year", Example: `per_year = "1.2 Mm3"`},
+	{Name: "per_hour", Class: Number, Kind: HourVolume, Bound: ">= 0", Required: "one of the three", Meaning: "most water in an hour", Example: `per_hour = "200 m3"`},
+	{Name: "per_day", Class: Number, Kind: DayVolume, Bound: ">= 0", Required: "one of the three", Meaning: "most water in a day", Example: `per_day = "4000 m3"`},
+	{Name: "per_year", Class: Number, Kind: YearVolume, Bound: ">= 0", Required: "one of the three", Meaning: "most water in a year", Example: `per_year = "1.2 Mm3"`},
+	{Name: "start_day", Class: Text, Meaning: "first day of the quota's year, as MM-DD", Example: `start_day = "06-01"`},
+	{Name: "months", Class: Text, Meaning: "months in which it holds, as a list or a range; it then holds in the operating states that cover one of them; left out: the whole year", Example: `months = "5-9"`},
 	{Name: "source", Class: Text, Meaning: "where the quota comes from", Example: `source = "group agreement of 2021"`},
 }}
 

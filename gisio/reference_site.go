@@ -157,7 +157,7 @@ var limitsSection = Section{Name: "limits", Title: "Table limits", About: "One r
 	{Name: "unit", Class: Text, Required: "unless value carries it", Meaning: "unit of value", Example: `m`},
 	{Name: "baseline", Class: Word, Words: []string{wells.NoPumping.String(), wells.PresentPumping.String(), wells.OthersAtLicence.String()}, Meaning: "what a change counts from; left out: no_pumping", Example: `no_pumping`},
 	{Name: "counts", Class: Word, Words: []string{wells.Cumulative.String(), wells.Own.String()}, Meaning: "whose pumping counts; left out: cumulative", Example: `cumulative`},
-	{Name: "state", Class: Text, Meaning: "operating state; left out: the default one", Example: `drought`},
+	{Name: "state", Class: Text, Meaning: "operating state in which it must hold; left out: every one", Example: `drought`},
 	{Name: "reserve", Class: Number, Kind: Share, Bound: ">= 0", Meaning: "share of the room kept back; left out: none", Example: `10 %`},
 	{Name: "date", Class: Text, Meaning: "of the source", Example: `2023-01-10`},
 }, commonFields)}
@@ -171,13 +171,14 @@ var licencesSection = Section{Name: "licences", Title: "Table licences", About: 
 	{Name: "per_day", Class: Number, Kind: DayVolume, Bound: ">= 0", Required: "one of the three", Meaning: "most water in a day", Example: `3600 m3`},
 	{Name: "per_year", Class: Number, Kind: YearVolume, Bound: ">= 0", Required: "one of the three", Meaning: "most water in a year", Example: `1100 ML`},
 	{Name: "start_day", Class: Text, Meaning: "first day of the licence's year, as MM-DD", Example: `06-01`},
-	{Name: "months", Class: Text, Meaning: "months of use, 1 to 12, as a list or a range; left out: the whole year", Example: `5-9`},
+	{Name: "months", Class: Text, Meaning: "months of use, 1 to 12, as a list or a range: its wells pump only in operating states that cover no other month; left out: the whole year", Example: `5-9`},
 }, commonFields)}
 
-var statesSection = Section{Name: "states", Title: "Table states", About: "One row an operating state. All are steady states.", Fields: with([]Field{
+var statesSection = Section{Name: "states", Title: "Table states", About: "One row an operating state. All are steady states. Several are planned together, with a rate for each well in each of them.", Fields: with([]Field{
 	{Name: "name", Class: Text, Required: "yes", Meaning: "unique", Example: `drought`},
-	{Name: "default", Class: Flag, Required: "on one row, unless there is only one", Meaning: "the state that a limit means when it names none", Example: `yes`},
-	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Meaning: "total that the decided wells must give", Example: `75 L/s`},
+	{Name: "default", Class: Flag, Required: "on one row, unless there is only one", Meaning: "the state that the main tables of the results show", Example: `yes`},
+	{Name: "demand", Class: Number, Kind: Rate, Bound: ">= 0", Required: "with most-headroom, least-energy, unless the brief has it", Meaning: "total that the decided wells must give in it; left out: none", Example: `75 L/s`},
 	{Name: "recharge_factor", Class: Number, Kind: Plain, Bound: ">= 0", Meaning: "multiplies every recharge; left out: 1", Example: `0.6`},
-	{Name: "days", Class: Number, Kind: Plain, Bound: ">= 0", Meaning: "days a year that it lasts", Example: `40`},
+	{Name: "days", Class: Number, Kind: Plain, Bound: ">= 0", Required: "on every row beside yearly quantities", Meaning: "days a year that it lasts; those of all states make a year", Example: `40`},
+	{Name: "months", Class: Text, Meaning: "calendar months that it covers, 1 to 12, as a list or a range, against which licences' months of use are held", Example: `6-8`},
 }, commonFields)}

@@ -11,7 +11,7 @@ func TestLeastEnergyNamesWhatIsMissing(t *testing.T) {
 	aim := edit{"project.toml", `"most-yield"`, `"least-energy"`}
 	_, findings := apply(t, aim).read()
 	text := findingLines(findings)
-	for _, want := range []string{"demand is missing", "the aim least-energy finds the least energy for a demand",
+	for _, want := range []string{"demand is missing", `demand is missing in state "drought"`, "the aim least-energy finds the least energy for a demand",
 		`(id "W1"): pump_efficiency is missing`, `(id "W4"): delivery_level is missing`} {
 		if !strings.Contains(text, want) {
 			t.Errorf("no %q in\n%s", want, text)
@@ -20,7 +20,7 @@ func TestLeastEnergyNamesWhatIsMissing(t *testing.T) {
 	if strings.Contains(text, `(id "N1"): pump_efficiency`) {
 		t.Errorf("a fixed well is asked for its efficiency:\n%s", text)
 	}
-	edits := []edit{aim, {"project.toml", `# demand = "60 L/s"`, `demand = "60 L/s"`},
+	edits := []edit{aim, {"states.csv", "drought,no,,", "drought,no,40 L/s,"}, {"project.toml", `# demand = "60 L/s"`, `demand = "60 L/s"`},
 		{"wells.csv", "quadratic_loss,source", "quadratic_loss,source,pump_efficiency,delivery_level"}, {"wells.csv", "d/m2,d2/m5,", "d/m2,d2/m5,,%,m"}}
 	for _, loss := range []string{"W1,North well", "W2,Channel well", "W3,Field well", "W4,Shore well"} {
 		row := ""

@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"strconv"
 	"strings"
-	"time"
 
 	"springbound/wells"
 )
@@ -26,17 +25,22 @@ func (b *builder) buildStates() {
 	names := map[string]bool{}
 	defaults := 0
 	var last placed
+	var zero *placed // the default state, where it has no recharge
 	for _, p := range b.rowsOf(&statesSection) {
 		s := wells.OperatingState{Name: p.text("name"), Default: p.flag("default", false), RechargeFactor: 1}
 		p.label = "state " + s.Name
 		s.Demand = p.optional("demand")
 		s.RechargeFactor = p.numberOr("recharge_factor", 1)
 		s.Days = p.numberOr("days", 0)
+		s.Months = p.months("months")
 		if s.Name != "" && names[s.Name] {
 			p.fail(Finding{Property: "name", Found: quoted(s.Name) + " for a second time", Allowed: "each name once"})
 		}
 		if !(s.Days <= 366) {
 			p.fail(Finding{Property: "days", Found: fmt.Sprint(s.Days), Allowed: "at most 366"})
+		}
+		if s.Default && s.RechargeFactor == 0 {
+			zero = &p
 		}
 		names[s.Name] = true
 		if s.Default {
@@ -52,7 +56,10 @@ func (b *builder) buildStates() {
 		b.p.States[0].Default = true
 	case defaults != 1:
 		last.fail(Finding{Property: "default", Found: fmt.Sprintf("%d default states", defaults), Allowed: "one"})
+	case zero != nil:
+		zero.fail(Finding{Property: "recharge_factor", Found: "0 in the default state", Allowed: "above 0 there, as the other states' recharge is scaled from it", Hint: "make another state the default"})
 	}
+	b.checkDemands()
 }
 
 // buildLimits reads the limits.
@@ -97,7 +104,7 @@ func (b *builder) checkState(p placed, name string) {
 		names = append(names, s.Name)
 	}
 	if !contains(names, name) {
-		p.fail(Finding{Property: "state", Found: quoted(name) + ", no operating state of the project", Allowed: orList(names) + ", or blank for the default", Hint: nearestHint(name, names)})
+		p.fail(Finding{Property: "state", Found: quoted(name) + ", no operating state of the project", Allowed: orList(names) + ", or blank for every one", Hint: nearestHint(name, names)})
 	}
 }
 
@@ -208,15 +215,10 @@ func (b *builder) buildLicences() {
 	ids := map[string]string{}
 	for _, p := range b.rowsOf(&licencesSection) {
 		l := wells.Licence{ID: p.id("id"), Holder: p.text("holder"), Purpose: p.text("purpose"), Wells: p.ids("wells"), PerHour: p.optional("per_hour"), PerDay: p.optional("per_day"),
-			PerYear: p.optional("per_year"), StartDay: p.text("start_day"), Source: p.text("source")}
+			PerYear: p.optional("per_year"), StartDay: p.startDay("start_day"), Source: p.text("source")}
 		unique(p, ids, l.ID)
 		if !p.has("per_hour") && !p.has("per_day") && !p.has("per_year") {
 			p.fail(Finding{Property: "per_hour, per_day, per_year", Found: "missing, all of them", Allowed: "at least one"})
-		}
-		if l.StartDay != "" {
-			if _, err := time.Parse("2006-01-02", "2024-"+l.StartDay); err != nil {
-				p.fail(Finding{Property: "start_day", Found: quoted(l.StartDay), Allowed: "month and day as MM-DD, such as 06-01"})
-			}
 		}
 		l.Months = p.months("months")
 		b.checkWellIDs(p.record, "wells", l.Wells)
@@ -278,4 +280,5 @@ func (b *builder) checkQuotas() {
 		b.checkWellIDs(rec, "wells", q.Wells)
 	}
 	b.checkGroups()
+	b.checkDays()
 }

@@ -187,14 +187,18 @@ func (p *planner) checkQuotas(r *Report, verdict func(string, []string, string))
 		}
 	}
 	verdict("Licences and quotas are kept", passed, fmt.Sprintf("%d sums", len(r.Quotas)))
-	if s.demand == nil {
+	if len(s.demands) == 0 {
 		return
 	}
-	var short []string
-	if !(r.TotalRate-*s.demand >= -limitTolerance**s.demand) {
-		short = append(short, "the total of "+flowText(r.TotalRate)+" falls short of the demand of "+flowText(*s.demand))
+	var short, met []string
+	for _, d := range s.demands {
+		total := s.totalFor(d, r)
+		if !(total-d.amount >= -limitTolerance*d.amount) {
+			short = append(short, "the total of "+flowText(total)+" falls short of the demand of "+flowText(d.amount)+d.mark)
+		}
+		met = append(met, flowText(total)+" for "+flowText(d.amount)+d.mark)
 	}
-	verdict("Total meets the demand", short, flowText(r.TotalRate)+" for "+flowText(*s.demand))
+	verdict("Total meets the demand", short, joinSentences(met))
 }
 
 func (p *planner) checkRanges(r *Report, rates []float64, verdict func(string, []string, string)) {

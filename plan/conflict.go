@@ -208,11 +208,11 @@ func (m *member) amount(by float64) string {
 	return amountText(by, m.unit)
 }
 
-// capacity is what the wells up for decision can pump together at most [m³/d].
-func (s *setup) capacity() float64 {
+// capacity is what the wells up for decision that a demand is about can pump together at most [m³/d].
+func (s *setup) capacity(d demand) float64 {
 	total := 0.0
 	for i, w := range s.Wells {
-		if s.column[i] >= 0 && s.isYield(i) {
+		if s.column[i] >= 0 && s.meets(d, i) {
 			total += w.Max
 		}
 	}
@@ -222,8 +222,10 @@ func (s *setup) capacity() float64 {
 // conflictSentence says in words what cannot be kept.
 func (p *planner) conflictSentence(set, relaxed, existing, fixed []string) string {
 	var parts []string
-	if most := p.setup.capacity(); p.setup.demand != nil && *p.setup.demand > most {
-		parts = append(parts, "The required total of "+flowText(*p.setup.demand)+" is more than all wells up for decision can pump together, "+flowText(most)+".")
+	for _, d := range p.setup.demands {
+		if most := p.setup.capacity(d); d.amount > most {
+			parts = append(parts, "The "+d.words+" of "+flowText(d.amount)+" is more than all wells up for decision can pump together, "+flowText(most)+".")
+		}
 	}
 	switch {
 	case len(existing) > 0:

@@ -157,8 +157,8 @@ func (p *planner) memberOf(o owner) member {
 		size := q.scale(s)
 		return member{words: s.quotaWords(q), unit: "m3/d", source: q.source, size: size, effect: size, hard: q.limit == 0}
 	case ofDemand:
-		d := *s.demand
-		return member{words: "required total " + flowText(d), unit: "m3/d", source: "brief", size: d, effect: d, hard: d == 0}
+		d := s.demands[o.index]
+		return member{words: d.words + " " + flowText(d.amount), unit: "m3/d", source: "brief", size: d.amount, effect: d.amount, hard: d.amount == 0}
 	}
 	b := p.bounds[o.index]
 	row := p.oracle.known[0].row(b.target)

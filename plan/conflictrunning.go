@@ -40,8 +40,8 @@ func (p *planner) addRunning(columns []convex.Column) ([]convex.Column, *running
 		}
 		r.far += s.rateScale(i)
 	}
-	if s.demand != nil {
-		r.far = math.Max(r.far, *s.demand)
+	for _, d := range s.demands {
+		r.far = math.Max(r.far, d.amount)
 	}
 	r.far *= farRate
 	for k, rule := range s.rules {

@@ -67,7 +67,7 @@ func TestNoLimits(t *testing.T) {
 	}
 }
 
-// The demand of the default state is used where the brief has none, and the brief's where both have one.
+// The default state's own demand is used, the brief's where it has none; two that differ are said.
 func TestDemandOfState(t *testing.T) {
 	s := canalStrip(MostHeadroom, 600)
 	s.limit("L1", "P1", 0.30)
@@ -76,7 +76,7 @@ func TestDemandOfState(t *testing.T) {
 	exact(t, "total", r.TotalRate, 700)
 	s.brief.Demand = number(800)
 	r = s.plan(t)
-	exact(t, "total", r.TotalRate, 800)
+	exact(t, "total", r.TotalRate, 700)
 	if len(r.Findings) != 1 || r.State != "average" {
 		t.Errorf("%q %q", r.Findings, r.State)
 	}

@@ -49,7 +49,7 @@ func (e *energyAim) at(ctx context.Context, p *planner, rates []float64) error {
 		}
 		e.moving = e.moving || !p.oracle.known[0].well[i].Linear
 		run := w.RunningRate(1)
-		e.energy = append(e.energy, EnergyPerLift / *w.PumpEfficiency)
+		e.energy = append(e.energy, s.weight(i)*EnergyPerLift / *w.PumpEfficiency)
 		e.lift = append(e.lift, *w.DeliveryLevel-s.WellTerms[i].StaticLevel+tan.constant+dot(tan.slope, s.standing))
 		e.loss = append(e.loss, w.QuadraticLoss*run*run)
 		row := make([]float64, len(s.decided))
@@ -123,7 +123,7 @@ func (e *energyAim) asymmetry() float64 {
 // checkEnergy reports what least-energy lacks: a demand, and of every well up for decision that may pump its efficiency and the
 // level that it delivers to. Wells that recharge cannot be decided: the energy is not convex in their rates.
 func (s *setup) checkEnergy(faults *problemList) {
-	if s.demand == nil {
+	if len(s.demands) == 0 {
 		faults.addf("the aim %s needs a demand", s.Aim)
 	}
 	for _, i := range s.decided {

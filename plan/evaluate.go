@@ -73,6 +73,9 @@ func (p *planner) assemble(ctx context.Context, rates []float64, status string) 
 	if r.Switching = p.switchingResult(); r.Switching != nil {
 		s.cautions.addf("%s", r.Switching.Sentence)
 	}
+	if s.expanded != nil {
+		s.expanded.headroom, s.expanded.demands = p.share, s.demands
+	}
 	r.Headline = p.headline(r)
 	r.Invalid, r.Cautions, r.Findings, r.NotAssessed = s.invalid, s.cautions, s.findings, s.notAssessed
 	r.ModelValid = len(r.Invalid) == 0

@@ -44,6 +44,7 @@ func (p *planner) unprice() {
 	p.runs = nil
 	p.priced, p.share, p.wellPrice, p.minHolds, p.demandPrice, p.notUnique = false, 0, nil, nil, nil, false
 	p.trading = nil
+	p.setup.dropDemandPrices()
 	p.dropRanges()
 	for _, b := range p.bounds {
 		b.price = 0

@@ -37,7 +37,7 @@ func Firm(ctx context.Context, b Brief, m Model, o Options) (*FirmCapacity, erro
 // firmCapacity plans with every well in service and with each one out. rates are those of the plan: they say which wells are the largest.
 func (p *planner) firmCapacity(ctx context.Context, rates []float64) (*FirmCapacity, error) {
 	s := *p.setup
-	s.Aim, s.demand = MostYield, nil
+	s.Aim, s.demand, s.demands = MostYield, nil, nil
 	q := &planner{setup: &s, oracle: p.oracle, bounds: p.bounds, boundOfLimit: p.boundOfLimit, boundOfWell: p.boundOfWell,
 		cuts: append([]cut(nil), p.cuts...), lastRates: rates}
 	all, err := q.outage(ctx, -1, nil)
@@ -186,7 +186,7 @@ func (p *planner) binding(g *programme, sol *convex.Solution) []string {
 // checkFirm judges the demand with one well out of service.
 func (p *planner) checkFirm(r *Report, add func(name, result, detail string)) {
 	const name = "Demand with the largest well out of service"
-	f := p.firm
+	f, demand := p.firm, p.setup.firmDemand()
 	switch {
 	case f == nil || len(f.Lines) == 0:
 		add(name, notDone, "one plan is computed, with the wells that the brief has in service")
@@ -200,11 +200,11 @@ func (p *planner) checkFirm(r *Report, add func(name, result, detail string)) {
 	}
 	detail := "with " + f.Well + " out of service, the well whose loss costs the most, the others give " + flowText(*f.Total)
 	switch {
-	case p.setup.demand == nil:
+	case demand == nil:
 		add(name, notDone, "no demand is stated; "+detail)
-	case *f.Total >= *p.setup.demand*(1-limitTolerance):
-		add(name, pass, detail+" for a demand of "+flowText(*p.setup.demand))
+	case *f.Total >= *demand*(1-limitTolerance):
+		add(name, pass, detail+" for a demand of "+flowText(*demand))
 	default:
-		add(name, failed, detail+", short of the demand of "+flowText(*p.setup.demand)+" by "+flowText(*p.setup.demand-*f.Total))
+		add(name, failed, detail+", short of the demand of "+flowText(*demand)+" by "+flowText(*demand-*f.Total))
 	}
 }

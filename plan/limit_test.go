@@ -239,16 +239,12 @@ func TestRechargeIsNoYield(t *testing.T) {
 func TestNotAssessed(t *testing.T) {
 	s := twoWells(wells.PointLevel, 10)
 	s.limit("L", "R", 0.5)
-	s.limit("peak", "R", 0.1, func(l *wells.Limit) { l.State = "peak" })
 	s.limit("average", "R", 0.6, func(l *wells.Limit) { l.State = "average" })
-	s.brief.States = []wells.OperatingState{{Name: "average", Default: true}, {Name: "peak"}}
+	s.brief.States = []wells.OperatingState{{Name: "average", Default: true}}
 	s.brief.Receptors = append(s.brief.Receptors, wells.Receptor{ID: "far", Name: "Far spring", Kind: wells.SpringFlow, Outside: true})
 	s.limit("away", "far", 5)
 	r := s.plan(t)
 	exact(t, "rate", r.Wells[0].Rate, 400)
-	if got := limitOf(t, r, "peak").ResultState; got != `not assessed: operating state "peak" is not run by this version` {
-		t.Errorf("peak: %q", got)
-	}
 	if got := limitOf(t, r, "average").ResultState; got != "yes" {
 		t.Errorf("average: %q", got)
 	}
@@ -256,7 +252,7 @@ func TestNotAssessed(t *testing.T) {
 		t.Errorf("away: %q", got)
 	}
 	all := strings.Join(r.NotAssessed, "\n")
-	for _, want := range []string{"limit peak", "limit away", "Far spring", `operating state "peak"`} {
+	for _, want := range []string{"limit away", "Far spring"} {
 		if !strings.Contains(all, want) {
 			t.Errorf("%q is missing from %q", want, r.NotAssessed)
 		}

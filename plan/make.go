@@ -39,12 +39,17 @@ const (
 //     a pumping well and kept by cuts too; the plan's levels are checked with the full loss, and a plan that fails is not valid.
 //   - yield, demand and quotas count pumped rates only; the first two those of the decided wells.
 //
+// Several operating states are planned together, as states.go says; the model then answers for each of them (StateModel).
+//
 // The report is filled but for what only the caller knows (title, inputs, mesh, balances, capture, places on the globe). Its status
 // is StatusOptimal or StatusInfeasible when the error is nil. A *DataError comes with no report; a *NumericalError comes with one,
 // at the rates where it happened. Work stops between rounds when ctx ends, with its error.
 func Make(ctx context.Context, b Brief, m Model, o Options) (*Report, error) {
 	if err := o.Validate(); err != nil {
 		return nil, err
+	}
+	if len(b.States) > 1 {
+		return makeStates(ctx, b, m, o)
 	}
 	s, err := newSetup(b)
 	if err != nil {
@@ -84,7 +89,7 @@ func (s *setup) checkAim() error {
 	switch s.Aim {
 	case MostYield:
 	case MostHeadroom:
-		if s.demand == nil {
+		if len(s.demands) == 0 {
 			faults.addf("the aim %s needs a demand", s.Aim)
 		}
 	case LeastEnergy:
@@ -177,7 +182,7 @@ func (p *planner) optimise(ctx context.Context, o Options) (*Report, error) {
 		}
 		if cuts == 0 {
 			if o.Firm {
-				if p.firm, err = p.firmCapacity(ctx, rates); err != nil {
+				if p.firm, err = p.firmOf(ctx, rates); err != nil {
 					return nil, err
 				}
 			}
@@ -256,7 +261,7 @@ func (p *planner) aimScale() float64 {
 	}
 	sum := 0.0
 	for _, i := range p.setup.decided {
-		sum += p.setup.rateScale(i)
+		sum += p.setup.weight(i) * p.setup.rateScale(i)
 	}
 	return sum
 }

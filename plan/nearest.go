@@ -87,6 +87,9 @@ func (p *planner) twoPrices() bool {
 		return r != nil && r.Looser != nil && r.Tighter != nil && *r.Looser != *r.Tighter
 	}
 	ranges := []*PriceRange{p.demandRange}
+	for _, d := range p.setup.demands {
+		ranges = append(ranges, d.priceRange)
+	}
 	for _, b := range p.bounds {
 		if b.linear && (b.size > 0 || b.reserve == 0) {
 			ranges = append(ranges, b.priceRange)

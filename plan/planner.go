@@ -62,7 +62,7 @@ const (
 // owner says what a row of the programme stands for.
 type owner struct {
 	kind  ownerKind
-	index int // into quotas or bounds
+	index int // into quotas, demands or bounds
 }
 
 // programme is the linear programme of one round, with the meaning of its rows. Its columns are the decided wells in the order of

@@ -32,6 +32,7 @@ func (p *planner) findRanges(ctx context.Context, g *programme, sol *convex.Solu
 
 func (p *planner) dropRanges() {
 	p.demandRange, p.wellRange = nil, nil
+	p.setup.dropDemandRanges()
 	for _, b := range p.bounds {
 		b.priceRange = nil
 	}
@@ -119,8 +120,8 @@ func (p *planner) askRanges(ctx context.Context, g *programme, r *rangeProgramme
 			if row := g.problem.Row(i); row.Lower == row.Upper {
 				side = convex.BothSides
 			}
-			ask(convex.SideOf{Index: i, Side: side}, func(x convex.Range) { p.demandRange = p.falling(g, x, *s.demand) })
-		case o.kind == ofBound && r.first[o.index] == i:
+			ask(convex.SideOf{Index: i, Side: side}, func(x convex.Range) { p.setDemandRange(o.index, p.falling(g, x, s.demands[o.index].amount)) })
+		case o.kind == ofBound && r.first[o.index] == i && !p.idle(p.bounds[o.index]): // what a well that stands still need not keep has no bound
 			b := p.bounds[o.index]
 			side := convex.SideOf{Index: i, Side: convex.UpperSide}
 			if j := r.moving[o.index]; j >= 0 {

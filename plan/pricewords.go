@@ -73,7 +73,7 @@ func (p *planner) ownerWords(o owner) string {
 		q := s.quotas[o.index]
 		return "the quota " + q.name + " " + q.basis
 	case ofDemand:
-		return "the demand"
+		return "the demand" + s.demands[o.index].mark
 	}
 	b := p.bounds[o.index]
 	if b.limit >= 0 {
@@ -118,7 +118,7 @@ func (p *planner) aimText(v float64) string {
 	case ClosestToRequests:
 		return plainNumber(v, 2, 0, 9) + " of the sum of squares"
 	}
-	return flowText(v)
+	return flowText(v) + p.setup.meanWords()
 }
 
 // gainText says what loosening brings: an aim that is to be small is saved.

@@ -23,7 +23,7 @@ func (p *planner) build(withShare bool) (*programme, error) {
 		c := convex.Column{Name: s.Wells[i].ID}
 		c.Lower, c.Upper = p.rangeOf(i)
 		if s.Aim == MostYield && s.isYield(i) {
-			c.Cost = 1
+			c.Cost = s.weight(i)
 		}
 		columns = append(columns, c)
 	}
@@ -41,18 +41,18 @@ func (p *planner) build(withShare bool) (*programme, error) {
 	if err := p.addQuotas(g); err != nil {
 		return nil, err
 	}
-	if s.demand != nil {
+	for k, d := range s.demands {
 		a := g.coefficients()
 		for _, i := range s.decided {
-			if s.isYield(i) {
+			if s.meets(d, i) {
 				a[s.column[i]] = 1
 			}
 		}
 		upper := math.Inf(1)
 		if s.Aim == MostHeadroom || s.Aim == LeastEnergy {
-			upper = *s.demand
+			upper = d.amount
 		}
-		if err := g.add(owner{kind: ofDemand}, "required total", a, *s.demand, upper); err != nil {
+		if err := g.add(owner{ofDemand, k}, d.words, a, d.amount, upper); err != nil {
 			return nil, err
 		}
 	}
@@ -220,8 +220,7 @@ func (p *planner) readPrices(g *programme, sol *convex.Solution) {
 			if s.Aim.makesSmall() {
 				price = -price // what one more m³/d costs
 			}
-			price = tidy(price)
-			p.demandPrice = &price
+			p.setDemandPrice(o.index, tidy(price))
 		default:
 			b := p.bounds[o.index]
 			b.price += price * b.unit * (1 - (b.reserve+p.share)*b.grow)

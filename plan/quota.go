@@ -8,7 +8,7 @@ type quota struct {
 	name    string
 	holder  string
 	wells   []int
-	weight  []float64 // of each of wells: 1, or 24/duty hours for an hourly bound
+	weight  []float64 // of each of wells: 1; 24/duty hours for an hourly bound; for a yearly one its operating state's part of the year
 	basis   string
 	entered float64 // as written, per hour, day or year [m³]
 	limit   float64 // as a mean rate; hourly: as a running rate [m³/d]
@@ -27,7 +27,10 @@ func (s *setup) readQuotas(faults *problemList) {
 		}
 	}
 	for _, q := range s.Brief.Quotas {
-		s.addQuota(faults, "quota "+q.Name, quota{name: q.Name, source: q.Source}, q.Wells, nil, q.PerDay, q.PerYear)
+		s.addQuota(faults, "quota "+q.Name, quota{name: q.Name, source: q.Source}, q.Wells, q.PerHour, q.PerDay, q.PerYear)
+		if len(q.Months) > 0 && len(q.Months) < 12 {
+			s.findings.addf("quota %s is for some months of the year; the one operating state is steady the year round, and so the quota is held all year", q.Name)
+		}
 	}
 }
 
@@ -62,8 +65,11 @@ func (s *setup) addQuota(faults *problemList, what string, base quota, ids []str
 		q.weight = make([]float64, len(q.wells))
 		for k, i := range q.wells {
 			q.weight[k] = 1
-			if bound.basis == "per hour" {
+			switch bound.basis {
+			case "per hour":
 				q.weight[k] = s.Wells[i].RunningRate(1)
+			case "per year":
+				q.weight[k] = s.partOfYear(i)
 			}
 		}
 		s.quotas = append(s.quotas, q)

@@ -102,7 +102,7 @@ func (p *planner) fillReceptor(ctx context.Context, i int, tan tangent, rates []
 	}{{recentRate, "recent", &r.OthersRecent}, {licensedRate, "licensed", &r.OthersLicensed}} {
 		others, blank := s.ratesOf(known.get, existingUser)
 		if len(blank) > 0 {
-			s.notAssessed.addf("the state with existing users at %s rates: that rate of %s is blank", known.name, list(blank))
+			s.notAssessed.addf("the state with existing users at %s rates: that rate of %s is blank", known.name, list(unmarkedNames(blank)))
 			continue
 		}
 		if sameRates(others, make([]float64, len(others))) {

@@ -46,9 +46,11 @@ type Report struct {
 	CaptureWells  []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
 	Balances      []Balance        `json:"balances"`      // without pumping, and at the plan
 	NoFlow        []NoFlowStretch  `json:"no_flow_outline"`
-	Switching     *Switching       `json:"switching"`     // which wells run; null when there was nothing to choose
-	Firm          *FirmCapacity    `json:"firm_capacity"` // null when it was not asked for
-	Conflict      *Conflict        `json:"conflict"`      // why no plan exists; null when there is one
+	Switching     *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
+	Firm          *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
+	States        []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
+	YearQuotas    []QuotaResult    `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
+	Conflict      *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
 	Audit         Audit            `json:"audit"`
 	Checks        []Check          `json:"checks"`
 	HandFormula   *HandFormula     `json:"hand_formula"`

@@ -25,7 +25,7 @@ func newRequestAim(s *setup) *requestAim {
 	for _, i := range s.decided {
 		weight := 0.0
 		if size := s.rateScale(i); size > 0 {
-			weight = 1 / (size * size)
+			weight = s.weight(i) / (size * size)
 		}
 		a.requested, a.weight = append(a.requested, *s.Wells[i].Requested), append(a.weight, weight)
 	}
@@ -89,7 +89,7 @@ func (p *planner) readRequests(g *programme, sol *convex.Solution) {
 	p.requestParts = make([][]requestPart, len(s.Wells))
 	for k, i := range s.decided {
 		size := s.rateScale(i)
-		half := size * size / 2
+		half := size * size / 2 / s.weight(i)
 		at := map[string]int{}
 		take := func(words string, amount float64) {
 			if amount == 0 {
@@ -112,7 +112,7 @@ func (p *planner) readRequests(g *programme, sol *convex.Solution) {
 			case ofQuota:
 				words = s.quotaWords(&s.quotas[o.index])
 			case ofDemand:
-				words = "required total " + flowText(*s.demand)
+				words = s.demands[o.index].words + " " + flowText(s.demands[o.index].amount)
 			default:
 				words = s.boundWords(p.bounds[o.index])
 			}

@@ -27,18 +27,19 @@ func (p *planner) sentence(b *bound, r *LimitResult, contributions []float64, by
 		of = " of the room)"
 	}
 	var parts []string
+	in := s.inWords(b)
 	switch {
 	case r.Passed:
-		parts = append(parts, "Passed by "+amount(-r.Headroom)+".", contributors(s, contributions))
+		parts = append(parts, "Passed"+in+" by "+amount(-r.Headroom)+".", contributors(s, contributions))
 	case r.Binds && p.share > 0 && b.size > 0:
-		parts = append(parts, "Sets the smallest headroom: "+amount(r.Headroom)+" ("+percentText(*r.RoomShare)+of+" is left.",
+		parts = append(parts, "Sets the smallest headroom"+in+": "+amount(r.Headroom)+" ("+percentText(*r.RoomShare)+of+" is left.",
 			contributors(s, contributions), p.worth(b, r, l))
 	case r.Binds && b.reserve > 0 && b.size > 0:
-		parts = append(parts, "Binds with its reserve of "+percentText(b.reserve)+" kept back.", contributors(s, contributions), p.worth(b, r, l))
+		parts = append(parts, "Binds"+in+" with its reserve of "+percentText(b.reserve)+" kept back.", contributors(s, contributions), p.worth(b, r, l))
 	case r.Binds:
-		parts = append(parts, "Binds.", contributors(s, contributions), p.worth(b, r, l))
+		parts = append(parts, "Binds"+in+".", contributors(s, contributions), p.worth(b, r, l))
 	default:
-		text := "Holds with " + amount(r.Headroom) + " to spare"
+		text := "Holds" + in + " with " + amount(r.Headroom) + " to spare"
 		if r.RoomShare != nil {
 			text += " (" + percentText(*r.RoomShare) + of
 		}

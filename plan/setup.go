@@ -13,6 +13,7 @@ type setup struct {
 	receptorIndex map[string]int
 	state         string    // name of the default operating state; may be empty
 	demand        *float64  // required total of the decided wells' pumped rates [m³/d]
+	demands       []demand  // the same, one an operating state that has one
 	decided       []int     // wells with a column in the programme
 	column        []int     // column of each well; -1: none
 	standing      []float64 // rates of the wells that are not decided, zero for the decided ones [m³/d]
@@ -70,6 +71,7 @@ func newSetup(b Brief) (*setup, error) {
 			s.decided = append(s.decided, i)
 		}
 	}
+	s.readDemands()
 	s.readRules(&faults)
 	if err := faults.err(); err != nil {
 		return nil, err
@@ -125,23 +127,23 @@ func (s *setup) checkLimit(faults *problemList, l wells.Limit) {
 	}
 }
 
-// readState finds the default operating state, takes its demand where the brief has none, and lists the states that are not run.
+// readState finds the default operating state and takes its demand; the brief's where it has none. A brief with several states comes
+// here one state at a time, or expanded, with none.
 func (s *setup) readState(faults *problemList) {
 	defaults := 0
 	for _, st := range s.States {
 		if !st.Default {
-			s.notAssessed.addf("operating state %q is not run by this version", st.Name)
 			continue
 		}
 		defaults++
 		s.state = st.Name
-		switch {
-		case st.Demand == nil:
-		case s.demand == nil:
-			s.demand = st.Demand
-		case *st.Demand != *s.demand:
-			s.findings.addf("the brief's demand of %s is used, not the %s of operating state %q", flowText(*s.demand), flowText(*st.Demand), st.Name)
+		if st.Demand == nil {
+			continue
 		}
+		if s.demand != nil && *st.Demand != *s.demand {
+			s.findings.addf("the demand of %s of operating state %q is used, not the %s of the brief", flowText(*st.Demand), st.Name, flowText(*s.demand))
+		}
+		s.demand = st.Demand
 	}
 	if defaults > 1 {
 		faults.addf("%d operating states are marked as the default; one may be", defaults)
@@ -154,12 +156,12 @@ func (s *setup) isState(name string) bool { return name == "" || name == s.state
 // isYield tells whether a well's pumped rate counts as yield: the plan decides it and it cannot recharge.
 func (s *setup) isYield(i int) bool { return s.column[i] >= 0 && s.Wells[i].Min >= 0 }
 
-// total returns the pumped rates of the decided wells, summed in the order of the wells [m³/d].
+// total returns the pumped rates of the decided wells, summed in the order of the wells; over several operating states their mean [m³/d].
 func (s *setup) total(rates []float64) float64 {
 	sum := 0.0
 	for _, i := range s.decided {
 		if rates[i] > 0 {
-			sum += rates[i]
+			sum += s.weight(i) * rates[i]
 		}
 	}
 	return sum

@@ -43,15 +43,8 @@ func (s *setup) readRules(faults *problemList) {
 		case *n < 0:
 			faults.addf("at most %d wells running: the number is below zero", *n)
 		default:
-			r := runningRule{kind: atMostRunning, most: float64(*n), source: "brief"}
-			for i := range s.Wells {
-				if s.isYield(i) {
-					r.wells = append(r.wells, i)
-				}
-			}
-			r.words = fmt.Sprintf("at most %d of the %d wells up for decision pump", *n, len(r.wells))
-			if *n < len(r.wells) {
-				s.rules = append(s.rules, r)
+			for k := range s.stateCount() {
+				s.readAtMost(*n, k)
 			}
 		}
 	}
@@ -60,6 +53,23 @@ func (s *setup) readRules(faults *problemList) {
 	}
 	for k, g := range s.Exclude {
 		s.readGroup(faults, runExcluding, "wells that exclude each other", k, g)
+	}
+}
+
+// readAtMost adds the rule that at most n wells run, in operating state k where there are several.
+func (s *setup) readAtMost(n, k int) {
+	r := runningRule{kind: atMostRunning, most: float64(n), source: "brief"}
+	for i := range s.Wells {
+		if s.isYield(i) && (s.expanded == nil || s.expanded.stateOf(i) == k) {
+			r.wells = append(r.wells, i)
+		}
+	}
+	r.words = fmt.Sprintf("at most %d of the %d wells up for decision pump", n, len(r.wells))
+	if s.expanded != nil {
+		r.words += mark(k)
+	}
+	if n < len(r.wells) {
+		s.rules = append(s.rules, r)
 	}
 }
 

@@ -148,13 +148,15 @@ type Licence struct {
 	Source   string
 }
 
-// OperatingState is a way the field is run: average, peak month, drought. One state is the default.
+// OperatingState is a way the field is run: average, peak month, drought. One state is the default. Several are planned together, each
+// with rates of its own; their days share the year out.
 type OperatingState struct {
 	Name           string
 	Default        bool
 	Demand         *float64 // required total [m³/d]
 	RechargeFactor float64  // multiplies every recharge [-]
-	Days           float64  // days a year [d]
+	Days           float64  // days a year; 0: not stated [d]
+	Months         []int    // calendar months that it covers, 1 to 12; empty: not stated
 }
 
 // Observation is a measured level or flow, compared with the state under present pumping.

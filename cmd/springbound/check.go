@@ -24,7 +24,6 @@ func runCheck(ctx context.Context, c common, s streams) error {
 	}
 	if p != nil {
 		findings = append(findings, siteFindings(err)...)
-		findings = append(findings, stateFindings(p)...)
 	}
 	errs, warnings := findings.Errors(), findings.Warnings()
 	if c.JSON {
@@ -82,20 +81,6 @@ func siteFindings(err error) gisio.Findings {
 	case errors.As(err, &domain):
 		for _, p := range domain.Problems {
 			out = append(out, gisio.Finding{Severity: gisio.Error, Layer: "site", Feature: strings.Join(p.Names, ", "), Found: p.Text})
-		}
-	}
-	return out
-}
-
-// stateFindings warns of limits that a plan would not assess.
-func stateFindings(p *gisio.Project) gisio.Findings {
-	var out gisio.Findings
-	for _, l := range p.Limits {
-		for _, st := range p.States {
-			if l.State == st.Name && !st.Default {
-				out = append(out, gisio.Finding{Severity: gisio.Warning, Layer: "limits", Feature: fmt.Sprintf("limit %q", l.ID), Property: "state",
-					Found: fmt.Sprintf("%q", l.State), Hint: "only the default operating state is planned; the limit is listed as not assessed"})
-			}
 		}
 	}
 	return out

@@ -21,6 +21,7 @@ type curving struct {
 	Limit string   `required:"" placeholder:"ID" help:"Id of the limit, name of the licence or quota (with its basis, as in 'A-17 per year', where it has several), or 'demand'."`
 	From  *float64 `placeholder:"X" help:"First value, in the unit in which the limit was entered; left out: none."`
 	To    *float64 `placeholder:"Y" help:"Last value; left out: twice the limit."`
+	State string   `placeholder:"NAME" help:"Operating state; left out: the default one. The other states are left out."`
 }
 
 // shownUnit is the unit in which a curve's limit was entered: one of these is shown in it, others in metres and m³/d.
@@ -55,7 +56,7 @@ type limitText struct {
 
 // runCurve draws the aim against one limit.
 func runCurve(ctx context.Context, c curving, s streams) error {
-	j, err := newJob(ctx, c.solving, s)
+	j, err := newJobInState(ctx, c.solving, s, c.State)
 	if err != nil {
 		return err
 	}
@@ -86,6 +87,9 @@ func runCurve(ctx context.Context, c curving, s streams) error {
 		return err
 	}
 	r.Title = j.project.Title
+	if j.stateNote != "" {
+		r.Method += ". " + strings.TrimSuffix(j.stateNote, ".")
+	}
 	unit = unitOfCurve(r, texts)
 	data, err := json.MarshalIndent(r, "", "  ")
 	if err != nil {

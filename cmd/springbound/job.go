@@ -23,6 +23,10 @@ type job struct {
 	progress *progress
 	onField  func(row int, influence []float64) error
 
+	states           []*stateJob // where several operating states are planned together: one each, nil for the default one
+	relativeRecharge float64     // of the one state that the job is about, against the default one; 0: it is that
+	stateNote        string      // says what a job about one state of several leaves out
+
 	alter       func(aquifer.Terms) // plants a fault in the flow model, to prove that the audit sees it; tests only
 	withoutFirm bool                // the firm capacity is not asked for
 	keepProblem bool                // the plan's programme is asked for
@@ -70,6 +74,16 @@ func printWarnings(findings gisio.Findings, s streams) {
 
 // newJob reads, meshes, assembles and factors.
 func newJob(ctx context.Context, c solving, s streams) (*job, error) {
+	return newJobAbout(ctx, c, s, func(*job) error { return nil })
+}
+
+// newJobInState is newJob for one operating state alone, the default one where name is empty.
+func newJobInState(ctx context.Context, c solving, s streams, name string) (*job, error) {
+	return newJobAbout(ctx, c, s, func(j *job) error { return j.onlyState(name) })
+}
+
+// newJobAbout is newJob after a change of the project as read.
+func newJobAbout(ctx context.Context, c solving, s streams, change func(*job) error) (*job, error) {
 	j := &job{progress: newProgress(s, c.Quiet)}
 	if info, err := os.Stat(c.Out); c.Out != "" && err == nil && !info.IsDir() {
 		return nil, usagef("--out %s is a file; name a folder", c.Out)
@@ -86,6 +100,10 @@ func newJob(ctx context.Context, c solving, s streams) (*job, error) {
 		printWarnings(findings, s)
 	}
 	scaleRecharge(p)
+	if err := change(j); err != nil {
+		j.progress.clear()
+		return nil, err
+	}
 	if err := j.build(ctx, c.Workers); err != nil {
 		return nil, err
 	}
@@ -116,11 +134,19 @@ func (j *job) watch(ctx context.Context, model *aquifer.Model) (err error) {
 	if p.Brief.Aim == plan.LeastEnergy { // every lift answers to every rate
 		j.field.WatchLevels(func(w wells.Well) bool { return w.Mode == wells.Decided && !w.Outage })
 	}
+	if r := j.relativeRecharge; r != 0 && r != 1 {
+		if j.field, err = j.field.InState(r); err != nil {
+			return err
+		}
+	}
 	base, err := j.field.BaseState(ctx)
 	if err != nil {
 		return err
 	}
 	j.field.Switching = len(base.Off) > 0
+	if len(p.States) > 1 {
+		return j.buildStates(ctx)
+	}
 	return nil
 }
 
@@ -194,10 +220,15 @@ func (j *job) sensitivities(ctx context.Context, state *adjoint.State, onField f
 }
 
 func (j *job) response(state *adjoint.State, slopes []adjoint.Row, rates []float64) *plan.Response {
+	return j.responseOf(j.field, state, slopes, rates)
+}
+
+// responseOf is the response of a field, the default state's or another's.
+func (j *job) responseOf(f *adjoint.Field, state *adjoint.State, slopes []adjoint.Row, rates []float64) *plan.Response {
 	r := &plan.Response{At: append([]float64(nil), rates...)}
-	for w, well := range j.field.Wells {
+	for w, well := range f.Wells {
 		r.Wells = append(r.Wells, well.ID)
-		r.WellHeads = append(r.WellHeads, state.Heads[j.field.Node(w)])
+		r.WellHeads = append(r.WellHeads, state.Heads[f.Node(w)])
 	}
 	for i, row := range state.Rows {
 		out := plan.Row{Base: row.Base, Change: row.Change, Slope: row.Slope, Linear: row.Linear, Local: row.Local, Unit: "m"}
@@ -205,12 +236,12 @@ func (j *job) response(state *adjoint.State, slopes []adjoint.Row, rates []float
 			out.Slope = slopes[i].Slope
 		}
 		if row.Receptor >= 0 {
-			out.Receptor, out.Unit = j.field.Receptors[row.Receptor].ID, j.field.Receptors[row.Receptor].Kind.Unit()
+			out.Receptor, out.Unit = f.Receptors[row.Receptor].ID, f.Receptors[row.Receptor].Kind.Unit()
 		} else {
-			out.Well = j.field.Wells[row.Well].ID
+			out.Well = f.Wells[row.Well].ID
 		}
 		if row.Place >= 0 {
-			at := j.field.Model.At(row.Place)
+			at := f.Model.At(row.Place)
 			out.Place = j.placeText(at)
 		}
 		r.Rows = append(r.Rows, out)
@@ -239,7 +270,8 @@ func (j *job) brief(ctx context.Context) (plan.Brief, error) {
 	for w := range p.Wells {
 		b.WellTerms = append(b.WellTerms, plan.WellTerm{OwnDrawdown: j.field.Below(w), StaticLevel: base[j.field.Node(w)]})
 	}
-	return b, nil
+	b.StateTerms, err = j.stateTerms(ctx, b.WellTerms)
+	return b, err
 }
 
 func finiteOrNil(v float64) *float64 {

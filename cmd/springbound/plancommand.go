@@ -99,20 +99,19 @@ func (j *job) makePlan(ctx context.Context) (*plan.Report, error) {
 		return plan.Make(ctx, b, j, o)
 	}
 	r, err := make()
-	if err != nil || j.field.Switching {
-		return r, err
-	}
 	// The first plan takes every feature as acting. Where the plan itself takes one past its limit, drawdown is larger than the linear rows
-	// say: plan again with tangents at re-solved plans.
-	state, err := j.field.Changes(ctx, ratesOf(r))
-	if err != nil {
-		return nil, err
+	// say: plan again with tangents at re-solved plans; with several operating states for as long as another one comes to that.
+	for err == nil {
+		found, failed := j.findSwitching(ctx, func(k int) []float64 { return ratesInState(r, k) })
+		if failed != nil {
+			return nil, failed
+		}
+		if !found {
+			return r, nil
+		}
+		r, err = make()
 	}
-	if len(state.State.Off) == 0 {
-		return r, nil
-	}
-	j.field.Switching = true
-	return make()
+	return r, err
 }
 
 // ratesTable is the plan's rates as a table that try reads.
@@ -121,7 +120,15 @@ func ratesTable(r *plan.Report) []byte {
 	for i, w := range r.Wells {
 		ids[i] = w.ID
 	}
-	return gisio.WriteRates(ids, ratesOf(r))
+	if len(r.States) == 0 {
+		return gisio.WriteRates(ids, ratesOf(r))
+	}
+	var names []string
+	var rates [][]float64
+	for k, s := range r.States {
+		names, rates = append(names, s.Name), append(rates, ratesInState(r, k))
+	}
+	return gisio.WriteStateRates(ids, names, rates)
 }
 
 func ratesOf(r *plan.Report) []float64 {
@@ -187,6 +194,7 @@ func printPlan(w io.Writer, r *plan.Report, dir, name string) {
 			fmt.Fprintf(w, "  in conflict: %s; %s\n", m.Limit, alone)
 		}
 	}
+	printStates(w, r)
 	bad := 0
 	for _, c := range r.Checks {
 		if c.Result == "fail" {

@@ -56,6 +56,9 @@ func (j *job) complete(ctx context.Context, r *plan.Report) (*adjoint.State, err
 	if err := j.hand(ctx, r, rates); err != nil {
 		return nil, err
 	}
+	if err := j.completeStates(ctx, r); err != nil {
+		return nil, err
+	}
 	j.timeScale(r)
 	j.notDone(r)
 	return state, nil
@@ -333,30 +336,22 @@ func (j *job) switching(r *plan.Report, state *adjoint.State) {
 	r.Checks = append(r.Checks, plan.Check{Name: name, Result: "pass", Detail: strings.Join(texts, "; ") + "; the plan was found and solved again with these states"})
 	r.Cautions = append(r.Cautions, texts...)
 	r.Cautions = append(r.Cautions, "where features switch, sensitivities, contributions and capture are those near the plan: they do not hold for rates far from it, and prices hold near the plan only")
-	for i := range r.Receptors {
-		rec := &r.Receptors[i]
-		if rec.Kind != wells.SpringFlow.String() || rec.Outside {
-			continue
-		}
-		for _, v := range []*float64{&rec.NoPumping, &rec.Value, rec.OthersRecent, rec.OthersLicensed} {
-			if v != nil {
-				*v = math.Max(0, *v)
-			}
-		}
-		rec.Change = math.Min(rec.Change, rec.NoPumping)
-		rec.ChangeResolved = math.Min(rec.ChangeResolved, rec.NoPumping)
-	}
+	clampSprings(r.Receptors)
 }
 
 // turned flags prescribed-head edges where the plan draws water in, salt water above all.
 func (j *job) turned(r *plan.Report, state *adjoint.State) {
 	for _, t := range j.field.Model.InwardFlow(state.Heads) {
-		water := "water"
-		if t.Saline {
-			water = "salt water"
-		}
-		r.Cautions = append(r.Cautions, fmt.Sprintf("%s flows in through edge %s: %.0f m³/d over %.0f m, most near %s", water, t.Edge, t.Inflow, t.Length, j.placeText(t.At)))
+		r.Cautions = append(r.Cautions, j.inwardText(t))
 	}
+}
+
+func (j *job) inwardText(t aquifer.Turned) string {
+	water := "water"
+	if t.Saline {
+		water = "salt water"
+	}
+	return fmt.Sprintf("%s flows in through edge %s: %.0f m³/d over %.0f m, most near %s", water, t.Edge, t.Inflow, t.Length, j.placeText(t.At))
 }
 
 // handCandidates is among how many of the largest rates the well for the hand formula is looked for.

@@ -88,7 +88,7 @@ func TestCommandLine(t *testing.T) {
 		{[]string{"check", dir}, exitDone, "0 errors", "the starter project reads"},
 		{[]string{"drivers", dir}, exitDone, "strongest wells first", "drivers of the starter project"},
 		{[]string{"drivers", "--json", dir}, exitDone, `"sensitivity_in_unit_per_m3_per_d"`, "as JSON"},
-		{[]string{"plan", dir}, exitDone, "Largest total rate", "plan of the starter project"},
+		{[]string{"plan", dir}, exitDone, "Largest yearly mean of the total rate", "plan of the starter project"},
 	} {
 		var out, errs bytes.Buffer
 		code := run(context.Background(), c.args, streams{out: &out, err: &errs})

@@ -17,7 +17,7 @@ func runTry(ctx context.Context, c solving, table string, s streams) error {
 		return err
 	}
 	defer j.progress.clear()
-	rates, findings := gisio.ReadRates(table, j.project.Wells)
+	rates, findings := gisio.ReadStateRates(table, j.project.Wells, j.project.States)
 	if !c.Quiet {
 		j.progress.clear()
 		printWarnings(findings, s)
@@ -71,20 +71,27 @@ func runTry(ctx context.Context, c solving, table string, s streams) error {
 	return nil
 }
 
-// evaluate makes the report of given rates, with the features that act at them.
-func (j *job) evaluate(ctx context.Context, rates []float64) (*plan.Report, error) {
+// evaluate makes the report of given rates, one list an operating state, with the features that act at them.
+func (j *job) evaluate(ctx context.Context, rates [][]float64) (*plan.Report, error) {
 	b, err := j.brief(ctx)
 	if err != nil {
 		return nil, err
 	}
-	state, err := j.field.Changes(ctx, rates)
-	if err != nil {
+	if _, err := j.findSwitching(ctx, func(k int) []float64 { return rates[k] }); err != nil {
 		return nil, err
 	}
-	j.field.Switching = j.field.Switching || len(state.State.Off) > 0
-	response, err := j.Linearise(ctx, rates)
-	if err != nil {
-		return nil, err
+	responses := make([]*plan.Response, len(rates))
+	for k := range rates {
+		var m plan.Model = j
+		if len(rates) > 1 {
+			m = j.InState(k)
+		}
+		if responses[k], err = m.Linearise(ctx, rates[k]); err != nil {
+			return nil, err
+		}
 	}
-	return plan.Evaluate(b, response, rates)
+	if len(rates) == 1 {
+		return plan.Evaluate(b, responses[0], rates[0])
+	}
+	return plan.EvaluateStates(b, responses, rates)
 }

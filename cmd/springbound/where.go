@@ -20,6 +20,7 @@ type siting struct {
 	Keep        string `enum:"plan,present,others" default:"plan" help:"Which rates are kept for the largest further rate: those of the plan, the present ones, or those of the wells that the plan does not decide alone, the others off."`
 	LowestLevel string `name:"lowest-level" placeholder:"\"-12 m\"" help:"Lowest level allowed in the further well, an elevation; left out: its own level is not looked at."`
 	Radius      string `default:"0.2 m" help:"Radius of the further well."`
+	State       string `placeholder:"NAME" help:"Operating state; left out: the default one. The other states are left out."`
 }
 
 // request is what the flags of where ask for, in metres and days.
@@ -76,7 +77,7 @@ func runWhere(ctx context.Context, c siting, s streams) error {
 	if err != nil {
 		return err
 	}
-	j, err := newJob(ctx, c.solving, s)
+	j, err := newJobInState(ctx, c.solving, s, c.State)
 	if err != nil {
 		return err
 	}

@@ -77,7 +77,7 @@ func (w *where) replan(ctx context.Context, workers int, c *whereConfirmation) e
 	if err := p.Site.Check(); err != nil {
 		return err
 	}
-	j := &job{project: &p, findings: w.job.findings, progress: w.job.progress}
+	j := &job{project: &p, findings: w.job.findings, progress: w.job.progress, relativeRecharge: w.job.relativeRecharge}
 	if err := j.build(ctx, workers); err != nil {
 		return err
 	}

@@ -129,6 +129,9 @@ func (w *where) notes() []string {
 		"Near a line that fixes the head the model takes the water from that line: state its available_flow, or a limit, where it may not be drawn on.",
 		"Not looked at: cost, access, land, water quality, drilling depth, interference with users that are not among the receptors.",
 	}
+	if w.job.stateNote != "" {
+		out = append(out, w.job.stateNote)
+	}
 	if w.value != nil {
 		out = append(out, "The value of a well is what the plan gains per m³/d pumped there once all other wells are planned anew: 1 less the sum of price x influence over the limits that bind. It holds for a small rate; where several limits meet in one point it is at most that. Where pumping eases a limit, as on the far side of a salt front, the gain is part of the value but not of the order of the places.")
 	} else {
