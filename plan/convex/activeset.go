@@ -88,20 +88,12 @@ func (s *activeSet) hessianTimes(out, x []float64) {
 
 // rowTimes returns row i times v.
 func (s *activeSet) rowTimes(i int, v []float64) float64 {
-	col, val := s.f.a.row(i)
-	sum := 0.0
-	for k, j := range col {
-		sum += val[k] * v[j]
-	}
-	return sum
+	return s.f.a.rowTimes(i, v)
 }
 
 // addRow adds t times row i to v.
 func (s *activeSet) addRow(v []float64, i int, t float64) {
-	col, val := s.f.a.row(i)
-	for k, j := range col {
-		v[j] += val[k] * t
-	}
+	s.f.a.addRow(v, i, t)
 }
 
 // target is the bound that variable v is held at.

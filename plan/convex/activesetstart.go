@@ -12,11 +12,17 @@ const (
 	guessPatience = 8
 )
 
-// begin sets places and makes them dual feasible: from the given basis, or from all columns free and the equations. Then whole
+// begin sets places and makes them dual feasible: from the given basis, from the guess for a diagonal Hessian, or from all columns
+// free and the equations. Then whole
 // sets of bounds change at once while that lessens the number of faults (Júdice & Pires 1994; Hintermüller, Ito & Kunisch 2002), and
 // what has the wrong price after that is dropped.
 func (s *activeSet) begin(ctx context.Context, start *Basis) bool {
 	s.adopt(start)
+	if start == nil {
+		if d := newSeparable(s.f); d != nil && d.guess(ctx, s.place) {
+			s.recall(s.place)
+		}
+	}
 	if !s.refactor() {
 		return false
 	}

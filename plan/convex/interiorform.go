@@ -30,12 +30,33 @@ func (a *sparseRows) endRow() {
 // times sets y to A x.
 func (a *sparseRows) times(y, x []float64) {
 	for i := range y[:a.rows] {
-		col, val := a.row(i)
-		sum := 0.0
-		for k, j := range col {
-			sum += val[k] * x[j]
-		}
-		y[i] = sum
+		y[i] = a.rowTimes(i, x)
+	}
+}
+
+// rowTimes returns row i times x. Entries of a row are in the order of the columns, so that as many as there are columns are all of
+// them.
+func (a *sparseRows) rowTimes(i int, x []float64) float64 {
+	col, val := a.row(i)
+	if len(col) == a.cols {
+		return dot(val, x)
+	}
+	sum := 0.0
+	for k, j := range col {
+		sum += val[k] * x[j]
+	}
+	return sum
+}
+
+// addRow adds t times row i to x.
+func (a *sparseRows) addRow(x []float64, i int, t float64) {
+	col, val := a.row(i)
+	if len(col) == a.cols {
+		addScaled(x[:len(val)], t, val)
+		return
+	}
+	for k, j := range col {
+		x[j] += val[k] * t
 	}
 }
 
@@ -45,11 +66,7 @@ func (a *sparseRows) addTransposed(x []float64, f float64, y []float64) {
 		if v == 0 {
 			continue
 		}
-		v *= f
-		col, val := a.row(i)
-		for k, j := range col {
-			x[j] += val[k] * v
-		}
+		a.addRow(x, i, v*f)
 	}
 }
 
