@@ -56,6 +56,7 @@ type commands struct {
 		Rates string `arg:"" help:"CSV or XLSX table with the columns id and rate (with its unit), such as the rates.csv that plan leaves."`
 	} `cmd:"" help:"The receptors under rates given in a table, without optimising."`
 	Where   siting  `cmd:"" help:"Siting: where a further well could go, and what it is worth to the plan."`
+	Audit   solving `cmd:"" help:"The evidence: water balance, reciprocity, differences, meshes, boundaries and optimum, each checked by other means; audit.json, audit.txt and audit.xlsx in 'out-audit'."`
 	Curve   curving `cmd:"" help:"The best yield, or the best headroom, against the value of one limit: table, picture and JSON."`
 	Version bool    `help:"Print the version."`
 }
@@ -114,6 +115,8 @@ func run(ctx context.Context, args []string, s streams) int {
 		err = runWhere(ctx, c.Where, s)
 	case "try":
 		err = runTry(ctx, c.Try.solving, c.Try.Rates, s)
+	case "audit":
+		err = runAudit(ctx, c.Audit, s)
 	case "curve":
 		err = runCurve(ctx, c.Curve, s)
 	}

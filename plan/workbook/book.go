@@ -23,6 +23,8 @@ type book struct {
 
 	readMe, plan, receptors, contributions, sensitivities, capture, inputs, checks *sheet
 
+	evidence *sheet // the only sheet of an audit's workbook; nil in a plan's
+
 	planRows planLayout
 	sens     sensLayout
 	quotas   []quotaLine
@@ -60,6 +62,9 @@ func Write(r *plan.Report) ([]byte, error) {
 var sheetNames = []string{"Read me first", "Plan", "Receptors", "Contributions", "Sensitivities", "Capture", "Inputs and assumptions", "Checks"}
 
 func (b *book) sheets() []*sheet {
+	if b.evidence != nil {
+		return []*sheet{b.evidence}
+	}
 	return []*sheet{b.readMe, b.plan, b.receptors, b.contributions, b.sensitivities, b.capture, b.inputs, b.checks}
 }
 
