@@ -14,7 +14,7 @@
 //	least-energy          minimise  sum_w 0.0027240694/efficiency_w Q_w (z_w + sum_j G_wj Q_j + c_w Q_w²)   for the demand [kWh/d]
 //	closest-to-requests   minimise  sum_w ((Q_w - requested_w)/largest rate_w)²                            subject to the same
 //
-// z the lift with the decided wells at rest, G the drawdown in a well per rate of another. Their shadow prices are savings.
+// z the lift with the decided wells at rest, G the drawdown in a well per rate of another; own wells with fixed rates are counted too. Their shadow prices are savings.
 //
 // For limit k with edge e_k (the limit as a change of the counted wells C_k against no pumping), size z_k and reserve f_k
 //

@@ -6,6 +6,7 @@ import (
 	"math"
 
 	"springbound/plan/convex"
+	"springbound/wells"
 )
 
 // EnergyPerLift is the work of lifting a cubic metre of water by a metre [kWh/m⁴]: density 1000 kg/m³ times gravity 9.80665 m/s²
@@ -16,9 +17,9 @@ const EnergyPerLift = 1000 * 9.80665 / 3.6e6
 // with which they count as equal: two direct solves of a symmetric matrix of 1e5 nodes differ by about 1e-12.
 const symmetryShare = 1e-9
 
-// energyAim is the pumping energy in a day of the decided wells:
+// energyAim is the pumping energy in a day of the decided wells, and of the field's own wells with fixed rates as far as it is known:
 //
-//	f(Q) = sum_i k_i Q_i (z_i + sum_j G_ij Q_j + c_i Q_i²)   [kWh/d]
+//	f(Q) = sum_i k_i Q_i (z_i + sum_j G_ij Q_j + c_i Q_i²) + sum_fixed k_f Q_f (z_f + sum_j G_fj Q_j + c_f Q_f²)   [kWh/d]
 //
 // k = EnergyPerLift/efficiency; z the lift to the delivery level with the decided wells at rest; G the drawdown in well i per rate of
 // well j, with i's own logarithm and linear loss on the diagonal; c = C (24/duty hours)², as the turbulent loss is that of the running
@@ -29,6 +30,7 @@ type energyAim struct {
 	lift   []float64   // z [m]
 	mutual [][]float64 // G [d/m²]
 	loss   []float64   // c [d²/m⁵]
+	fixed  fixedEnergy // of own wells whose rates are not decided
 	moving bool        // a drawdown is not linear in the rates: lifts are those of a tangent
 }
 
@@ -60,11 +62,13 @@ func (e *energyAim) at(ctx context.Context, p *planner, rates []float64) error {
 		}
 		e.mutual = append(e.mutual, row)
 	}
-	return nil
+	fixed, moving, err := p.fixedEnergyAt(ctx, rates)
+	e.fixed, e.moving = fixed, e.moving || moving
+	return err
 }
 
 func (e *energyAim) value(x []float64) float64 {
-	sum := 0.0
+	sum := e.fixed.constant + dot(e.fixed.slope, x)
 	for i, q := range x {
 		sum += e.energy[i] * q * (e.lift[i] + dot(e.mutual[i], x) + e.loss[i]*q*q)
 	}
@@ -72,7 +76,7 @@ func (e *energyAim) value(x []float64) float64 {
 }
 
 func (e *energyAim) gradient(x []float64) []float64 {
-	out := make([]float64, len(x))
+	out := append([]float64(nil), e.fixed.slope...)
 	for i, q := range x {
 		out[i] += e.energy[i] * (e.lift[i] + dot(e.mutual[i], x) + 3*e.loss[i]*q*q)
 		for j, g := range e.mutual[i] {
@@ -177,8 +181,11 @@ type WellEnergy struct {
 	Power         float64 `json:"power_while_running_kw"` // over the duty hours
 }
 
-// EnergyTotal sums the wells up for decision.
+// EnergyTotal sums the wells up for decision and the field's own wells with fixed rates.
 type EnergyTotal struct {
+	Counted  []string `json:"wells_counted"`
+	Unknown  []string `json:"wells_not_counted"`     // own wells with fixed rates whose efficiency, delivery level or level is not known
+	Rate     float64  `json:"counted_rate_m3_per_d"` // of the wells counted
 	Energy   float64  `json:"energy_kwh_per_d"`
 	Power    float64  `json:"power_while_running_kw"`     // all running at once
 	Specific *float64 `json:"specific_energy_kwh_per_m3"` // null when nothing is pumped
@@ -201,27 +208,43 @@ func (p *planner) wellEnergy(i int, known bool, r *WellResult) *WellEnergy {
 	return e
 }
 
-// totalEnergy sums the wells up for decision; nil where one of them that runs has no figure.
-func (p *planner) totalEnergy(r *Report) *EnergyTotal {
-	t := &EnergyTotal{}
-	known := false
-	for _, i := range p.setup.decided {
-		w := r.Wells[i]
+// energyOf sums the energy of the wells up for decision and of own wells with fixed rates; nil where a well up for decision that runs has
+// no figure, or none has.
+func energyOf(list []WellResult) *EnergyTotal {
+	t := &EnergyTotal{Counted: []string{}, Unknown: []string{}}
+	for _, w := range list {
+		decided := w.Mode == wells.Decided.String()
 		switch {
+		case !decided && (w.Others || !(w.Rate > 0)):
 		case w.PumpingEnergy != nil:
-			known = true
+			t.Counted = append(t.Counted, w.ID)
 			t.Energy += w.PumpingEnergy.Energy
 			t.Power += w.PumpingEnergy.Power
-		case w.Rate != 0:
+			t.Rate += w.Rate
+		case decided && w.Rate != 0:
 			return nil
+		case !decided:
+			t.Unknown = append(t.Unknown, w.ID)
 		}
 	}
-	if !known {
+	if len(t.Counted) == 0 {
 		return nil
 	}
-	if r.TotalRate > 0 {
-		specific := t.Energy / r.TotalRate
+	if t.Rate > 0 {
+		specific := t.Energy / t.Rate
 		t.Specific = &specific
+	}
+	return t
+}
+
+// totalEnergy is the energy of the field.
+func (p *planner) totalEnergy(r *Report) *EnergyTotal {
+	t := energyOf(r.Wells)
+	if t == nil {
+		return nil
+	}
+	if p.setup.Aim == LeastEnergy && len(t.Unknown) > 0 {
+		p.setup.notAssessed.addf("pumping energy of %s, whose rates are fixed: efficiency, delivery level or level in the well is not known", list(t.Unknown))
 	}
 	if p.setup.Aim == LeastEnergy {
 		t.Demand = p.demandPrice
@@ -233,12 +256,15 @@ func (p *planner) totalEnergy(r *Report) *EnergyTotal {
 func (p *planner) energyHeadline(r *Report) string {
 	text := "Least pumping energy for the demand"
 	if e := r.PumpingEnergy; e != nil {
-		text += ": " + energyText(e.Energy) + " for " + flowText(r.TotalRate)
+		text += ": " + energyText(e.Energy) + " for " + flowText(e.Rate)
 		if e.Specific != nil {
 			text += ", " + plainNumber(*e.Specific, 3, 0, 6) + " kWh/m³"
 		}
 		if e.Demand != nil {
 			text += "; one more m³ takes " + plainNumber(*e.Demand, 3, 0, 6) + " kWh"
+		}
+		if fixed := p.fixedAmong(e.Counted); len(fixed) > 0 {
+			text += "; " + list(fixed) + plural(len(fixed), ", whose rate is fixed, is counted too", ", whose rates are fixed, are counted too")
 		}
 	}
 	return text + "."

@@ -158,7 +158,7 @@ func (e *expansion) stateResult(part *Report, k int) StateResult {
 		}
 	}
 	e.binds(part, &r)
-	r.PumpingEnergy = energyOf(part.Wells, r.Total)
+	r.PumpingEnergy = energyOf(part.Wells)
 	return r
 }
 
@@ -209,30 +209,6 @@ func (e *expansion) binds(part *Report, r *StateResult) {
 			r.Binds = append(r.Binds, q.Name+" "+q.Basis)
 		}
 	}
-}
-
-// energyOf sums the energy of the wells up for decision; nil where one of them that runs has no figure.
-func energyOf(list []WellResult, total float64) *EnergyTotal {
-	t, known := &EnergyTotal{}, false
-	for _, w := range list {
-		switch {
-		case w.Mode != "decided":
-		case w.PumpingEnergy != nil:
-			known = true
-			t.Energy += w.PumpingEnergy.Energy
-			t.Power += w.PumpingEnergy.Power
-		case w.Rate != 0:
-			return nil
-		}
-	}
-	if !known {
-		return nil
-	}
-	if total > 0 {
-		specific := t.Energy / total
-		t.Specific = &specific
-	}
-	return t
 }
 
 // requests sums the requests of the default state; nil for another aim.

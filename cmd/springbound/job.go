@@ -132,7 +132,10 @@ func (j *job) watch(ctx context.Context, model *aquifer.Model) (err error) {
 		return err
 	}
 	if p.Brief.Aim == plan.LeastEnergy { // every lift answers to every rate
-		j.field.WatchLevels(func(w wells.Well) bool { return w.Mode == wells.Decided && !w.Outage })
+		j.field.WatchLevels(func(w wells.Well) bool {
+			fixed := w.Mode == wells.Fixed && !w.Others && w.FixedRate > 0 && w.PumpEfficiency != nil && w.DeliveryLevel != nil
+			return !w.Outage && (w.Mode == wells.Decided || fixed)
+		})
 	}
 	if r := j.relativeRecharge; r != 0 && r != 1 {
 		if j.field, err = j.field.InState(r); err != nil {

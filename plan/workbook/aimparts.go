@@ -1,6 +1,9 @@
 package workbook
 
-import "strings"
+import (
+	"slices"
+	"strings"
+)
 
 // energyPart lists what pumping takes, for the aim that makes it least.
 func (b *book) energyPart(row int) int {
@@ -23,9 +26,18 @@ func (b *book) energyPart(row int) int {
 		s.text(row, 5, each+" kWh/m³ · "+figureText(power)+" kW", line)
 	}
 	for _, w := range r.Wells {
-		if e := w.PumpingEnergy; e != nil && w.Mode == modeDecided {
-			put(joinFilled(" ", w.ID, w.Name), figureText(e.Lift), figureText(100*e.Efficiency)+" %", e.Energy, e.Power, &e.Specific)
+		fixed := w.Mode != modeDecided && slices.Contains(r.PumpingEnergy.Counted, w.ID)
+		if e := w.PumpingEnergy; e != nil && (w.Mode == modeDecided || fixed) {
+			name := joinFilled(" ", w.ID, w.Name)
+			if fixed {
+				name += " (rate fixed)"
+			}
+			put(name, figureText(e.Lift), figureText(100*e.Efficiency)+" %", e.Energy, e.Power, &e.Specific)
 		}
+	}
+	if len(r.PumpingEnergy.Unknown) > 0 {
+		row++
+		s.text(row, 1, "Not counted, as efficiency, delivery level or level is not known: "+strings.Join(r.PumpingEnergy.Unknown, ", "), line)
 	}
 	put("In all", "", "", r.PumpingEnergy.Energy, r.PumpingEnergy.Power, r.PumpingEnergy.Specific)
 	return row + 1
