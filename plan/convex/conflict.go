@@ -21,8 +21,9 @@ type ConflictSet struct {
 // not in among cannot be met, while they can be once any one of them is dropped. Sides tried earlier are the first to be dropped,
 // so that those later in among are kept where there is a choice.
 //
-// Method: deletion filter (Chinneck & Dravnieks 1991), each step warm-started, with what a proof of infeasibility does not use
-// dropped at once. The error is not nil only for an index out of range; other ends are in Status.
+// Method: deletion filter (Chinneck & Dravnieks 1991), with what a proof of infeasibility does not use dropped at once. What is left
+// is irreducible already when no row is outside among (Gleeson & Ryan 1990): the basis of the proof has a point for each member that
+// meets all others, which is computed and checked; only a member without such a point is tried by a warm-started solve. The error is not nil only for an index out of range; other ends are in Status.
 func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error) {
 	for _, i := range among {
 		if i < 0 || i >= p.Rows() {
@@ -78,6 +79,7 @@ type filter struct {
 	rows, columns filterList
 	origin        []int // by row of p: index in the caller's problem
 	solves        int
+	witness       witness
 }
 
 func newFilter(ctx context.Context, p *Problem, among []int) *filter {
@@ -142,6 +144,7 @@ func (f *filter) useProof() {
 	z := f.t.e.byCol
 	f.t.e.m.combineRows(z, f.t.e.everyRow(y), f.t.e.dr, f.t.e.byRow)
 	f.dropUnused(&f.columns, func(j int) float64 { return -z[j] })
+	f.witness.prepare(f)
 }
 
 func (f *filter) dropUnused(l *filterList, multiplier func(int) float64) {
@@ -183,7 +186,7 @@ func (f *filter) compact() Status {
 // reduce tries to do without each member in turn. It returns Infeasible, or the status that stopped it.
 func (f *filter) reduce(l *filterList) Status {
 	for k, b := range l.all {
-		if l.dropped[k] {
+		if l.dropped[k] || f.witness.meets(f, b, l.row) {
 			continue
 		}
 		lower, upper := f.bounds(b, l.row)
@@ -194,6 +197,14 @@ func (f *filter) reduce(l *filterList) Status {
 		case Optimal:
 			f.set(b, l.row, lower, upper)
 			l.dropped[k] = false
+			switch status := f.solve(); status { // back to a proof, for the points of the members to come
+			case Infeasible:
+				f.useProof()
+			case Optimal: // feasible now, infeasible before: rounding decides
+				return NumericalTrouble
+			default:
+				return status
+			}
 		default:
 			return status
 		}
@@ -201,7 +212,8 @@ func (f *filter) reduce(l *filterList) Status {
 	return Infeasible
 }
 
-// verify solves the remaining problem from the start, checks the proof from the data, and drops each member once.
+// verify solves the remaining problem from the start, checks the proof from the data, and finds for each member a point that meets all
+// others, by a solve where the basis of the proof has none.
 func (f *filter) verify() bool {
 	s, err := Solve(f.ctx, f.p, Options{})
 	f.solves++
@@ -210,7 +222,7 @@ func (f *filter) verify() bool {
 	}
 	for _, l := range []*filterList{&f.rows, &f.columns} {
 		for k, b := range l.all {
-			if l.dropped[k] {
+			if l.dropped[k] || f.witness.meets(f, b, l.row) {
 				continue
 			}
 			lower, upper := f.bounds(b, l.row)
@@ -218,9 +230,10 @@ func (f *filter) verify() bool {
 			status := f.solve()
 			f.set(b, l.row, lower, upper)
 			l.dropped[k] = false
-			if status != Optimal {
+			if status != Optimal || f.solve() != Infeasible {
 				return false
 			}
+			f.witness.prepare(f)
 		}
 	}
 	return true

@@ -100,7 +100,7 @@ func TestConflictSmall(t *testing.T) {
 }
 
 // tooMuch asks a planning problem for more than it can give, and returns it with its optimum.
-func tooMuch(t *testing.T, c planningCase, times float64) (*Problem, float64) {
+func tooMuch(t testing.TB, c planningCase, times float64) (*Problem, float64) {
 	p := planningProblem(t, c)
 	most := mustOptimal(t, p, Options{}).Objective
 	ones := make([]float64, p.Columns())

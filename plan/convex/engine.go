@@ -51,6 +51,8 @@ type engine struct {
 	iterations, primalIterations int
 	limit                        int
 	proof                        []float64 // multipliers of the rows that prove noPoint
+	proofAt                      int       // basic variable whose row they are
+	proofBy                      float64   // its violation
 	progress                     func(Progress)
 	draw                         uint64 // state of the generator for perturbations
 }

@@ -16,7 +16,7 @@ func (e *engine) proves(p int, by float64) bool {
 	if p >= e.n {
 		y[p-e.n] = -sign
 	}
-	e.proof = y
+	e.proof, e.proofAt, e.proofBy = y, p, by
 	return e.proofOf(y) > proofMargin
 }
 
