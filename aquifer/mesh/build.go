@@ -3,6 +3,7 @@ package mesh
 import (
 	"context"
 	"fmt"
+	"math"
 	"slices"
 
 	"github.com/paulmach/orb"
@@ -24,6 +25,10 @@ const (
 	gapGrowth        = 4          // needs ten times as many around it; but always so many times the vertices of the input
 	mostNodes        = 50_000_000 // what handles of 32 bits carry with room to spare
 	largestGrowth    = 1.0        // steeper grading cannot keep the angle
+	largestCoarser   = 4          // a mesh is made so many times coarser at most before it is halved
+	steepestCoarse   = 0.35       // size fields of coarse meshes grow no faster, or halving gives uneven sizes
+	leastCoarse      = 3000       // nodes: smaller coarse meshes have too few triangles between their sources for even grading
+	levelNodes       = 3.7        // nodes of a mesh over those of one twice as coarse, at least; for reserving room
 )
 
 // resolved fills in the defaults.
@@ -67,22 +72,12 @@ func (o Options) build(ctx context.Context, d Domain) (*Mesh, error) {
 	if err != nil {
 		return nil, err
 	}
-	field, expected := r.makeField(d, o)
+	fields, expected := r.makeFields(d, o)
 	r.maxNodes = o.MaxNodes
 	if r.maxNodes == 0 {
 		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, max(budgetWanted*float64(o.Nodes), budgetLeast)))
 	}
-	r.start(field, expected)
-	if err := r.run(ctx); err != nil {
-		return nil, err
-	}
-	r.reorder()
-	if err := r.smooth(ctx, smoothPasses); err != nil {
-		return nil, err
-	}
-	r.queueSegments()
-	r.queueTriangles()
-	if err := r.run(ctx); err != nil {
+	if err := r.fill(ctx, fields, expected); err != nil {
 		return nil, err
 	}
 	m := r.finish(d, o, g)
@@ -90,6 +85,38 @@ func (o Options) build(ctx context.Context, d Domain) (*Mesh, error) {
 		m.Notes = append(m.Notes, r.budgetNote())
 	}
 	return m, nil
+}
+
+// fill makes the mesh of the coarsest field and halves it until it has the sizes of the first field.
+func (r *refiner) fill(ctx context.Context, fields []*sizeField, expected float64) error {
+	level := len(fields) - 1
+	r.start(fields[level], expected/math.Pow(levelNodes, float64(level)), level)
+	if err := r.run(ctx); err != nil {
+		return err
+	}
+	r.reorder()
+	passes := smoothPasses
+	for ; level > 0; level-- {
+		passes = levelPasses
+		if err := r.smooth(ctx, passes); err != nil {
+			return err
+		}
+		r.coarser /= 2
+		if !r.halve(fields[level-1]) {
+			if err := r.refineTo(ctx, fields[0]); err != nil {
+				return err
+			}
+			r.reorder()
+			passes = smoothPasses
+			break
+		}
+	}
+	if err := r.smooth(ctx, passes); err != nil {
+		return err
+	}
+	r.queueSegments()
+	r.queueTriangles()
+	return r.run(ctx)
 }
 
 // EstimateNodes is about the number of nodes that Build will make: the integral of the size field after the segments have been
@@ -103,7 +130,7 @@ func EstimateNodes(d Domain, o Options) float64 {
 	if err != nil {
 		return 0
 	}
-	_, expected := r.makeField(d, o)
+	_, expected := r.makeFields(d, o)
 	return expected
 }
 
@@ -183,29 +210,58 @@ func (c *carved) sizeBases(d Domain) {
 	}
 }
 
-// makeField makes the size field, finds its coarsest size and the number of nodes to expect.
-func (r *refiner) makeField(d Domain, o Options) (*sizeField, float64) {
+// makeFields makes the size fields, each but the first twice as coarse as the one before, and finds the coarsest size and the
+// number of nodes to expect.
+func (r *refiner) makeFields(d Domain, o Options) ([]*sizeField, float64) {
 	x0, y0, x1, y1 := bounds(r.p)
-	f := newSizeField(r.sources(d.Points, o.Tolerance, o.Growth, o.DetailGrowth), x0, y0, x1, y1)
+	requests := r.requests(d.Points, o.Growth, o.DetailGrowth)
+	f := newSizeField(sources(requests, o.Tolerance, 1, 0), x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
 	in := r.integrate(f)
 	if !(o.Coarsest > 0) {
 		f.coarsest = in.coarsestFor(float64(o.Nodes))
 	}
-	return f, in.nodes(f.coarsest)
+	fields, expected := []*sizeField{f}, in.nodes(f.coarsest)
+	for coarser := 2.0; coarser <= largestCoarser && r.worthHalving(expected, coarser, o.Growth); coarser *= 2 {
+		g := newSizeField(sources(requests, o.Tolerance, coarser, steepestCoarse), x0, y0, x1, y1)
+		g.coarsest = coarser * f.coarsest
+		fields = append(fields, g)
+	}
+	return fields, expected
+}
+
+// worthHalving says whether a mesh so many times coarser is to be made first and halved: not where it would hardly have more nodes
+// than the input has vertices.
+func (r *refiner) worthHalving(expected, coarser, growth float64) bool {
+	return expected > coarser*coarser*max(leastCoarse, float64(len(r.p))) && coarser*growth <= steepestCoarse
 }
 
 // start enters the second stage: sizes at all vertices, segments cut to size, rings around points, all triangles queued.
-func (r *refiner) start(f *sizeField, expected float64) {
-	r.field = f
-	r.budgetHit = false // the first stage's own limit; what it left undone is taken up now
-	for i := range r.p {
-		r.p[i].h = f.at(r.p[i].x, r.p[i].y)
-	}
+func (r *refiner) start(f *sizeField, expected float64, level int) {
+	r.coarser = math.Pow(2, float64(level))
 	r.reserve(expected)
+	r.budgetHit = false // the first stage's own limit; what it left undone is taken up now
+	r.setSizes(f)
 	r.ringPoints()
 	r.queueSegments()
 	r.queueTriangles()
+}
+
+// setSizes goes over to a size field.
+func (r *refiner) setSizes(f *sizeField) {
+	r.field = f
+	for i := range r.p {
+		r.p[i].h = f.at(r.p[i].x, r.p[i].y)
+	}
+}
+
+// refineTo refines to the final size field without halving.
+func (r *refiner) refineTo(ctx context.Context, f *sizeField) error {
+	r.coarser = 1
+	r.setSizes(f)
+	r.queueSegments()
+	r.queueTriangles()
+	return r.run(ctx)
 }
 
 // reserveShare is how much more than the nodes expected is reserved; meshes come out within a few per cent.

@@ -3,7 +3,7 @@ package mesh
 import "math"
 
 const (
-	sampleVariation = 0.5  // an integration sample is cut while the size may vary across it by more than this share
+	sampleVariation = 0.8  // an integration sample is cut while the size may vary across it by more than this share
 	sampleLeast     = 0.05 // nor is one cut that is worth less than this many squares of the size: slivers at sharp corners
 	sampleDepth     = 30   // halvings at most
 	nodesPerIdeal   = 0.98 // nodes made for each node of a mesh of equilateral triangles of the wanted size: at least, measured
@@ -16,18 +16,20 @@ type bin struct {
 	smallest float64 // [m]
 }
 
-// bins holds samples by the logarithm of their size.
+// bins holds samples by their size.
 type bins [binCount]bin
 
 const (
-	binsPerOctave = 32
-	binCount      = 80 * binsPerOctave // from 2^-40 to 2^40 m: tolerance of a millimetre's domain to beyond any coordinate
+	binBits     = 5                      // leading bits of the fraction that tell bins apart: 32 bins an octave
+	binShift    = 52 - binBits           // of the bits of a floating-point number
+	binCount    = 80 << binBits          // from 2^-40 to 2^40 m: tolerance of a millimetre's domain to beyond any coordinate
+	binSmallest = (1023 - 40) << binBits // number of the first bin, counted from zero
 )
 
 // put files a sample worth so much at its size.
 func (b *bins) put(h, amount, worth float64) {
-	i := int(max(0, min(binCount-1, (math.Log2(h)+40)*binsPerOctave)))
-	c := &b[i]
+	i := int(math.Float64bits(h)>>binShift) - binSmallest
+	c := &b[max(0, min(binCount-1, i))]
 	c.amount += amount
 	c.uncut += worth
 	if c.smallest == 0 || h < c.smallest {
@@ -61,16 +63,18 @@ func (c *carved) integrate(f *sizeField) *integral {
 	return in
 }
 
-// area samples a triangle, cutting its longest side until the size is even enough.
+// area samples a triangle, cutting its longest side until the size is even enough. The mean of 1/size² is that at the centroid with the
+// second-order term of a size that grows evenly: the variance of a triangle along any direction is about a 72nd of its squared sides.
 func (in *integral) area(f *sizeField, ax, ay, bx, by, cx, cy float64, depth int) {
 	la := (bx-cx)*(bx-cx) + (by-cy)*(by-cy)
 	lb := (cx-ax)*(cx-ax) + (cy-ay)*(cy-ay)
 	lc := (ax-bx)*(ax-bx) + (ay-by)*(ay-by)
-	h := f.free((ax+bx+cx)/3, (ay+by+cy)/3)
 	longest := max(la, lb, lc) // squared
+	h, growth := f.sample((ax+bx+cx)/3, (ay+by+cy)/3, longest)
 	amount := ((bx-ax)*(cy-ay) - (by-ay)*(cx-ax)) / 2
-	if vary := sampleVariation * h; depth == 0 || f.growth*f.growth*longest < vary*vary || amount < sampleLeast*h*h {
-		in.areas.put(h, amount, amount/(h*h))
+	if vary := sampleVariation * h; depth == 0 || growth*growth*longest < vary*vary || amount < sampleLeast*h*h {
+		spread := growth * growth / (h * h) * (la + lb + lc) / 72
+		in.areas.put(h, amount, amount/(h*h)*(1+3*min(spread, 1)))
 		in.largest = max(in.largest, h)
 		return
 	}
@@ -89,8 +93,8 @@ func (in *integral) area(f *sizeField, ax, ay, bx, by, cx, cy float64, depth int
 func (in *integral) length(f *sizeField, ax, ay, bx, by float64, depth int) {
 	l := math.Hypot(bx-ax, by-ay)
 	mx, my := (ax+bx)/2, (ay+by)/2
-	h := f.free(mx, my)
-	if depth == 0 || f.growth*l < sampleVariation*h {
+	h, growth := f.sample(mx, my, l*l)
+	if depth == 0 || growth*l < sampleVariation*h {
 		in.lengths.put(h, l, l/h)
 		in.largest = max(in.largest, h)
 		return

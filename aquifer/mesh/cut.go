@@ -10,7 +10,7 @@ func (r *refiner) tooLong(h int32) bool {
 	a, b := r.ends(h)
 	l := r.distance(a, b)
 	s := r.t[h>>2].s[h&3]
-	if l > r.bases[s].size*(1+shellTolerance) {
+	if l > r.coarser*r.bases[s].size*(1+shellTolerance) {
 		return true
 	}
 	if r.field == nil {
@@ -62,7 +62,7 @@ func (r *refiner) divide(h int32) {
 	var cuts []float64
 	l := r.distance(a, b)
 	n := 1
-	if size := r.bases[s].size; l > size*(1+shellTolerance) {
+	if size := r.coarser * r.bases[s].size; l > size*(1+shellTolerance) {
 		n = int(min(math.Ceil(l/size-shellTolerance), float64(r.maxNodes)))
 	}
 	var marks [][2]float64
@@ -101,8 +101,22 @@ func (r *refiner) divide(h int32) {
 // cutSegment cuts a segment in the middle, or on a shell about its sharp corner.
 func (r *refiner) cutSegment(h int32) {
 	a, b := r.ends(h)
+	if !r.divisible(r.distance(a, b)) {
+		r.refused++
+		return
+	}
+	f := r.cutShare(h)
+	pa, pb := &r.p[a], &r.p[b]
+	r.cutAt(h, pa.x+f*(pb.x-pa.x), pa.y+f*(pb.y-pa.y), b)
+}
+
+// divisible says whether a piece of a segment is long enough to be cut.
+func (r *refiner) divisible(l float64) bool { return l > r.tol*finestPiece }
+
+// cutShare is where to cut a segment, as a share of its length.
+func (r *refiner) cutShare(h int32) float64 {
+	a, b := r.ends(h)
 	s := &r.bases[r.t[h>>2].s[h&3]]
-	f := 0.5
 	corner := int32(-1)
 	switch {
 	case s.sharpP && s.sharpQ:
@@ -117,17 +131,11 @@ func (r *refiner) cutSegment(h int32) {
 	case s.sharpQ:
 		corner = s.q
 	}
-	l := r.distance(a, b)
-	if corner >= 0 {
-		scale := *r.shellScale(r.t[h>>2].s[h&3], corner)
-		f = shellFraction(scale*r.distance(corner, a), scale*r.distance(corner, b))
+	if corner < 0 {
+		return 0.5
 	}
-	if !(l > r.tol*finestPiece) {
-		r.refused++
-		return
-	}
-	pa, pb := &r.p[a], &r.p[b]
-	r.cutAt(h, pa.x+f*(pb.x-pa.x), pa.y+f*(pb.y-pa.y), b)
+	scale := *r.shellScale(r.t[h>>2].s[h&3], corner)
+	return shellFraction(scale*r.distance(corner, a), scale*r.distance(corner, b))
 }
 
 // shellFraction gives where between the distances da and db of the ends from a corner to cut: at the distance in the middle

@@ -15,10 +15,16 @@
 // 1993, points in the order of a Hilbert curve). A triangle is inside when the way to it crosses an odd number of ring segments.
 // Segments are cut while encroached, on common shells at sharp corners (Ruppert 1995; Miller, Pav & Walkington 2003), and
 // triangles that are too large or too thin get a vertex: an off-centre over an edge bounded by finished triangles or a segment
-// (Ungor 2004; Engwirda & Ivers 2016), else the circumcentre (Shewchuk 2002). Two passes of smoothing towards an optimal Delaunay
-// triangulation follow (Chen & Holst 2011), with flips after each, then refinement once more. Orientation and in-circle tests
+// (Ungor 2004; Engwirda & Ivers 2016), else the circumcentre (Shewchuk 2002). Smoothing towards an optimal Delaunay triangulation
+// follows (Chen & Holst 2011), with flips after each pass, then refinement once more. Orientation and in-circle tests
 // are exact: a floating-point filter with a proven error bound, and expansions where it is undecided (Shewchuk 1997). They work
 // on the given coordinates themselves; differences keep full precision under any offset, so nothing is shifted.
+//
+// Where the size grows gently enough and there are many more nodes than vertices of the input, the mesh is made two or four times too
+// coarse first, but never coarser than the features of the input allow, and its edges are then cut in the middle where they are too
+// long (regular refinement: Bank, Sherman & Weiser 1983), once or twice. Angles stay, nearly all new vertices have six triangles, and
+// most of the work is plain. Halving, smoothing, in-circle tests of whole meshes and counting go on in shares of fixed size on all
+// processors; flips and insertions are made one after the other, so the mesh does not depend on the number of processors.
 //
 // With a metric, in-circle tests, centres, angles and encroachment of a region are those of the plane mapped by the square root
 // of T^-1 (area kept); orientation is tested in the plane too. Edges on lines are never flipped.
@@ -32,7 +38,7 @@
 // are counted apart. A gap between lines of many tolerances' width is meshed however long it is, until the budget is hit: a
 // larger tolerance closes it.
 //
-// Sources: Bowyer A (1981) Comput. J. 24(2); Chen L, Holst M (2011) Comput. Methods Appl. Mech. Eng. 200; Engwirda D, Ivers D
+// Sources: Bank RE, Sherman AH, Weiser A (1983) Scientific Computing, IMACS; Bowyer A (1981) Comput. J. 24(2); Chen L, Holst M (2011) Comput. Methods Appl. Mech. Eng. 200; Engwirda D, Ivers D
 // (2016) Comput.-Aided Des. 72; Lawson CL (1977) Mathematical Software III; Miller GL, Pav SE, Walkington NJ (2003) 12th Int.
 // Meshing Roundtable; Ruppert J (1995) J. Algorithms 18(3); Shewchuk JR (1997) Discrete Comput. Geom. 18(3); Shewchuk JR (2002)
 // Comput. Geom. 22(1-3); Sloan SW (1993) Comput. Struct. 47(3); Ungor A (2004) LATIN 2004.

@@ -13,7 +13,7 @@ func (r *refiner) finish(d Domain, o Options, g *planar) *Mesh {
 	m.Quality = Quality{WantedAngleDeg: o.MinAngleDeg, BudgetHit: r.budgetHit, Coarsest: r.field.coarsest, Tolerance: o.Tolerance}
 	slot := r.pack(m)
 	m.PointNode = append([]int32(nil), r.point...)
-	m.fillRegions(r)
+	m.fillRegions()
 	m.incidence()
 	m.provenance(r, d)
 	m.noteDropped(d, o.Tolerance)
@@ -24,6 +24,7 @@ func (r *refiner) finish(d Domain, o Options, g *planar) *Mesh {
 // pack copies nodes and triangles, leaving out free slots, and gives the slot of each triangle.
 func (r *refiner) pack(m *Mesh) (slot []int32) {
 	number := make([]int32, len(r.t))
+	slot = make([]int32, 0, len(r.t))
 	for t := range r.t {
 		number[t] = -1
 		if r.t[t].v[0] >= 0 {
@@ -33,30 +34,36 @@ func (r *refiner) pack(m *Mesh) (slot []int32) {
 	}
 	n := len(slot)
 	m.X, m.Y = make([]float64, len(r.p)), make([]float64, len(r.p))
-	for i := range r.p {
-		m.X[i], m.Y[i] = r.p[i].x, r.p[i].y
-	}
+	inParallel(len(r.p), func(from, to int) {
+		for i := from; i < to; i++ {
+			m.X[i], m.Y[i] = r.p[i].x, r.p[i].y
+		}
+	})
 	m.Triangles, m.Neighbours = make([]int32, 3*n), make([]int32, 3*n)
 	m.Constraint, m.Region = make([]uint8, n), make([]int32, n)
-	for i, t := range slot {
-		tr := &r.t[t]
-		for k := range 3 {
-			m.Triangles[3*i+k] = tr.v[k]
-			m.Neighbours[3*i+k] = -1
-			if tr.n[k] >= 0 {
-				m.Neighbours[3*i+k] = number[tr.n[k]>>2]
+	inParallel(n, func(from, to int) {
+		for i := from; i < to; i++ {
+			tr := &r.t[slot[i]]
+			constraint := uint8(0)
+			for k := range 3 {
+				m.Triangles[3*i+k] = tr.v[k]
+				g := tr.n[k]
+				if g >= 0 {
+					g = number[g>>2]
+				}
+				m.Neighbours[3*i+k] = g
+				if tr.s[k] >= 0 {
+					constraint |= 1 << k
+				}
 			}
-			if tr.s[k] >= 0 {
-				m.Constraint[i] |= 1 << k
-			}
+			m.Constraint[i], m.Region[i] = constraint, tr.region
 		}
-		m.Region[i] = tr.region
-	}
+	})
 	return slot
 }
 
 // fillRegions sums the regions and finds the connected parts of the domain.
-func (m *Mesh) fillRegions(r *refiner) {
+func (m *Mesh) fillRegions() {
 	n := int32(0)
 	for _, g := range m.Region {
 		n = max(n, g+1)
@@ -65,37 +72,48 @@ func (m *Mesh) fillRegions(r *refiner) {
 	largest := make([]float64, n)
 	for t, g := range m.Region {
 		area := m.area(int32(t))
-		m.Regions[g].Area += area
-		m.Regions[g].Triangles++
+		r := &m.Regions[g]
+		r.Area += area
+		r.Triangles++
 		if area > largest[g] {
 			largest[g] = area
 			a, b, c := m.Triangles[3*t], m.Triangles[3*t+1], m.Triangles[3*t+2]
-			m.Regions[g].At = orb.Point{(m.X[a] + m.X[b] + m.X[c]) / 3, (m.Y[a] + m.Y[b] + m.Y[c]) / 3}
+			r.At = orb.Point{(m.X[a] + m.X[b] + m.X[c]) / 3, (m.Y[a] + m.Y[b] + m.Y[c]) / 3}
 		}
 	}
-	for i := range m.Regions {
-		m.Regions[i].Part = -1
+	m.findParts()
+}
+
+// findParts numbers the connected parts of the domain, in the order of their first regions. A region is connected itself, so only
+// constrained edges with triangles on both sides join them further.
+func (m *Mesh) findParts() {
+	root := make([]int, len(m.Regions))
+	for i := range root {
+		root[i] = i
 	}
-	seen := make([]bool, len(m.Region))
-	var stack []int32
-	for t := range m.Region {
-		if seen[t] {
-			continue
+	find := func(i int) int {
+		for root[i] != i {
+			root[i] = root[root[i]]
+			i = root[i]
 		}
-		seen[t] = true
-		stack = append(stack[:0], int32(t))
-		for len(stack) > 0 {
-			u := stack[len(stack)-1]
-			stack = stack[:len(stack)-1]
-			m.Regions[m.Region[u]].Part = m.Parts
-			for _, e := range m.Neighbours[3*u : 3*u+3] {
-				if e >= 0 && !seen[e] {
-					seen[e] = true
-					stack = append(stack, e)
-				}
+		return i
+	}
+	for t, c := range m.Constraint {
+		for k := 0; c != 0; k, c = k+1, c>>1 {
+			if e := m.Neighbours[3*t+k]; c&1 == 1 && e >= 0 {
+				a, b := find(int(m.Region[t])), find(int(m.Region[e]))
+				root[max(a, b)] = min(a, b)
 			}
 		}
-		m.Parts++
+	}
+	m.Parts = 0
+	for i := range root {
+		if root[i] == i {
+			m.Regions[i].Part = m.Parts
+			m.Parts++
+		} else {
+			m.Regions[i].Part = m.Regions[find(i)].Part
+		}
 	}
 }
 
@@ -132,21 +150,11 @@ func (m *Mesh) provenance(r *refiner, d Domain) {
 	rings := allRings(d)
 	m.LineEdges = make([][]LineEdge, len(d.Lines))
 	for t := range r.t {
-		tr := &r.t[t]
+		if tr := &r.t[t]; tr.v[0] < 0 || tr.s[0]&tr.s[1]&tr.s[2] < 0 {
+			continue
+		}
 		for k := int32(0); k < 3; k++ {
-			if tr.v[0] < 0 || tr.s[k] < 0 || tr.n[k] >= 0 && tr.n[k] < 4*int32(t)+k {
-				continue
-			}
-			a, b := r.ends(4*int32(t) + k)
-			onRing := false
-			for _, o := range r.sets[r.bases[tr.s[k]].set] {
-				if l := int(o.owner) - len(rings); l >= 0 {
-					m.LineEdges[l] = append(m.LineEdges[l], m.lineEdge(d.Lines[l].Path, o.segment, a, b))
-				} else if tr.n[k] < 0 && !onRing {
-					onRing = true
-					m.OutlineEdges = append(m.OutlineEdges, m.outlineEdge(rings[o.owner], o, a, b))
-				}
-			}
+			m.noteEdge(r, d, rings, int32(t), k)
 		}
 	}
 	for _, e := range m.LineEdges {
@@ -159,6 +167,24 @@ func (m *Mesh) provenance(r *refiner, d Domain) {
 		return cmp.Or(cmp.Compare(a.Ring, b.Ring), cmp.Compare(a.Segment, b.Segment),
 			cmp.Compare(a.FractionA+a.FractionB, b.FractionA+b.FractionB), cmp.Compare(a.A, b.A), cmp.Compare(a.B, b.B))
 	})
+}
+
+// noteEdge files edge k of triangle t of the refined triangulation if it lies on lines or outline and was not met from its other side.
+func (m *Mesh) noteEdge(r *refiner, d Domain, rings []orb.Ring, t, k int32) {
+	tr := &r.t[t]
+	if tr.s[k] < 0 || tr.n[k] >= 0 && tr.n[k] < 4*t+k {
+		return
+	}
+	a, b := r.ends(4*t + k)
+	onRing := false
+	for _, o := range r.sets[r.bases[tr.s[k]].set] {
+		if l := int(o.owner) - len(rings); l >= 0 {
+			m.LineEdges[l] = append(m.LineEdges[l], m.lineEdge(d.Lines[l].Path, o.segment, a, b))
+		} else if tr.n[k] < 0 && !onRing {
+			onRing = true
+			m.OutlineEdges = append(m.OutlineEdges, m.outlineEdge(rings[o.owner], o, a, b))
+		}
+	}
 }
 
 // lineEdge makes the record of edge a-b on a segment of a path, in the path's direction.

@@ -3,31 +3,23 @@ package mesh
 // hilbertBits is the resolution of the curve in each direction: 65,536 cells a side, finer than a million nodes need.
 const hilbertBits = 16
 
+// hilbertTurn holds, for each of the four ways in which the curve may run through a square and each quarter of it (x bit, y bit), the
+// number of the quarter along the curve and the way through it: 4 way + number.
+var hilbertTurn = [16]uint8{
+	4*1 + 0, 4*0 + 1, 4*3 + 3, 4*0 + 2,
+	4*0 + 0, 4*2 + 3, 4*1 + 1, 4*1 + 2,
+	4*2 + 2, 4*1 + 3, 4*2 + 1, 4*3 + 0,
+	4*3 + 2, 4*3 + 1, 4*0 + 3, 4*2 + 0,
+}
+
 // hilbertKey is the place of the cell (x, y) on the curve.
 func hilbertKey(x, y uint32) uint32 {
 	var d uint32
-	for s := uint32(1) << (hilbertBits - 1); s > 0; s >>= 1 {
-		var rx, ry uint32
-		if x&s != 0 {
-			rx = 1
-		}
-		if y&s != 0 {
-			ry = 1
-		}
-		d += s * s * ((3 * rx) ^ ry)
-		if ry == 0 {
-			if rx == 1 {
-				x = s - 1 - (x & (s - 1))
-				y = s - 1 - (y & (s - 1))
-			} else {
-				x &= s - 1
-				y &= s - 1
-			}
-			x, y = y, x
-		} else {
-			x &= s - 1
-			y &= s - 1
-		}
+	way := uint32(0)
+	for i := hilbertBits - 1; i >= 0; i-- {
+		e := uint32(hilbertTurn[(4*way+(x>>i&1)*2+y>>i&1)&15])
+		d = d<<2 | e&3
+		way = e >> 2
 	}
 	return d
 }
@@ -50,10 +42,12 @@ func hilbertOrder(n int, at func(i int) (x, y float64)) []int32 {
 		scale = float64(1<<hilbertBits-1) / side
 	}
 	keys := make([]uint64, n)
-	for i := range keys {
-		x, y := at(i)
-		keys[i] = uint64(hilbertKey(uint32((x-x0)*scale), uint32((y-y0)*scale)))<<32 | uint64(i)
-	}
+	inParallel(n, func(from, to int) {
+		for i := from; i < to; i++ {
+			x, y := at(i)
+			keys[i] = uint64(hilbertKey(uint32((x-x0)*scale), uint32((y-y0)*scale)))<<32 | uint64(i)
+		}
+	})
 	order := make([]int32, n)
 	for i, k := range sortKeys(keys) {
 		order[i] = int32(uint32(k))

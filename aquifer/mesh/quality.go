@@ -22,13 +22,52 @@ func (m *Mesh) measure(atSharp func(t int32) bool) {
 	q.Nodes, q.Triangles = len(m.X), len(m.Region)
 	q.PoorAtSharpInput, q.PoorOther, q.EncroachedLeft, q.EncroachedAtSharp = 0, 0, 0, 0
 	m.sharp = make([]bool, len(m.Region))
-	sin := math.Sin(q.WantedAngleDeg * math.Pi / 180)
+	shares := make([]tally, len(m.Region)/parallelShare+1)
+	inParallel(len(m.Region), func(from, to int) { shares[from/parallelShare] = m.tally(from, to) })
 	all, free, obtuse := 1.0, 1.0, 0
-	for t := range m.Region {
+	for _, s := range shares {
+		all, free, obtuse = min(all, s.sine2), min(free, s.sine2), obtuse+s.obtuse
+		for _, u := range s.suspects {
+			sharp := atSharp(u.t)
+			m.sharp[u.t] = sharp
+			all = min(all, u.sine2)
+			if !sharp {
+				free = min(free, u.sine2)
+			}
+			count(u.poor, sharp, &q.PoorAtSharpInput, &q.PoorOther)
+			if u.encroached {
+				q.EncroachedLeft++
+				count(sharp, true, &q.EncroachedAtSharp, nil)
+			}
+		}
+	}
+	q.MinAngleDeg = math.Asin(math.Sqrt(all)) * 180 / math.Pi
+	q.MinAngleFreeDeg = math.Asin(math.Sqrt(free)) * 180 / math.Pi
+	q.ObtuseShare = float64(obtuse) / float64(q.Triangles)
+}
+
+// suspect is a triangle that is poor or faces a segment with an obtuse angle.
+type suspect struct {
+	t                int32
+	poor, encroached bool
+	sine2            float64 // squared sine of the smallest angle
+}
+
+// tally is what a share of the triangles has.
+type tally struct {
+	suspects []suspect
+	sine2    float64 // squared sine of the smallest angle of the others; 1 when there are none
+	obtuse   int
+}
+
+// tally looks at a share of the triangles.
+func (m *Mesh) tally(from, to int) tally {
+	sin := math.Sin(m.Quality.WantedAngleDeg * math.Pi / 180)
+	out := tally{sine2: 1}
+	for t := from; t < to; t++ {
 		s := m.shapeOf(t)
-		sin2 := s.l2[s.shortest()] / (4 * s.radius) // of the smallest angle: edge = 2 R sin
-		all = min(all, sin2)
-		poor := !(sin2 >= sin*sin)
+		sine2 := s.l2[s.shortest()] / (4 * s.radius) // of the smallest angle: edge = 2 R sin
+		poor := !(sine2 >= sin*sin)
 		widest := 0
 		for k := range 3 {
 			if s.l2[k] > s.l2[widest] {
@@ -36,25 +75,16 @@ func (m *Mesh) measure(atSharp func(t int32) bool) {
 			}
 		}
 		wide := s.l2[0]+s.l2[1]+s.l2[2]-2*s.l2[widest] < -rightAngleSlack*s.l2[widest]
-		encroached := wide && m.Constraint[t]>>widest&1 == 1
-		if poor || encroached {
-			m.sharp[t] = atSharp(int32(t))
-		}
-		if !m.sharp[t] {
-			free = min(free, sin2)
-		}
 		if wide {
-			obtuse++
+			out.obtuse++
 		}
-		count(poor, m.sharp[t], &q.PoorAtSharpInput, &q.PoorOther)
-		if encroached {
-			q.EncroachedLeft++
-			count(m.sharp[t], true, &q.EncroachedAtSharp, nil)
+		if encroached := wide && m.Constraint[t]>>widest&1 == 1; poor || encroached {
+			out.suspects = append(out.suspects, suspect{int32(t), poor, encroached, sine2})
+		} else {
+			out.sine2 = min(out.sine2, sine2)
 		}
 	}
-	q.MinAngleDeg = math.Asin(math.Sqrt(all)) * 180 / math.Pi
-	q.MinAngleFreeDeg = math.Asin(math.Sqrt(free)) * 180 / math.Pi
-	q.ObtuseShare = float64(obtuse) / float64(q.Triangles)
+	return out
 }
 
 // count adds one to yes or no when something holds.

@@ -17,6 +17,8 @@ const (
 	// oversize: a triangle is too large when circumradius x sqrt(3) exceeds this many wanted lengths. An equilateral triangle
 	// of the wanted size has 1; the value makes the mean edge length come out near the wanted one.
 	oversize = 1.35
+	// clearly is what remains of a limit when rounding cannot carry a value over it: a dozen operations, of 1e-16 each.
+	clearly = 1 - 1e-12
 	// mildOversize: up to here a triangle next to a segment may stay rather than have the segment cut.
 	mildOversize = 1.7
 	// offCentreShare keeps an off-centre a little inside the limit of the angle wanted (Ungor 2004).
@@ -72,6 +74,7 @@ func (q *fifo) pop() (item, bool) {
 type refiner struct {
 	*carved
 	field    *sizeField // nil in the first stage: segments only
+	coarser  float64    // sizes asked for along lines are taken so many times coarser now
 	ratio2   float64    // largest (circumradius / shortest edge)² allowed
 	apex     float64    // distance of an off-centre from the base's middle per base length
 	maxNodes int
@@ -89,7 +92,7 @@ type refiner struct {
 // newRefiner prepares the refinement.
 func newRefiner(c *carved, angleDeg, tol float64, maxNodes int) *refiner {
 	b := 1 / (2 * math.Sin(angleDeg*math.Pi/180))
-	return &refiner{carved: c, ratio2: b * b, apex: offCentreShare * (b + math.Sqrt(b*b-0.25)), tol: tol, maxNodes: maxNodes}
+	return &refiner{carved: c, coarser: largestCoarser, ratio2: b * b, apex: offCentreShare * (b + math.Sqrt(b*b-0.25)), tol: tol, maxNodes: maxNodes}
 }
 
 // queueSegments puts all segments on the lists that they belong to.
@@ -104,6 +107,9 @@ func (r *refiner) queueSegments() {
 // checkEdges queues the segments of a triangle that are too long or that its apex encroaches upon.
 func (r *refiner) checkEdges(t int32) {
 	tr := &r.t[t]
+	if tr.s[0]&tr.s[1]&tr.s[2] < 0 { // all are: no segment on it
+		return
+	}
 	for k := int32(0); k < 3; k++ {
 		if tr.s[k] < 0 {
 			continue
@@ -217,13 +223,49 @@ func (r *refiner) queueTriangles() {
 // classify sets the state of a new triangle, queues it when bad, and wakes waiting neighbours when good.
 func (r *refiner) classify(t int32) {
 	tr := &r.t[t]
-	s := r.shapeOf(t)
-	if tooLarge, thin := r.faults(t, &s); tooLarge > 0 || thin {
-		tr.state = stateQueued
-		r.triangles.push(item{t, tr.stamp})
+	switch r.glance(tr) {
+	case looksGood:
+		r.settle(t)
 		return
+	case unclear:
+		s := r.shapeOf(t)
+		if tooLarge, thin := r.faults(t, &s); !(tooLarge > 0) && !thin {
+			r.settle(t)
+			return
+		}
 	}
-	r.settle(t)
+	tr.state = stateQueued
+	r.triangles.push(item{t, tr.stamp})
+}
+
+// What a glance tells of a triangle.
+const (
+	unclear = iota
+	looksGood
+	looksLarge
+)
+
+// glance says whether a triangle is clearly good or clearly too large: what faults finds, without a division, for regions without a
+// metric of their own.
+func (r *refiner) glance(tr *triangle) int {
+	if r.metrics != nil {
+		return unclear
+	}
+	a, b, c := &r.p[tr.v[0]], &r.p[tr.v[1]], &r.p[tr.v[2]]
+	ux, uy, vx, vy := b.x-a.x, b.y-a.y, c.x-a.x, c.y-a.y
+	wx, wy := vx-ux, vy-uy
+	u2, v2, w2 := ux*ux+uy*uy, vx*vx+vy*vy, wx*wx+wy*wy
+	cross := ux*vy - uy*vx
+	squares, product := 4*cross*cross, u2*v2*w2 // their ratio is the squared circumradius
+	h := a.h + b.h + c.h                        // three times the size wanted
+	limit := oversize * oversize / 27 * h * h * squares
+	switch {
+	case product > limit*(2-clearly):
+		return looksLarge
+	case product <= limit*clearly && product <= clearly*r.ratio2*min(u2, v2, w2)*squares:
+		return looksGood
+	}
+	return unclear
 }
 
 // settle marks a triangle good and wakes the neighbours that waited for one.

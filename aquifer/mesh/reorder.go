@@ -11,6 +11,12 @@ func (c *carved) reorder() {
 		p[i] = c.p[v]
 	}
 	c.p = p
+	c.renumber(number)
+	c.reorderTriangles(number)
+}
+
+// renumber changes the vertex numbers of points and segments.
+func (c *carved) renumber(number []int32) {
 	for i, v := range c.point {
 		c.point[i] = number[v]
 	}
@@ -21,7 +27,6 @@ func (c *carved) reorder() {
 		c.meeting[b.p] = append(c.meeting[b.p], int32(i))
 		c.meeting[b.q] = append(c.meeting[b.q], int32(i))
 	}
-	c.reorderTriangles(number)
 }
 
 // reorderTriangles renumbers the vertices in the triangles and sorts these, stably, by their lowest vertex.

@@ -86,13 +86,13 @@ func (f *sizeField) split(c int32, from int, cx, cy, half float64, depth int) {
 	f.scratch = f.scratch[:to]
 }
 
-// free is the size at (x, y) without the cap.
-func (f *sizeField) free(x, y float64) float64 {
-	c := int32(0)
-	half := f.side / 2
+// leaf finds the leaf that holds (x, y) and its half side.
+func (f *sizeField) leaf(x, y float64) (cell *fieldCell, half float64) {
+	half = f.side / 2
 	cx, cy := f.x+half, f.y+half
-	for f.cells[c].child >= 0 {
-		c = f.cells[c].child
+	cell = &f.cells[0]
+	for cell.child >= 0 {
+		c := cell.child
 		half /= 2
 		if x > cx {
 			c++
@@ -106,15 +106,41 @@ func (f *sizeField) free(x, y float64) float64 {
 		} else {
 			cy -= half
 		}
+		cell = &f.cells[c]
 	}
+	return cell, half
+}
+
+// size is the smallest size that the sources of a leaf give at (x, y).
+func (f *sizeField) size(cell *fieldCell, x, y float64) float64 {
 	h := math.Inf(1)
-	cell := &f.cells[c]
-	for i := cell.from; i < cell.to; i++ {
-		s := &f.lists[i]
+	for i := range f.lists[cell.from:cell.to] {
+		s := &f.lists[int(cell.from)+i]
 		dx, dy := s.x-x, s.y-y
-		h = min(h, s.size+s.growth*math.Sqrt(dx*dx+dy*dy))
+		if l := s.size + s.growth*math.Sqrt(dx*dx+dy*dy); l < h {
+			h = l
+		}
 	}
 	return h
+}
+
+// free is the size at (x, y) without the cap.
+func (f *sizeField) free(x, y float64) float64 {
+	cell, _ := f.leaf(x, y)
+	return f.size(cell, x, y)
+}
+
+// sample is the size at (x, y) without the cap, and how fast it may grow within something there of a given squared length.
+func (f *sizeField) sample(x, y, length2 float64) (h, growth float64) {
+	cell, half := f.leaf(x, y)
+	h = f.size(cell, x, y)
+	if length2 > 4*half*half {
+		return h, f.growth
+	}
+	for i := range f.lists[cell.from:cell.to] {
+		growth = max(growth, f.lists[int(cell.from)+i].growth)
+	}
+	return h, growth
 }
 
 // at is the size wanted at (x, y) [m].

@@ -7,49 +7,79 @@ const (
 	ringFit = 2.2
 	// ringTurn turns the six away from the axes, so that they do not fall in line with rows of points on a grid [rad].
 	ringTurn = 0.2
+	// mostAlong bounds the places along one edge that ask for a size.
+	mostAlong = 2 * largestCoarser
 )
 
-// sources makes a size-field source of every vertex: its shortest edge, which is how near the next feature is, and what the
-// domain's points ask for, but never less than the tolerance. What is asked for, at points and along lines, grows by growth; the
-// detail of rings and other lines grows by detail.
-func (c *carved) sources(points []Point, tol, growth, detail float64) []source {
-	size := make([]float64, len(c.p))
-	for i := range size {
-		size[i] = math.Inf(1)
+// request is what a place wants, for size fields of any coarseness.
+type request struct {
+	x, y    float64
+	asked   float64 // edge length asked for; +Inf none [m]
+	feature float64 // distance of the next feature of the input, which a mesh of any coarseness must resolve [m]
+	growth  float64 // [-]
+}
+
+// requests lists what the vertices want: the shortest edge, which is how near the next feature is, and what points and lines of the
+// domain ask for. What is asked for grows by growth; the detail of rings and other lines grows by detail.
+func (c *carved) requests(points []Point, growth, detail float64) []request {
+	out := make([]request, len(c.p))
+	for i := range out {
+		out[i] = request{c.p[i].x, c.p[i].y, math.Inf(1), math.Inf(1), detail}
 	}
 	for t := range c.t {
 		tr := &c.t[t]
 		for k := int32(0); k < 3; k++ {
 			a, b := tr.v[next3[k]], tr.v[prev3[k]]
-			if tr.v[0] < 0 || tr.n[k] > 4*int32(t)+k || tr.s[k] < 0 && c.acrossCorner(a, b) {
+			if tr.v[0] < 0 || tr.n[k] > 4*int32(t)+k {
 				continue
 			}
 			l := c.distance(a, b)
-			size[a], size[b] = min(size[a], l), min(size[b], l)
+			if tr.s[k] >= 0 || !c.acrossCorner(a, b) {
+				out[a].feature, out[b].feature = min(out[a].feature, l), min(out[b].feature, l)
+			}
+			if tr.s[k] >= 0 && l > c.bases[tr.s[k]].size {
+				out = append(out, c.alongEdge(a, b, l, c.bases[tr.s[k]].size, growth)...)
+			}
 		}
 	}
-	asked := make([]bool, len(c.p))
-	for v := range asked {
+	for v := range c.p {
 		segments := c.segmentsAt(int32(v))
-		asked[v] = len(segments) == 0
+		if len(segments) == 0 {
+			out[v].growth = growth
+		}
 		for _, s := range segments {
-			asked[v] = asked[v] || c.bases[s].size < math.Inf(1)
+			if c.bases[s].size < math.Inf(1) {
+				out[v].asked, out[v].growth = min(out[v].asked, c.bases[s].size), growth
+			}
 		}
 	}
 	for i, p := range points {
 		if v := c.point[i]; v >= 0 && p.Size > 0 {
-			size[v] = min(size[v], p.Size)
-			asked[v] = true
+			out[v].asked, out[v].growth = min(out[v].asked, p.Size), growth
 		}
 	}
-	out := make([]source, 0, len(c.p))
-	for i := range c.p {
-		if size[i] < math.Inf(1) {
-			g := detail
-			if asked[i] {
-				g = growth
-			}
-			out = append(out, source{c.p[i].x, c.p[i].y, max(size[i], tol), g})
+	return out
+}
+
+// alongEdge asks for a size at places between the ends of an edge on a line.
+func (c *carved) alongEdge(a, b int32, l, size, growth float64) []request {
+	n := int(min(math.Ceil(l/size), mostAlong))
+	out := make([]request, 0, n)
+	p, q := &c.p[a], &c.p[b]
+	for i := 1; i < n; i++ {
+		f := float64(i) / float64(n)
+		out = append(out, request{p.x + f*(q.x-p.x), p.y + f*(q.y-p.y), size, math.Inf(1), growth})
+	}
+	return out
+}
+
+// sources makes the sources of a size field that is so many times coarser than wanted wherever features allow; no size is less
+// than the tolerance.
+func sources(requests []request, tol, coarser, steepest float64) []source {
+	out := make([]source, 0, len(requests))
+	for _, q := range requests {
+		if size := min(coarser*q.asked, q.feature); size < math.Inf(1) {
+			out = append(out, source{q.x, q.y, max(size, tol), min(coarser*q.growth, max(q.growth, steepest))})
 		}
 	}
 	return out

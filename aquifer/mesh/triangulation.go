@@ -1,5 +1,7 @@
 package mesh
 
+import "math"
+
 // Kinds of vertex.
 const (
 	inputVertex   uint8 = iota // vertex of the outline, a hole, a line or a crossing of these
@@ -64,14 +66,30 @@ func (m *triangulation) orientV(a, b, c int32) float64 {
 	return orient(p.x, p.y, q.x, q.y, r.x, r.y)
 }
 
-// inside says whether (x, y) lies strictly inside the circumcircle of triangle t, in the metric of its region.
+// inside says whether (x, y) lies strictly inside the circumcircle of triangle t, in the metric of its region. The filter of
+// inCircle is written out here, because most of the time is spent on it.
 func (m *triangulation) inside(t int32, x, y float64) bool {
 	tr := &m.t[t]
 	a, b, c := &m.p[tr.v[0]], &m.p[tr.v[1]], &m.p[tr.v[2]]
 	if m.metrics != nil {
 		return m.metrics[tr.region].inside(a, b, c, x, y)
 	}
-	return inCircle(a.x, a.y, b.x, b.y, c.x, c.y, x, y) > 0
+	ax, ay := a.x-x, a.y-y
+	bx, by := b.x-x, b.y-y
+	cx, cy := c.x-x, c.y-y
+	bc, cb := float64(bx*cy), float64(cx*by)
+	ca, ac := float64(cx*ay), float64(ax*cy)
+	ab, ba := float64(ax*by), float64(bx*ay)
+	al := float64(ax*ax) + float64(ay*ay)
+	bl := float64(bx*bx) + float64(by*by)
+	cl := float64(cx*cx) + float64(cy*cy)
+	det := float64(al*(bc-cb)) + float64(bl*(ca-ac)) + float64(cl*(ab-ba))
+	bound := inCircleBound * (float64((math.Abs(bc)+math.Abs(cb))*al) + float64((math.Abs(ca)+math.Abs(ac))*bl) +
+		float64((math.Abs(ab)+math.Abs(ba))*cl))
+	if det > bound || -det > bound {
+		return det > 0
+	}
+	return inCircleExact(a.x, a.y, b.x, b.y, c.x, c.y, x, y) > 0
 }
 
 // newTriangle gives a slot.
@@ -146,18 +164,22 @@ func (m *triangulation) enter(g int32) {
 
 // drain empties the stack of cavity edges: each is crossed or becomes part of the rim.
 func (m *triangulation) drain(x, y float64) {
-	for len(m.stack) > 0 {
-		h := m.stack[len(m.stack)-1]
-		m.stack = m.stack[:len(m.stack)-1]
+	stack, dead, rims, mark, epoch := m.stack, m.dead, m.rims, m.mark, m.epoch
+	for len(stack) > 0 {
+		h := stack[len(stack)-1]
+		stack = stack[:len(stack)-1]
 		tr := &m.t[h>>2]
 		k := h & 3
 		g := tr.n[k]
-		if g >= 0 && tr.s[k] < 0 && m.mark[g>>2] != m.epoch && m.inside(g>>2, x, y) {
-			m.enter(g)
+		if u := g >> 2; g >= 0 && tr.s[k] < 0 && mark[u] != epoch && m.inside(u, x, y) {
+			mark[u] = epoch
+			dead = append(dead, u)
+			stack = append(stack, 4*u+prev3[g&3], 4*u+next3[g&3])
 			continue
 		}
-		m.rims = append(m.rims, rim{tr.v[next3[k]], tr.v[prev3[k]], g, tr.s[k], tr.region})
+		rims = append(rims, rim{tr.v[next3[k]], tr.v[prev3[k]], g, tr.s[k], tr.region})
 	}
+	m.stack, m.dead, m.rims = stack, dead, rims
 }
 
 // starShaped says whether every rim edge is seen from (x, y) with positive orientation.
