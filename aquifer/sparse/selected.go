@@ -102,7 +102,7 @@ func (f *Factor) selectPanel(ctx context.Context, rhs []SparseVector, sequence, 
 	p := s.blank.Get().(*panel)
 	defer s.blank.Put(p)
 	if len(p.x) < s.pattern.N*panelWidth {
-		p.x, p.seen = make([]float64, s.pattern.N*panelWidth), make([]bool, len(s.nodes.rows))
+		p.x = make([]float64, s.pattern.N*panelWidth)
 	}
 	p.path = p.path[:0]
 	for c, r := range sequence {
@@ -114,10 +114,10 @@ func (f *Factor) selectPanel(ctx context.Context, rhs []SparseVector, sequence, 
 	slices.Sort(p.path)
 	for _, q := range p.path {
 		p.seen[q] = false
-		f.forward(p, int(q), k)
+		f.forward(p, &s.inPlace, int(q), k)
 	}
 	for at := len(back) - 1; at >= 0; at-- {
-		f.backward(p, int(back[at]), k)
+		f.backward(p, &s.inPlace, int(back[at]), k)
 	}
 	for c, r := range sequence {
 		for w, i := range wanted {

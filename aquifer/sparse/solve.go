@@ -18,13 +18,15 @@ const pollSupernodes = 4096
 
 // panel is the memory of one pass of up to panelWidth right-hand sides through the factor.
 type panel struct {
-	x    []float64 // positions x width
+	x    []float64 // places x width
 	rows []float64 // rows of a supernode x width, and three more rows that a kernel may touch
 	path []int32   // supernodes on the paths of sparse right-hand sides
-	seen []bool    // supernode -> it is on the path
+	seen []bool    // supernode -> it is on the path of an entry that is not zero
 }
 
-func (s *Symbolic) newPanel() any { return &panel{rows: make([]float64, (s.tallest+3)*panelWidth)} }
+func (s *Symbolic) newPanel() any {
+	return &panel{rows: make([]float64, (s.tallest+3)*panelWidth), seen: make([]bool, len(s.nodes.rows))}
+}
 
 // Solve replaces the k right-hand sides in block, N entries each and one after the other, by the solutions of A x = b. A
 // solution does not depend, to the last bit, on the others in the block. It fails with [Interrupted] when ctx ends; the
@@ -77,11 +79,13 @@ func finished(stage string, done []bool, ctx context.Context) error {
 	return &Interrupted{Stage: stage, Done: count, Total: len(done), Cause: ctx.Err()}
 }
 
-// solveGroup solves for up to panelsTogether panels of right-hand sides and tells whether it came to the end.
+// solveGroup solves for up to panelsTogether panels of right-hand sides and tells whether it came to the end. Supernodes
+// that no entry other than zero leads to are passed over on the way up.
 func (f *Factor) solveGroup(ctx context.Context, block []float64, k int) bool {
 	s := f.symbolic
 	n := s.pattern.N
 	var panels [panelsTogether]*panel
+	var blocks [panelsTogether][]float64
 	count := (k + panelWidth - 1) / panelWidth
 	width := panelWidth
 	if k == 1 {
@@ -90,67 +94,147 @@ func (f *Factor) solveGroup(ctx context.Context, block []float64, k int) bool {
 	for c := range count {
 		p := s.panels.Get().(*panel)
 		defer s.panels.Put(p)
-		if len(p.x) < n*width {
-			p.x = make([]float64, n*width)
+		if need := s.schedule.total * width; len(p.x) < need {
+			p.x = make([]float64, need)
 		}
-		from, to := c*panelWidth, min(k, (c+1)*panelWidth)
-		s.load(p.x[:n*width], block[from*n:to*n], to-from, width)
-		panels[c] = p
+		panels[c], blocks[c] = p, block[c*panelWidth*n:min(k, (c+1)*panelWidth)*n]
+		s.mark(p, blocks[c])
+		s.loadShared(p, blocks[c], width)
 	}
-	total := len(s.nodes.rows)
-	for q := range total {
-		if q%pollSupernodes == 0 && ctx.Err() != nil {
+	polled := 0
+	stopped := func(r run) bool {
+		polled += int(r.last - r.first + 1)
+		if polled < pollSupernodes {
 			return false
 		}
-		for _, p := range panels[:count] {
-			f.forward(p, q, width)
-		}
+		polled = 0
+		return ctx.Err() != nil
 	}
-	for q := total - 1; q >= 0; q-- {
-		if q%pollSupernodes == 0 && ctx.Err() != nil {
+	for _, r := range s.schedule.runs {
+		if stopped(r) {
 			return false
 		}
-		for _, p := range panels[:count] {
-			f.backward(p, q, width)
+		for c, p := range panels[:count] {
+			f.forwardRun(p, blocks[c], r, width)
 		}
 	}
-	for c, p := range panels[:count] {
-		from, to := c*panelWidth, min(k, (c+1)*panelWidth)
-		s.unload(p.x[:n*width], block[from*n:to*n], to-from, width)
+	for k := len(s.schedule.runs) - 1; k >= 0; k-- {
+		r := s.schedule.runs[k]
+		if stopped(r) {
+			return false
+		}
+		for c, p := range panels[:count] {
+			f.backwardRun(p, blocks[c], r, width)
+		}
 	}
 	return true
 }
 
-// load copies k columns into rows of width in elimination order, zeros beyond the k-th.
-func (s *Symbolic) load(x, block []float64, k, width int) {
+// mark finds the supernodes on the paths from the entries of the block that are not zero to the roots.
+func (s *Symbolic) mark(p *panel, block []float64) {
+	clear(p.seen)
 	n := s.pattern.N
+	left := len(p.seen)
+	for from := 0; from < len(block); from += n {
+		for v, b := range block[from : from+n] {
+			if b == 0 {
+				continue
+			}
+			for q := s.nodes.of[s.position[v]]; q >= 0 && !p.seen[q]; q = s.nodes.parent[q] {
+				p.seen[q] = true
+				if left--; left == 0 {
+					return
+				}
+			}
+		}
+	}
+}
+
+// loadShared fills the rows that subtrees share, those that a path leads to.
+func (s *Symbolic) loadShared(p *panel, block []float64, width int) {
+	for _, r := range s.schedule.runs {
+		if !r.subtree && p.seen[r.last] {
+			s.load(p, block, r.last, width)
+		}
+	}
+}
+
+// forwardRun takes one run of supernodes on the way up. Rows of a separator stay in the panel from the first run below it to
+// the last; those of a subtree go back to the block.
+func (f *Factor) forwardRun(p *panel, block []float64, r run, width int) {
+	s := f.symbolic
+	if !p.seen[r.last] { // every path in a subtree passes through its root
+		return
+	}
+	if !r.subtree {
+		f.forward(p, &s.schedule.places, int(r.last), width)
+		return
+	}
+	for q := r.first; q <= r.last; q++ {
+		if p.seen[q] {
+			s.load(p, block, q, width)
+		}
+	}
+	for q := r.first; q <= r.last; q++ {
+		if p.seen[q] {
+			f.forward(p, &s.schedule.places, int(q), width)
+			s.unload(p, block, q, width)
+		}
+	}
+}
+
+func (f *Factor) backwardRun(p *panel, block []float64, r run, width int) {
+	s := f.symbolic
+	for q := r.last; q >= r.first; q-- {
+		switch {
+		case !p.seen[q]:
+			at := int(s.schedule.first[q]) * width
+			clear(p.x[at : at+int(s.nodes.first[q+1]-s.nodes.first[q])*width])
+		case r.subtree:
+			s.load(p, block, q, width)
+		}
+		f.backward(p, &s.schedule.places, int(q), width)
+		s.unload(p, block, q, width)
+	}
+}
+
+// load copies the rows of supernode q from the columns of the block, zeros beyond the last. The sum makes a zero of a
+// negative zero, so that it is the same as the zero of rows that no path leads to.
+func (s *Symbolic) load(p *panel, block []float64, q int32, width int) {
+	n := s.pattern.N
+	rows := s.order[s.nodes.first[q]:s.nodes.first[q+1]]
+	x := p.x[int(s.schedule.first[q])*width:]
 	if width == 1 {
-		for i, v := range s.order {
-			x[i] = block[v]
+		for i, v := range rows {
+			x[i] = block[v] + 0
 		}
 		return
 	}
-	for i, v := range s.order {
+	k := len(block) / n
+	for i, v := range rows {
 		row := (*[panelWidth]float64)(x[i*panelWidth:])
 		at := int(v)
 		for c := range k {
-			row[c] = block[at]
+			row[c] = block[at] + 0
 			at += n
 		}
 		clear(row[k:])
 	}
 }
 
-// unload copies the rows back into k columns.
-func (s *Symbolic) unload(x, block []float64, k, width int) {
+// unload copies the rows of supernode q back into the columns of the block.
+func (s *Symbolic) unload(p *panel, block []float64, q int32, width int) {
 	n := s.pattern.N
+	rows := s.order[s.nodes.first[q]:s.nodes.first[q+1]]
+	x := p.x[int(s.schedule.first[q])*width:]
 	if width == 1 {
-		for i, v := range s.order {
+		for i, v := range rows {
 			block[v] = x[i]
 		}
 		return
 	}
-	for i, v := range s.order {
+	k := len(block) / n
+	for i, v := range rows {
 		row := (*[panelWidth]float64)(x[i*panelWidth:])
 		at := int(v)
 		for c := range k {
@@ -162,11 +246,11 @@ func (s *Symbolic) unload(x, block []float64, k, width int) {
 
 // forward solves with the columns of supernode q and takes their products from the rows below. Every entry has its
 // products subtracted in the order of the columns.
-func (f *Factor) forward(p *panel, q, width int) {
+func (f *Factor) forward(p *panel, t *places, q, width int) {
 	s := f.symbolic
 	nc, nr := s.shape(q)
 	front := f.panels[s.panelPtr[q]:]
-	rows := p.gather(s, q, nc, nr, width)
+	rows := p.gather(s, t, q, nc, nr, width)
 	for j := 0; j < nc; j += 4 {
 		w := min(4, nc-j)
 		if width == 1 {
@@ -178,16 +262,16 @@ func (f *Factor) forward(p *panel, q, width int) {
 			forwardRows(rows[(j+w)*panelWidth:], front[j*nr+j+w:], nr, rows[j*panelWidth:], m, w)
 		}
 	}
-	p.scatter(s, q, nc, nr, width)
+	p.scatter(s, t, q, nc, nr, width)
 }
 
 // backward solves with the transposed columns of supernode q. Every entry has its products subtracted in the order of
 // the rows that follow its block of four columns, then of those in the block.
-func (f *Factor) backward(p *panel, q, width int) {
+func (f *Factor) backward(p *panel, t *places, q, width int) {
 	s := f.symbolic
 	nc, nr := s.shape(q)
 	front := f.panels[s.panelPtr[q]:]
-	rows := p.gather(s, q, nc, nr, width)
+	rows := p.gather(s, t, q, nc, nr, width)
 	for j := (nc - 1) &^ 3; j >= 0; j -= 4 {
 		w := min(4, nc-j)
 		if width == 1 {
@@ -199,16 +283,16 @@ func (f *Factor) backward(p *panel, q, width int) {
 		}
 		backwardTriangle(rows[j*panelWidth:], front[j*nr+j:], nr, w)
 	}
-	first := int(s.nodes.first[q])
+	first := int(t.first[q])
 	copy(p.x[first*width:(first+nc)*width], rows)
 }
 
 // gather copies the rows of supernode q side by side.
-func (p *panel) gather(s *Symbolic, q, nc, nr, width int) []float64 {
-	first := int(s.nodes.first[q])
+func (p *panel) gather(s *Symbolic, t *places, q, nc, nr, width int) []float64 {
+	first := int(t.first[q])
 	rows := p.rows
 	copy(rows, p.x[first*width:(first+nc)*width])
-	below := s.rowIndex[s.rowPtr[q]:s.rowPtr[q+1]]
+	below := t.rows[s.rowPtr[q]:s.rowPtr[q+1]]
 	if width == 1 {
 		out := rows[nc:nr]
 		for i, row := range below {
@@ -221,10 +305,10 @@ func (p *panel) gather(s *Symbolic, q, nc, nr, width int) []float64 {
 }
 
 // scatter puts the rows of supernode q back.
-func (p *panel) scatter(s *Symbolic, q, nc, nr, width int) {
-	first := int(s.nodes.first[q])
+func (p *panel) scatter(s *Symbolic, t *places, q, nc, nr, width int) {
+	first := int(t.first[q])
 	copy(p.x[first*width:(first+nc)*width], p.rows)
-	below := s.rowIndex[s.rowPtr[q]:s.rowPtr[q+1]]
+	below := t.rows[s.rowPtr[q]:s.rowPtr[q+1]]
 	if width == 1 {
 		in := p.rows[nc:nr]
 		for i, row := range below {

@@ -28,6 +28,8 @@ type Symbolic struct {
 	entry    []int32 // slots in Values
 	entryRow []int32 // rows within the supernode's panel
 	plan     plan
+	schedule schedule
+	inPlace  places // a panel with a place for every row, in elimination order
 	nonZeros int64
 	flops    float64
 	tallest  int        // rows of the largest supernode
@@ -73,6 +75,8 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 	}
 	s.mapEntries(g, order, position, workers)
 	s.plan = newPlan(s)
+	s.schedule = newSchedule(s)
+	s.inPlace = places{s.nodes.first, s.rowIndex}
 	s.spare = &sync.Pool{New: func() any { return &worker{} }}
 	s.panels = &sync.Pool{New: s.newPanel}
 	s.blank = &sync.Pool{New: s.newPanel}
@@ -237,14 +241,13 @@ func (s *Symbolic) PeakBytes() int64 {
 
 // SolveBytes returns the memory that Solve needs at once for k right-hand sides beside factor and block [bytes].
 func (s *Symbolic) SolveBytes(k int) int64 {
-	n, rows := int64(s.pattern.N), int64(s.tallest+3)*panelWidth
+	width, panels := panelWidth, min((k+panelWidth-1)/panelWidth, panelsTogether*workerCount(s.options.Workers))
 	if k <= 1 {
-		return 8 * int64(k) * (n + rows)
+		width = 1
 	}
-	panels := (k + panelWidth - 1) / panelWidth
-	bytes := 8 * int64(min(panels, panelsTogether*workerCount(s.options.Workers))) * (n*panelWidth + rows)
+	bytes := int64(panels) * int64(8*width*s.schedule.total+8*panelWidth*(s.tallest+3)+len(s.nodes.rows))
 	if s.options.Refine {
-		bytes += 16 * n * int64(k)
+		bytes += 16 * int64(s.pattern.N) * int64(k)
 	}
 	return bytes
 }
