@@ -2,6 +2,7 @@ package plan
 
 import (
 	"fmt"
+	"strconv"
 	"strings"
 
 	"springbound/wells"
@@ -63,7 +64,7 @@ func CheckDays(b Brief) error {
 		e.Found, e.Needed = "no days in "+list(without), true
 		return e
 	case !(sum >= leastDays && sum <= mostDays):
-		e.Found = plainNumber(sum, 2, 0, 4) + " days in all"
+		e.Found = strconv.FormatFloat(sum, 'f', -1, 64) + " days in all"
 		return e
 	}
 	return nil
