@@ -49,7 +49,7 @@ type Evidence struct {
 
 // EvidenceLine is one check.
 type EvidenceLine struct {
-	Number   string   `json:"number"`
+	Number   int      `json:"number"`
 	Check    string   `json:"check"`
 	How      string   `json:"how"`
 	Figure   *float64 `json:"figure"`  // null: nothing to measure
@@ -154,8 +154,11 @@ type EvidenceSetting struct {
 	Value string `json:"value"`
 }
 
-// Add appends a line with the next number of its group.
-func (e *Evidence) Add(l EvidenceLine) { e.Lines = append(e.Lines, l) }
+// Add appends a line with the next number.
+func (e *Evidence) Add(l EvidenceLine) {
+	l.Number = len(e.Lines) + 1
+	e.Lines = append(e.Lines, l)
+}
 
 // Conclude counts the results and writes the headline.
 func (e *Evidence) Conclude() {

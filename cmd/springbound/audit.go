@@ -121,7 +121,7 @@ func (a *audit) begin() {
 	set("edge length at wells, springs and receptors", fmt.Sprintf("%.4g m, growing by %.3g per distance to %.4g m", r.Mesh.FinestM, r.Mesh.Growth, r.Mesh.CoarsestM))
 	set("accuracy asked of the mesh", fmt.Sprintf("%.3g %%%s", 100*a.accuracy(), statedWords(p.Mesh.Accuracy > 0)))
 	if len(r.States) > 1 {
-		set("operating state", r.State+": the default one; checks 1 to 8 look at its rates, the plan holds for all states")
+		set("operating state", r.State+": the default one; checks of the model look at its rates, the plan holds for all states")
 	}
 	set("coordinates", r.Plane)
 	set("vertical datum", r.Datum)
@@ -191,7 +191,7 @@ func sentence(s string) string {
 
 // confinedLine takes over whether the head stays above the aquifer's top.
 func (a *audit) confinedLine(context.Context) error {
-	a.fromCheck(plan.EvidenceLine{Number: "8", Check: "Head above the top of the aquifer", How: "heads without pumping and at the plan, at every node and at the wells' faces, beside the stated top",
+	a.fromCheck(plan.EvidenceLine{Check: "Head above the top of the aquifer", How: "heads without pumping and at the plan, at every node and at the wells' faces, beside the stated top",
 		Reason: "a confined model does not hold where the head is below the top: transmissivity falls and drawdown is understated",
 		Remedy: "lower the rates near the place, state a limit there, or use a model that lets the aquifer drain"}, "Head above the top of the aquifer")
 	return nil
@@ -199,10 +199,10 @@ func (a *audit) confinedLine(context.Context) error {
 
 // optimum takes over the certificate of the plan and the checks of its rates.
 func (a *audit) optimum(context.Context) error {
-	a.fromCheck(plan.EvidenceLine{Number: "9", Check: "The plan is the best one", How: "limits, prices and gap recomputed from the programme's data by code that shares nothing with the solver (duality)",
+	a.fromCheck(plan.EvidenceLine{Check: "The plan is the best one", How: "limits, prices and gap recomputed from the programme's data by code that shares nothing with the solver (duality)",
 		Reason: "violations and gap of the size of rounding", Remedy: "do not use the plan; send the project files to the makers of the program"},
 		"Plan is the best one", "No rates keep every limit", "No choice of running wells", "The choice of running wells")
-	a.fromCheck(plan.EvidenceLine{Number: "9", Check: "Demand, least and largest rates, limits", How: "sums and rates of the plan beside demand, ranges, licences, levels and limits",
+	a.fromCheck(plan.EvidenceLine{Check: "Demand, least and largest rates, limits", How: "sums and rates of the plan beside demand, ranges, licences, levels and limits",
 		Reason: "to rounding", Remedy: "do not use the plan: read which one is passed, and by how much, in the plan's own checks"},
 		"Total meets the demand", "Rates are within", "Limits of receptors", "Licences and quotas", "Levels in wells")
 	return nil
@@ -210,7 +210,7 @@ func (a *audit) optimum(context.Context) error {
 
 // secondMethod has the plan's programme solved by another method.
 func (a *audit) secondMethod(ctx context.Context) error {
-	l := plan.EvidenceLine{Number: "10", Check: "The optimum by a second method", How: "the plan's programme solved by an interior-point method, which shares no step with the first one",
+	l := plan.EvidenceLine{Check: "The optimum by a second method", How: "the plan's programme solved by an interior-point method, which shares no step with the first one",
 		Unit: "share", Reason: "each answer is certified to a tenth of this; prices carry violations into the aim", Remedy: "do not use the plan; one of the two methods is wrong"}
 	if a.j.problem == nil {
 		l.Result, l.Sentence = plan.NotDone, "The plan left no programme to solve again."
@@ -232,7 +232,7 @@ func (a *audit) secondMethod(ctx context.Context) error {
 
 // files reads every input again and compares its hash with that of the file that the plan was made from.
 func (a *audit) files(ctx context.Context) error {
-	l := plan.EvidenceLine{Number: "11", Check: "Files are those that were read", How: "SHA-256 of every input file, taken again", Unit: "files that differ",
+	l := plan.EvidenceLine{Check: "Files are those that were read", How: "SHA-256 of every input file, taken again", Unit: "files that differ",
 		Reason: "a figure belongs to one set of files", Remedy: "run plan and audit again; keep a copy of the files with the report"}
 	differ := []string{}
 	for _, f := range a.e.Inputs {
@@ -255,7 +255,7 @@ func (a *audit) files(ctx context.Context) error {
 
 // handFormula takes over Thiem's formula at one well.
 func (a *audit) handFormula(context.Context) error {
-	l := plan.EvidenceLine{Number: "6", Check: "Hand formula at one well", How: "Thiem's difference of drawdown between two circles around a well in uniform ground, Q ln(r2/r1)/(2 pi T), beside the model's",
+	l := plan.EvidenceLine{Check: "Hand formula at one well", How: "Thiem's difference of drawdown between two circles around a well in uniform ground, Q ln(r2/r1)/(2 pi T), beside the model's",
 		Unit: "share", Reason: "exact in a uniform disc; the mesh and what lies beyond the disc leave up to this", Remedy: "look at transmissivity, zones and mesh around that well"}
 	h := a.report.HandFormula
 	if h == nil {

@@ -73,7 +73,7 @@ func (a *audit) boundaries(ctx context.Context) error {
 	sources := a.sources()
 	judged := 0
 	for k, s := range sources {
-		l := plan.EvidenceLine{Number: "7", Check: "Without " + string(s.kind) + " " + s.name, Unit: "growth of a limited receptor's change, share",
+		l := plan.EvidenceLine{Check: "Without " + string(s.kind) + " " + s.name, Unit: "growth of a change, share",
 			How:    "replaced by no flow: the plan's rates again, then planned anew",
 			Reason: fmt.Sprintf("a limited receptor's change may grow by %.0f %%, about what transmissivity and recharge leave open, and a limit may be passed by %.0f %% of its size", 100*decidesShare, 100*passedShare),
 			Remedy: "this boundary decides the result: check that the water is physically there, or set it farther away, or give it a bed resistance or an available flow"}
@@ -98,7 +98,7 @@ func (a *audit) boundaries(ctx context.Context) error {
 		}
 	}
 	if judged == 0 {
-		a.e.Add(plan.EvidenceLine{Number: "7", Check: "Boundaries replaced by no flow", How: "each prescribed head in turn", Result: plan.NotDone, Sentence: "There is no edge with a prescribed head."})
+		a.e.Add(plan.EvidenceLine{Check: "Boundaries replaced by no flow", How: "each prescribed head in turn", Result: plan.NotDone, Sentence: "There is no edge with a prescribed head."})
 	}
 	return nil
 }
@@ -152,6 +152,7 @@ func (a *audit) without(ctx context.Context, s source) (*plan.BoundaryLine, floa
 	if err := other.watch(ctx, m); err != nil {
 		return stopped(err)
 	}
+	other.field.Alter = a.j.field.Alter
 	report, err := other.evaluate(ctx, a.ratesByState())
 	if err != nil {
 		return stopped(err)
@@ -257,7 +258,7 @@ func (a *audit) compare(b *plan.BoundaryLine, report *plan.Report) float64 {
 		if old.Change != 0 {
 			c.Factor = finiteOrNil(now.Change / old.Change)
 		}
-		growth := math.Abs(now.Change) - math.Abs(old.Change)
+		grown := math.Abs(now.Change) - math.Abs(old.Change)
 		for k, l := range now.Limits {
 			if l.ResultState != "yes" {
 				continue
@@ -267,14 +268,11 @@ func (a *audit) compare(b *plan.BoundaryLine, report *plan.Report) float64 {
 				c.Passed = append(c.Passed, l.ID)
 				c.Decides = true
 			}
-			if growth > noticedShare*math.Abs(old.Limits[k].ChangeRoom) && growth > decidesShare*math.Abs(old.Change) {
-				c.Decides = true
+			if old.Change != 0 && grown > noticedShare*math.Abs(old.Limits[k].ChangeRoom) {
+				share := grown / math.Abs(old.Change)
+				largest = math.Max(largest, share)
+				c.Decides = c.Decides || !(share <= decidesShare)
 			}
-		}
-		if c.Limited && old.Change != 0 && c.Decides {
-			largest = math.Max(largest, growth/math.Abs(old.Change))
-		} else if c.Limited && growth > 0 && growth <= decidesShare*math.Abs(old.Change) {
-			largest = math.Max(largest, growth/math.Abs(old.Change))
 		}
 		b.Receptors = append(b.Receptors, c)
 	}
@@ -291,7 +289,7 @@ func passedWithout(with, without *plan.LimitResult) bool {
 
 // saltWater lists the stretches where water comes in through a prescribed head, and judges the saline ones.
 func (a *audit) saltWater(context.Context) error {
-	l := plan.EvidenceLine{Number: "7", Check: "Salt water drawn in", Unit: "m³/d", How: "flow into the aquifer through edges marked saline, without pumping and at the plan, found along the edge node by node",
+	l := plan.EvidenceLine{Check: "Salt water drawn in", Unit: "m³/d", How: "flow into the aquifer through edges marked saline, without pumping and at the plan, found along the edge node by node",
 		Reason: "no more than without pumping", Remedy: "lower the rates near the stretch named, or state a limit on the gradient there; a density study is another matter"}
 	saline, m := 0, a.j.field.Model
 	for _, e := range a.j.project.Site.Edges {

@@ -33,7 +33,7 @@ var differenceSteps = []float64{-1, -1e-2, -1e-4, 1e-4}
 
 // differences compares adjoint sensitivities with the change of a full solve after one well's rate is changed.
 func (a *audit) differences(ctx context.Context) error {
-	l := plan.EvidenceLine{Number: "3", Check: "Adjoint sensitivities against differences", Unit: "share of the receptor's largest sensitivity",
+	l := plan.EvidenceLine{Check: "Adjoint sensitivities against differences", Unit: "share of the receptor's largest sensitivity",
 		How:    "one full solve a well with its rate changed: the receptor's change divided by the step, beside the sensitivity of the adjoint solve",
 		Reason: "between switches a difference is exact, so that only the rounding of two full solves is left, the more the smaller the step", Remedy: "do not use sensitivities, contributions and prices"}
 	rows, chosen := a.quantities(), a.contributors()

@@ -71,10 +71,10 @@ func (a *audit) balance(context.Context) error {
 	if !(through > atRest) {
 		through = atRest // water at rest: nothing but rounding moves
 	}
-	l := plan.EvidenceLine{Number: "1", Check: "Water balance of every node and feature, recomputed", Unit: "share of the throughflow",
+	l := plan.EvidenceLine{Check: "Water balance of every node and feature, recomputed", Unit: "share of the throughflow",
 		How:    "flows between nodes from the gradient of head and each zone's transmissivity, control volumes, recharge, leakage, rivers, springs and edges from their records; nothing is taken from the solved matrix",
 		Reason: "rounding of a direct solve; a wrong or forgotten term shows powers of ten above it", Remedy: "do not use any result: a term of the model is wrong near the place named; send the project files to the makers of the program"}
-	l.Sentence = fmt.Sprintf("Of a throughflow of %.0f m³/d, the worst node keeps %.1e m³/d and the whole %.1e m³/d; %s; prescribed heads are within %.1e m of their records.", through, nodal, whole, worst, levels)
+	l.Sentence = fmt.Sprintf("Of a throughflow of %.0f m³/d, the worst node keeps %.1e m³/d and the whole %.1e m³/d; %s; prescribed heads are within %.2g m of their records.", through, nodal, whole, worst, levels)
 	if !(levels <= levelsApart) {
 		l.Result = plan.Fail
 	}
@@ -108,7 +108,7 @@ func (a *audit) reciprocity(ctx context.Context) error {
 			take(q.Nodes[0], x.Name)
 		}
 	}
-	l := plan.EvidenceLine{Number: "2", Check: "Reciprocity", Unit: "share", How: "drawdown at b by a unit rate at a beside that at a by a unit rate at b, for wells and receptors' points, one solve a point",
+	l := plan.EvidenceLine{Check: "Reciprocity", Unit: "share", How: "drawdown at b by a unit rate at a beside that at a by a unit rate at b, for wells and receptors' points, one solve a point",
 		Reason: "equal in any confined aquifer; rounding of two solves", Remedy: "do not use sensitivities: the matrix or the adjoint solves are wrong"}
 	if len(nodes) < 2 {
 		l.Result, l.Sentence = plan.NotDone, "There are fewer than two points."
@@ -154,7 +154,7 @@ func orNone(s string) string {
 
 // superposition compares, at the plan, the sum of the wells' contributions with the change of a full solve.
 func (a *audit) superposition(context.Context) error {
-	l := plan.EvidenceLine{Number: "4", Check: "Superposition at the plan", Unit: "share of the largest change", How: "every receptor's and bore's change as the sum of sensitivity x rate, beside the change of a full solve at the plan",
+	l := plan.EvidenceLine{Check: "Superposition at the plan", Unit: "share of the largest change", How: "every receptor's and bore's change as the sum of sensitivity x rate, beside the change of a full solve at the plan",
 		Reason: "equal where no feature switches; what rounding leaves on ill-conditioned sites", Remedy: "do not use contributions and prices: a sensitivity is wrong, or the model is not linear"}
 	if a.j.field.Switching {
 		l.Result, l.Sentence = plan.NotDone, "A feature switches, so that changes are no sum of the wells' parts; sensitivities are checked at the plan's state."

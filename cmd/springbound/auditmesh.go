@@ -26,7 +26,7 @@ const (
 
 // convergence computes the plan's figures on three meshes, each with half the edge length of the one before.
 func (a *audit) convergence(ctx context.Context) error {
-	l := plan.EvidenceLine{Number: "5", Check: "Mesh: grid convergence index of every receptor's change and every running well's level", Unit: "per cent",
+	l := plan.EvidenceLine{Check: "Mesh: grid convergence index of every receptor's change and every running well's level", Unit: "per cent",
 		How:    "the plan's rates on three meshes, edge length halved from one to the next: observed order, Richardson's value, index with a safety factor of 1.25, or 3 where no order shows (Roache 1994; ASME V&V 20)",
 		Reason: "the accuracy asked of the mesh, " + fmt.Sprintf("%.3g %%", 100*a.accuracy()) + statedWords(a.j.project.Mesh.Accuracy > 0) + "; per cent of the change, of a level per cent of the drawdown in the bore",
 		Remedy: "ask for more nodes or a smaller finest size in [mesh], and plan again"}

@@ -39,7 +39,7 @@ func checkTable(w io.Writer, e *plan.Evidence) {
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	fmt.Fprintln(t, "no.\tresult\tfound\tallowed\tcheck\tin words")
 	for _, l := range e.Lines {
-		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%s\t%s\n", l.Number, l.Result, figureText(l.Figure), figureText(l.Allowed), l.Check, l.Sentence)
+		fmt.Fprintf(t, "%d\t%s\t%s\t%s\t%s\t%s\n", l.Number, l.Result, figureText(l.Figure), figureText(l.Allowed), l.Check, l.Sentence)
 	}
 	t.Flush()
 }
@@ -50,7 +50,7 @@ func evidenceText(e *plan.Evidence) []byte {
 	head := strings.TrimSpace(strings.Join([]string{e.Title, e.Reference}, "  "))
 	fmt.Fprintf(&b, "The evidence\n%s\n%s\n\n%s\n%s\n", head, e.Program, e.Plan, e.Headline)
 	for _, l := range e.Lines {
-		fmt.Fprintf(&b, "\n%-4s%s: %s\n", l.Number, strings.ToUpper(l.Result), l.Check)
+		fmt.Fprintf(&b, "\n%-4d%s: %s\n", l.Number, strings.ToUpper(l.Result), l.Check)
 		for _, p := range [][2]string{{"how", l.How}, {"found", foundText(l)}, {"allowed", allowedText(l)}, {"in words", l.Sentence}, {"if it fails", l.Remedy}} {
 			if p[1] != "" {
 				folded(&b, p[0], p[1])

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"reflect"
+	"strconv"
 	"strings"
 
 	"github.com/xuri/excelize/v2"
@@ -43,8 +44,6 @@ func (b *book) fillEvidence(e *plan.Evidence) {
 	row := s.paragraph(underRow+2, evidenceEnd, e.Plan, wrapped)
 	row = s.paragraph(row, evidenceEnd, e.Headline, with(wrapped, func(l *look) { l.bold = true }))
 	row = s.evidenceLines(row+1, e)
-	row = s.evidenceSignature(row + 1)
-	s.page.rowBreaks = append(s.page.rowBreaks, row+1)
 	row = s.evidenceReasons(row+1, e)
 	for i := range e.Balances {
 		row = s.evidenceBalance(row+1, &e.Balances[i])
@@ -56,7 +55,8 @@ func (b *book) fillEvidence(e *plan.Evidence) {
 		row = s.evidenceBoundary(row+1, &e.Boundaries[i])
 	}
 	row = s.evidenceInward(row, e)
-	s.evidenceRecord(row+1, e)
+	row = s.evidenceRecord(row+1, e)
+	s.page.lastRow, s.page.lastColumn = s.evidenceSignature(row+1), evidenceEnd
 }
 
 // smallFigure is the size below which a figure is shown with a power of ten.
@@ -77,7 +77,7 @@ func (s *sheet) evidenceLines(row int, e *plan.Evidence) int {
 	first := row + 1
 	for _, l := range e.Lines {
 		row++
-		s.text(row, 1, l.Number, strong)
+		s.text(row, 1, strconv.Itoa(l.Number), strong)
 		s.text(row, checkColumn, l.Check, line)
 		s.text(row, 3, resultWords(l.Result), strong)
 		for k, x := range []*float64{l.Figure, l.Allowed} {
@@ -135,7 +135,7 @@ func (s *sheet) evidenceReasons(row int, e *plan.Evidence) int {
 	s.merge(row, 6, 8)
 	for _, l := range e.Lines {
 		row++
-		s.text(row, 1, l.Number, strong)
+		s.text(row, 1, strconv.Itoa(l.Number), strong)
 		s.text(row, checkColumn, l.Check, line)
 		s.across(row, 3, 5, l.How, line)
 		s.across(row, 6, 8, l.Reason, line)
@@ -195,23 +195,24 @@ func (s *sheet) evidenceDifferences(row int, e *plan.Evidence) int {
 		}
 		by[d.Receptor] = append(by[d.Receptor], i)
 	}
+	farthest := 0
+	for i := range e.Differences {
+		if share(e.Differences[i].Error) > share(e.Differences[farthest].Error) {
+			farthest = i
+		}
+	}
 	for _, r := range order {
-		largest, farthest := by[r][0], by[r][0]
+		largest := by[r][0]
 		for _, i := range by[r] {
 			if math.Abs(e.Differences[i].Adjoint) > math.Abs(e.Differences[largest].Adjoint) {
 				largest = i
 			}
-			if share(e.Differences[i].Error) > share(e.Differences[farthest].Error) {
-				farthest = i
-			}
 		}
 		row++
 		s.evidenceDifference(row, &e.Differences[largest], "largest sensitivity")
-		if farthest != largest {
-			row++
-			s.evidenceDifference(row, &e.Differences[farthest], "farthest from its difference")
-		}
 	}
+	row++
+	s.evidenceDifference(row, &e.Differences[farthest], "of all, the farthest from its difference")
 	return s.paragraph(row+1, evidenceEnd, fmt.Sprintf("audit.json holds all %d. The error is a share of the receptor's largest sensitivity.", len(e.Differences)), muted)
 }
 
@@ -359,7 +360,7 @@ func (s *sheet) evidenceInward(row int, e *plan.Evidence) int {
 }
 
 // evidenceRecord lists what the audit was run with.
-func (s *sheet) evidenceRecord(row int, e *plan.Evidence) {
+func (s *sheet) evidenceRecord(row int, e *plan.Evidence) int {
 	row = s.sectionHead(row, evidenceEnd, "Settings and files")
 	for _, x := range e.Settings {
 		s.across(row, 1, 2, x.Name, line)
@@ -374,5 +375,5 @@ func (s *sheet) evidenceRecord(row int, e *plan.Evidence) {
 		s.across(row, 1, 2, f.File, line)
 		s.across(row, 3, evidenceEnd, f.SHA256, with(line, func(l *look) { l.font = fontEven }))
 	}
-	s.page.lastRow, s.page.lastColumn = row, evidenceEnd
+	return row + 1
 }
