@@ -148,9 +148,9 @@ func (p *planner) switchingResult() *Switching {
 	if len(r.StandStill) > 0 {
 		who = list(r.StandStill) + plural(len(r.StandStill), " stands still.", " stand still.")
 	}
-	how := "No other choice of running wells is better by more than " + percentText(switchingGap) + " of the aim."
+	how := "No other choice of running wells is better by more than a ten-millionth of the aim."
 	if !r.Proven {
-		how = "The search was ended before it was sure: another choice of running wells may be better by up to " + percentText(r.Gap) + " of the aim."
+		how = "The search was ended before it was sure: another choice of running wells may be better by up to " + plainNumber(100*r.Gap, 2, 0, 6) + " % of the aim."
 	}
 	r.Sentence = strings.Join([]string{who, how, "Prices are those at this switching: they say nothing about starting or stopping a well."}, " ")
 	return r

@@ -184,6 +184,12 @@ func printPlan(w io.Writer, r *plan.Report, dir, name string) {
 			fmt.Fprintf(w, "%s, lowest level: Binds at %.2f m (%s).\n", x.ID, *x.LowestLevel, x.LowestReason)
 		}
 	}
+	if r.Switching != nil {
+		fmt.Fprintln(w, r.Switching.Sentence)
+	}
+	if text := r.Firm.Sentence(); text != "" {
+		fmt.Fprintln(w, text)
+	}
 	if r.Conflict != nil {
 		fmt.Fprintf(w, "\n%s\n", r.Conflict.Sentence)
 		for _, m := range r.Conflict.Members {

@@ -38,7 +38,28 @@ func (b *book) fillPlanFoot() {
 	if d := b.report.Demand; d != nil {
 		row = b.demandLine(row, *d)
 	}
+	row = b.runningLines(row)
 	b.fillQuotas(row + 1)
+}
+
+// runningLines say which wells stand still and how sure that is, and what the field gives with one well out of service.
+func (b *book) runningLines(row int) int {
+	p, s := &b.planRows, b.plan
+	firm := b.report.Firm.Sentence()
+	if firm != "" {
+		firm += " Every outage stands on Checks."
+	}
+	still := ""
+	if b.report.Switching != nil {
+		still = b.report.Switching.Sentence
+	}
+	for _, text := range []string{still, firm} {
+		if text != "" {
+			s.across(row, 1, p.volume, text, line)
+			row++
+		}
+	}
+	return row
 }
 
 func (b *book) anyRecharge() bool {
