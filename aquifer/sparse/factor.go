@@ -111,6 +111,7 @@ type numeric struct {
 	panels   []float64
 	values   []float64
 	updates  [][]float64 // task -> its update matrix until the parent takes it
+	recycled recycler
 	ctx      context.Context
 	crew     crew
 	broken   []atomic.Bool // task -> it or one below it failed or was stopped
@@ -223,7 +224,7 @@ func (r *numeric) supernode(w *worker, t, k int32) (int32, float64) {
 	}
 	var rest []float64
 	if k == p.last[t] {
-		rest = make([]float64, m*m)
+		rest = r.recycled.take(m * m)
 		r.updates[t] = rest
 	} else {
 		rest = w.stack[side][w.used[side] : w.used[side]+m*m]
@@ -263,6 +264,7 @@ func (r *numeric) gather(w *worker, t, k int32, front, rest []float64, side int)
 			continue
 		}
 		extendAdd(front, rest, nr, nc, r.updates[p.of[c]], up)
+		r.recycled.give(r.updates[p.of[c]])
 		r.updates[p.of[c]] = nil
 	}
 }

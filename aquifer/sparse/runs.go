@@ -5,7 +5,7 @@ package sparse
 const subtreeRows = 2048
 
 // places tells where the rows that supernodes touch stand in a panel: the first column of each, and each of its rows below in
-// the sequence of Symbolic.rowIndex.
+// the sequence of Symbolic.rowPtr.
 type places struct {
 	first []int32
 	rows  []int32
@@ -22,10 +22,12 @@ type run struct {
 type schedule struct {
 	places
 	runs  []run
-	total int // places
+	runOf []int32 // supernode -> run
+	total int     // places
 }
 
-func newSchedule(s *Symbolic) schedule {
+// newSchedule puts places in the stead of positions in rowIndex.
+func newSchedule(s *Symbolic, rowIndex []int32) schedule {
 	t := &s.nodes
 	count := len(t.rows)
 	lowest := make([]int32, count) // first supernode of the subtree
@@ -38,7 +40,7 @@ func newSchedule(s *Symbolic) schedule {
 		}
 	}
 	rowsUnder := func(k int32) int32 { return t.first[k+1] - t.first[lowest[k]] }
-	c := schedule{places: places{first: make([]int32, count), rows: make([]int32, len(s.rowIndex))}}
+	c := schedule{places: places{first: make([]int32, count), rows: rowIndex}, runOf: make([]int32, count)}
 	shared := int32(0)
 	for k := range int32(count) {
 		up := t.parent[k]
@@ -54,20 +56,21 @@ func newSchedule(s *Symbolic) schedule {
 	}
 	place := make([]int32, s.pattern.N) // of positions
 	next := shared
-	for _, r := range c.runs {
+	for number, r := range c.runs {
 		at := int32(0)
 		if !r.subtree {
 			at = next
 			next += t.first[r.last+1] - t.first[r.first]
 		}
 		for k := r.first; k <= r.last; k++ {
+			c.runOf[k] = int32(number)
 			c.first[k] = at + t.first[k] - t.first[r.first]
 		}
 		for i := t.first[r.first]; i < t.first[r.last+1]; i++ {
 			place[i] = at + i - t.first[r.first]
 		}
 	}
-	for q, i := range s.rowIndex {
+	for q, i := range rowIndex {
 		c.rows[q] = place[i]
 	}
 	c.total = int(next)

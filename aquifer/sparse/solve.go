@@ -21,6 +21,7 @@ type panel struct {
 	x    []float64 // places x width
 	rows []float64 // rows of a supernode x width, and three more rows that a kernel may touch
 	path []int32   // supernodes on the paths of sparse right-hand sides
+	kept []float64 // rows of subtrees for the way down, supernode by supernode
 	seen []bool    // supernode -> it is on the path of an entry that is not zero
 }
 

@@ -193,7 +193,7 @@ func TestRenumberingChangesNothingButRounding(t *testing.T) {
 
 func TestSelectedEqualsSolve(t *testing.T) {
 	for _, coordinates := range []bool{true, false} {
-		p := jitteredMesh(45, 38, 1000, 6)
+		p := jitteredMesh(95, 78, 1000, 6) // several subtrees
 		if !coordinates {
 			p.x, p.y = nil, nil
 		}

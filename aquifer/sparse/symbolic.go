@@ -21,7 +21,6 @@ type Symbolic struct {
 	position []int32 // row of the caller -> position
 	nodes    partition
 	rowPtr   []int   // supernode -> its rows below its columns
-	rowIndex []int32 // positions, ascending
 	rowUp    []int32 // place of each row in the rows of the parent, its columns included
 	panelPtr []int   // supernode -> its panel in Factor.values, rows x columns by columns
 	entryPtr []int32 // column -> its entries of the matrix
@@ -29,13 +28,11 @@ type Symbolic struct {
 	entryRow []int32 // rows within the supernode's panel
 	plan     plan
 	schedule schedule
-	inPlace  places // a panel with a place for every row, in elimination order
 	nonZeros int64
 	flops    float64
 	tallest  int        // rows of the largest supernode
 	spare    *sync.Pool // *worker
 	panels   *sync.Pool // *panel
-	blank    *sync.Pool // *panel, all zeros
 }
 
 // Analyse orders the matrix and finds the structure of its factor. x and y are coordinates of the rows, N each and finite, in
@@ -68,18 +65,17 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 	if err := stop(2); err != nil {
 		return nil, err
 	}
-	s.rowPtr, s.rowIndex = s.nodes.rowLists(g, order, position)
-	s.layout()
+	rowPtr, rowIndex := s.nodes.rowLists(g, order, position)
+	s.rowPtr = rowPtr
+	s.layout(rowIndex)
 	if err := stop(3); err != nil {
 		return nil, err
 	}
-	s.mapEntries(g, order, position, workers)
+	s.mapEntries(g, order, position, rowIndex, workers)
 	s.plan = newPlan(s)
-	s.schedule = newSchedule(s)
-	s.inPlace = places{s.nodes.first, s.rowIndex}
+	s.schedule = newSchedule(s, rowIndex)
 	s.spare = &sync.Pool{New: func() any { return &worker{} }}
 	s.panels = &sync.Pool{New: s.newPanel}
-	s.blank = &sync.Pool{New: s.newPanel}
 	return s, nil
 }
 
@@ -123,10 +119,10 @@ func compose(a, b []int32) []int32 {
 }
 
 // layout places the panels, counts the work and finds where each row of a supernode lies in its parent.
-func (s *Symbolic) layout() {
+func (s *Symbolic) layout(rowIndex []int32) {
 	t := &s.nodes
 	s.panelPtr = make([]int, len(t.rows)+1)
-	s.rowUp = make([]int32, len(s.rowIndex))
+	s.rowUp = make([]int32, len(rowIndex))
 	for k := range t.rows {
 		nc, nr := s.shape(k)
 		s.panelPtr[k+1] = s.panelPtr[k] + nr*nc
@@ -138,10 +134,10 @@ func (s *Symbolic) layout() {
 			continue
 		}
 		first, last := t.first[p], t.first[p+1]
-		below := s.rowIndex[s.rowPtr[p]:s.rowPtr[p+1]]
+		below := rowIndex[s.rowPtr[p]:s.rowPtr[p+1]]
 		b := 0
 		for q := s.rowPtr[k]; q < s.rowPtr[k+1]; q++ {
-			i := s.rowIndex[q]
+			i := rowIndex[q]
 			if i < last {
 				s.rowUp[q] = i - first
 				continue
@@ -167,7 +163,7 @@ func frontFlops(nr, nc int) float64 {
 }
 
 // mapEntries finds for every entry of the matrix its place in the panel of its supernode.
-func (s *Symbolic) mapEntries(g *graph, order, position []int32, workers int) {
+func (s *Symbolic) mapEntries(g *graph, order, position, rowIndex []int32, workers int) {
 	n := g.n
 	s.entryPtr = make([]int32, n+1)
 	s.entry = make([]int32, len(s.pattern.Index))
@@ -186,14 +182,14 @@ func (s *Symbolic) mapEntries(g *graph, order, position []int32, workers int) {
 	runFixed(workers, chunks, func(c int) {
 		place := make([]int32, n)
 		for k := total * c / chunks; k < total*(c+1)/chunks; k++ {
-			s.mapSupernode(g, k, order, position, place)
+			s.mapSupernode(g, k, order, position, rowIndex, place)
 		}
 	})
 }
 
-func (s *Symbolic) mapSupernode(g *graph, k int, order, position, place []int32) {
+func (s *Symbolic) mapSupernode(g *graph, k int, order, position, rowIndex, place []int32) {
 	first, last := s.nodes.first[k], s.nodes.first[k+1]
-	for q, i := range s.rowIndex[s.rowPtr[k]:s.rowPtr[k+1]] {
+	for q, i := range rowIndex[s.rowPtr[k]:s.rowPtr[k+1]] {
 		place[i] = int32(q) + last - first
 	}
 	for j := first; j < last; j++ {
