@@ -22,7 +22,7 @@ func runAudit(ctx context.Context, c solving, s streams) error {
 		return err
 	}
 	defer j.progress.clear()
-	e, err := j.evidence(ctx, c.Workers)
+	e, err := j.evidence(ctx, auditOptions{workers: c.Workers, mostNodes: mostRefinedNodes})
 	if err != nil {
 		return err
 	}
@@ -58,20 +58,26 @@ func runAudit(ctx context.Context, c solving, s streams) error {
 	return nil
 }
 
+// auditOptions steer an audit.
+type auditOptions struct {
+	workers   int // processors to use; 0: all
+	mostNodes int // of the finest mesh of the refinement study
+}
+
 // audit is the work on one plan's evidence.
 type audit struct {
-	j       *job
-	workers int
-	e       *plan.Evidence
-	report  *plan.Report
-	rates   []float64
-	state   *adjoint.State
-	rows    []plan.Row // at the plan, in the order of state.Rows
+	auditOptions
+	j      *job
+	e      *plan.Evidence
+	report *plan.Report
+	rates  []float64
+	state  *adjoint.State
+	rows   []plan.Row // at the plan, in the order of state.Rows
 }
 
 // evidence makes the plan and checks it and the model behind it, each by other means than those that it was made with.
-func (j *job) evidence(ctx context.Context, workers int) (*plan.Evidence, error) {
-	a := &audit{j: j, workers: workers}
+func (j *job) evidence(ctx context.Context, o auditOptions) (*plan.Evidence, error) {
+	a := &audit{auditOptions: o, j: j}
 	j.withoutFirm, j.keepProblem = true, true
 	var err error
 	if a.report, err = j.makePlan(ctx); err != nil {

@@ -59,7 +59,7 @@ func audited(t *testing.T, dir string, alter func(aquifer.Terms), slopes func(ro
 		}
 	}
 	j.field.Alter = slopes
-	e, err := j.evidence(ctx, 1)
+	e, err := j.evidence(ctx, auditOptions{workers: 1, mostNodes: mostRefinedNodes})
 	if err != nil {
 		t.Fatal(err)
 	}

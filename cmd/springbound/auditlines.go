@@ -68,9 +68,6 @@ func (a *audit) balance(context.Context) error {
 		}
 		a.e.Balances = append(a.e.Balances, e)
 	}
-	if !(through > atRest) {
-		through = atRest // water at rest: nothing but rounding moves
-	}
 	l := plan.EvidenceLine{Check: "Water balance of every node and feature, recomputed", Unit: "share of the throughflow",
 		How:    "flows between nodes from the gradient of head and each zone's transmissivity, control volumes, recharge, leakage, rivers, springs and edges from their records; nothing is taken from the solved matrix",
 		Reason: "rounding of a direct solve; a wrong or forgotten term shows powers of ten above it", Remedy: "do not use any result: a term of the model is wrong near the place named; send the project files to the makers of the program"}
@@ -78,7 +75,13 @@ func (a *audit) balance(context.Context) error {
 	if !(levels <= levelsApart) {
 		l.Result = plan.Fail
 	}
-	a.add(l, math.Max(nodal, math.Max(feature, whole))/through, balanceTolerance)
+	figure := math.Max(nodal, math.Max(feature, whole))
+	if !(through > atRest) {
+		l.Unit, l.Reason = "m³/d", "the water is at rest: nothing but rounding moves"
+		a.add(l, figure, atRest)
+		return nil
+	}
+	a.add(l, figure/through, balanceTolerance)
 	return nil
 }
 

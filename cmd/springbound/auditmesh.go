@@ -34,10 +34,6 @@ func (a *audit) convergence(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
-	if fields == nil {
-		a.e.Add(l)
-		return nil
-	}
 	a.e.Convergence = convergenceLines(fields, ofPlan)
 	worst, at, behaviour := 0.0, "none", map[string]int{}
 	var order []string
@@ -81,7 +77,7 @@ func (a *audit) meshes(ctx context.Context, l *plan.EvidenceLine) ([]*meshFigure
 	nodes := len(a.j.field.Model.Mesh.X)
 	here := a.figures(a.j.field, a.state)
 	mine := plan.EvidenceMesh{Nodes: nodes, How: "the plan's mesh", OfPlan: true, Finished: true}
-	if nodes*16 <= mostRefinedNodes {
+	if nodes*16 <= a.mostNodes {
 		a.e.Meshes = []plan.EvidenceMesh{mine}
 		all := []*meshFigures{here}
 		for times := 1; times <= 2; times++ {
@@ -99,7 +95,7 @@ func (a *audit) meshes(ctx context.Context, l *plan.EvidenceLine) ([]*meshFigure
 		}
 		return all, 0, nil
 	}
-	l.Sentence = fmt.Sprintf("Cutting every triangle twice would make about %d nodes, more than %d: not done; two coarser meshes stand in for it. ", nodes*16, mostRefinedNodes)
+	l.Sentence = fmt.Sprintf("Cutting every triangle twice would make about %d nodes, more than %d: not done; two coarser meshes stand in for it. ", nodes*16, a.mostNodes)
 	a.e.Meshes = []plan.EvidenceMesh{{}, {}, mine}
 	all := []*meshFigures{nil, nil, here}
 	o.Finest, o.Coarsest, o.Growth = a.j.field.Model.FinestSize, a.j.field.Model.Mesh.Quality.Coarsest, a.j.growth()

@@ -477,5 +477,5 @@ func (j *job) notDone(r *plan.Report) {
 		fmt.Sprintf("parameter uncertainty: not assessed (%d inputs state a range; only the best values are used)", ranged),
 		"discretisation error: not estimated for each number; the mesh is described on the checks sheet",
 		"what a confined, steady, single-layer model leaves out: change with time and season, storage, other layers, unconfined flow, water quality, density, subsidence")
-	notDone(r, "Boundaries replaced by no-flow, one at a time", "this version does not re-plan with changed boundaries")
+	notDone(r, "Boundaries replaced by no-flow, one at a time", "springbound audit does it")
 }
