@@ -72,6 +72,9 @@ func (e *engine) exchange(p, q int) {
 		entering = e.gather(q)
 	}
 	e.place[q] = Basic
+	if e.watching && q >= e.n {
+		e.watched[q-e.n] = true
+	}
 	e.fresh = false
 	e.age++
 	switch {

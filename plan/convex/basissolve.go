@@ -47,6 +47,7 @@ func (e *engine) release(rows, cols []int) {
 
 // computeValues solves for the basic values from those at their bounds.
 func (e *engine) computeValues() {
+	e.stale = false
 	for _, j := range e.jList {
 		e.x[j] = 0
 	}

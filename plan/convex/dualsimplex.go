@@ -78,6 +78,8 @@ func (e *engine) unshift() {
 // second result is the basic variable whose row is the proof. careful turns to smallest indices from the start.
 func (e *engine) dual(ctx context.Context, careful bool) (outcome, int, Status) {
 	e.exactWeights()
+	e.watch(careful)
+	defer e.unwatch()
 	stall, size, tabu := 0, perturbation, map[int]bool{}
 	smallest := careful
 	for {
@@ -90,6 +92,9 @@ func (e *engine) dual(ctx context.Context, careful bool) (outcome, int, Status) 
 		}
 		p, by := e.leaving(smallest, tabu)
 		if p < 0 {
+			if e.lookAtAll() {
+				continue
+			}
 			if len(tabu) > 0 {
 				return lostAccuracy, 0, 0
 			}
@@ -125,6 +130,7 @@ func (e *engine) dual(ctx context.Context, careful bool) (outcome, int, Status) 
 				size *= 10
 			} else {
 				smallest = true
+				e.unwatch()
 			}
 			stall = 0
 		}
@@ -153,7 +159,7 @@ func (e *engine) leaving(smallest bool, tabu map[int]bool) (p int, by float64) {
 		try(j)
 	}
 	for i := range e.posR {
-		if e.posR[i] < 0 {
+		if e.posR[i] < 0 && e.follows(i) {
 			try(e.n + i)
 		}
 	}
@@ -279,29 +285,6 @@ func (e *engine) passBounds() {
 	for i := range e.posR {
 		if e.posR[i] < 0 {
 			e.x[e.n+i] += by[i]
-		}
-	}
-}
-
-// addColumns adds delta[f] times column list[f] to dst; entries of list that are rows are passed over. It overwrites delta.
-func (e *engine) addColumns(dst []float64, list []int, delta []float64) {
-	for f, v := range list {
-		if v < e.m.dense {
-			delta[f] *= e.m.colScale[v]
-		}
-	}
-	for i := range dst {
-		row, sum := e.m.a[i], 0.0
-		for f, v := range list {
-			if v < len(row) {
-				sum += row[v] * delta[f]
-			}
-		}
-		dst[i] += sum * e.m.rowScale[i]
-	}
-	for f, v := range list {
-		if v >= e.m.dense && v < e.n {
-			dst[e.m.unitRow[v-e.m.dense]] += e.m.unitValue[v-e.m.dense] * delta[f]
 		}
 	}
 }

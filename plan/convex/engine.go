@@ -48,6 +48,10 @@ type engine struct {
 	passed []breakpoint
 	flips  []int
 
+	watching bool   // only the values of watched rows are kept right
+	watched  []bool // by row
+	stale    bool   // values of other rows are not right now
+
 	iterations, primalIterations int
 	limit                        int
 	proof                        []float64 // multipliers of the rows that prove noPoint

@@ -17,7 +17,7 @@ type Options struct {
 type Progress struct {
 	Stage      string  // "dual", "primal", "active set" or "interior"
 	Iterations int     // pivots so far
-	Infeasible float64 // sum of violations in the scaled problem [-]
+	Infeasible float64 // sum of the violations found so far in the scaled problem [-]
 }
 
 // Validate returns an error that names the field at fault.
