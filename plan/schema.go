@@ -2,6 +2,7 @@ package plan
 
 import (
 	"encoding/json"
+	"fmt"
 	"reflect"
 	"strings"
 )
@@ -110,18 +111,37 @@ var wordsOfKey = map[string][]string{
 	"ConflictMember.unit":  {"m", "m3/d", "1"},
 }
 
+// Document is a kind of JSON file with a published schema.
+type Document struct {
+	Name        string // "springbound/plan"
+	Version     int
+	Title       string
+	Description string
+	Units       map[string]string   // of keys that do not name theirs
+	Words       map[string][]string // of keys that hold one of a few words, by type and key
+}
+
+// planDocument is plan.json.
+var planDocument = Document{
+	Name: SchemaName, Version: SchemaVersion, Title: "Pumping plan", Words: wordsOfKey,
+	Description: "Metre and day. Pumping is positive out of the aquifer; a change is the value without pumping minus the value. null is not known or not stated, never zero.",
+}
+
 // Schema returns the JSON schema (draft 2020-12) of plan.json, made from the Report type: every key is required, no other is
 // allowed, and each number's description is its unit. The bytes are always the same.
-func Schema() []byte {
+func Schema() []byte { return planDocument.Schema(reflect.TypeFor[Report]()) }
+
+// Schema returns the JSON schema of a document that holds a value of the given type.
+func (d Document) Schema(t reflect.Type) []byte {
 	definitions := map[string]any{}
-	root := objectSchema(reflect.TypeFor[Report](), definitions)
+	root := d.object(t, definitions)
 	root["$schema"] = "https://json-schema.org/draft/2020-12/schema"
-	root["$id"] = "urn:springbound:plan:1"
-	root["title"] = "Pumping plan"
-	root["description"] = "Metre and day. Pumping is positive out of the aquifer; a change is the value without pumping minus the value. null is not known or not stated, never zero."
+	root["$id"] = fmt.Sprintf("urn:%s:%d", strings.ReplaceAll(d.Name, "/", ":"), d.Version)
+	root["title"] = d.Title
+	root["description"] = d.Description
 	properties := root["properties"].(map[string]any)
-	properties["schema"] = map[string]any{"const": SchemaName}
-	properties["version"] = map[string]any{"const": SchemaVersion}
+	properties["schema"] = map[string]any{"const": d.Name}
+	properties["version"] = map[string]any{"const": d.Version}
 	root["$defs"] = definitions
 	out, err := json.MarshalIndent(root, "", "  ")
 	if err != nil {
@@ -130,18 +150,26 @@ func Schema() []byte {
 	return append(out, '\n')
 }
 
-// objectSchema describes a struct.
-func objectSchema(t reflect.Type, definitions map[string]any) map[string]any {
+// UnitOf returns the unit of a number's key in the document; false when the key says none.
+func (d Document) UnitOf(key string) (unit string, known bool) {
+	if unit, known = d.Units[key]; known {
+		return unit, true
+	}
+	return UnitOf(key)
+}
+
+// object describes a struct.
+func (d Document) object(t reflect.Type, definitions map[string]any) map[string]any {
 	properties, required := map[string]any{}, []string{}
 	for i := 0; i < t.NumField(); i++ {
 		f := t.Field(i)
 		key := keyOf(f)
 		required = append(required, key)
-		property := typeSchema(f.Type, definitions)
-		if unit, known := UnitOf(key); known && holdsNumber(f.Type) {
+		property := d.typeSchema(f.Type, definitions)
+		if unit, known := d.UnitOf(key); known && holdsNumber(f.Type) {
 			property["description"] = unit
 		}
-		if words := wordsOfKey[t.Name()+"."+key]; words != nil {
+		if words := d.Words[t.Name()+"."+key]; words != nil {
 			property["enum"] = words
 		}
 		properties[key] = property
@@ -150,20 +178,20 @@ func objectSchema(t reflect.Type, definitions map[string]any) map[string]any {
 }
 
 // typeSchema describes a field's type; structs become references.
-func typeSchema(t reflect.Type, definitions map[string]any) map[string]any {
+func (d Document) typeSchema(t reflect.Type, definitions map[string]any) map[string]any {
 	switch t.Kind() {
 	case reflect.String:
 		return map[string]any{"type": "string"}
 	case reflect.Bool:
 		return map[string]any{"type": "boolean"}
-	case reflect.Int:
+	case reflect.Int, reflect.Int32:
 		return map[string]any{"type": "integer"}
 	case reflect.Float64:
 		return map[string]any{"type": "number"}
 	case reflect.Slice:
-		return map[string]any{"type": "array", "items": typeSchema(t.Elem(), definitions)}
+		return map[string]any{"type": "array", "items": d.typeSchema(t.Elem(), definitions)}
 	case reflect.Pointer:
-		inner := typeSchema(t.Elem(), definitions)
+		inner := d.typeSchema(t.Elem(), definitions)
 		if t.Elem().Kind() == reflect.Struct {
 			return map[string]any{"anyOf": []any{inner, map[string]any{"type": "null"}}}
 		}
@@ -172,7 +200,7 @@ func typeSchema(t reflect.Type, definitions map[string]any) map[string]any {
 	case reflect.Struct:
 		if _, known := definitions[t.Name()]; !known {
 			definitions[t.Name()] = nil
-			definitions[t.Name()] = objectSchema(t, definitions)
+			definitions[t.Name()] = d.object(t, definitions)
 		}
 		return map[string]any{"$ref": "#/$defs/" + t.Name()}
 	}

@@ -80,7 +80,7 @@ func limitName(l plan.SitingLimit) string {
 // describe fills the result but for the confirmation.
 func (w *where) describe() *whereResult {
 	j, m := w.job, w.job.field.Model
-	r := &whereResult{Schema: "springbound/where", Version: 1, Title: w.report.Title, Aim: w.report.Aim, TotalRate: w.report.TotalRate, Kept: w.ask.keep,
+	r := &whereResult{Schema: whereSchemaName, Version: whereSchemaVersion, Title: w.report.Title, Aim: w.report.Aim, TotalRate: w.report.TotalRate, Kept: w.ask.keep,
 		Rate: w.ask.rate, Spacing: w.ask.spacing, Radius: w.ask.radius, LowestLevel: w.ask.lowest, Factorisations: m.Factorisations, Solves: m.Solves(),
 		Limits: []whereLimit{}, Places: []wherePlace{}}
 	worth := 0
