@@ -33,7 +33,7 @@ while (k <= 25 && (k <= 3 || now()[1] - begin < 1) && !slow) {
 	s <- if (arguments[2] == "quadprog") solve.QP(factor, -cost, matrix, bound, factorized = TRUE)
 	     else solve.QP.compact(factor, -cost, matrix, index, bound, factorized = TRUE)
 	t2 <- now()
-	slow <- since(t0, t2) > 10 # one run must do
+	slow <- since(t0, t2) > 3 # one run must do
 	k <- k + 1
 	if (k == 1 && !slow) next # the first warms up
 	x <- s$solution
