@@ -45,7 +45,7 @@ func LeastRelaxation(ctx context.Context, p *Problem, relaxable []Relaxable) (*R
 	t := newSession(e.p)
 	t.e.startFromRows()
 	limit := Options{}.iterationLimit(e.p.Rows(), e.p.allColumns())
-	out := &Relaxation{Status: t.solve(ctx, limit), Rows: make([]RowRelaxation, len(relaxable))}
+	out := &Relaxation{Status: t.zoom(ctx, limit, t.solve(ctx, limit)), Rows: make([]RowRelaxation, len(relaxable))}
 	for r := range out.Rows {
 		out.Rows[r] = RowRelaxation{Row: relaxable[r].Row, Alone: math.NaN(), AloneAmount: math.NaN()}
 	}
@@ -63,14 +63,62 @@ func LeastRelaxation(ctx context.Context, p *Problem, relaxable []Relaxable) (*R
 		out.Total += u.Cost * by
 		e.amount(&out.Rows[e.owner[k]], k, by)
 	}
-	for r := range out.Rows {
-		status := e.alone(ctx, t, limit, r, &out.Rows[r])
-		if status != Optimal && status != Infeasible {
-			out.Status = status
-			break
-		}
+	if status := e.eachAlone(ctx, t, limit, out); status != Optimal {
+		out.Status = status
 	}
 	return out, nil
+}
+
+// eachAlone finds for each listed row how far it must give way when no other does. A proof that nothing is feasible stays one when a
+// row gives way that it does not use, so that every proof settles the rows outside it at once; only the rows in all proofs found so far
+// are solved for. The result is Optimal or what stopped it.
+func (e *elastic) eachAlone(ctx context.Context, t *session, limit int, out *Relaxation) Status {
+	if out.Total == 0 {
+		for r := range out.Rows {
+			out.Rows[r].Alone, out.Rows[r].AloneAmount = 0, 0
+		}
+		return Optimal
+	}
+	hopeless := make([]bool, len(out.Rows))
+	use := func(proof []float64) {
+		for r := range hopeless {
+			hopeless[r] = hopeless[r] || !e.usedBy(proof, r)
+		}
+	}
+	switch status := e.alone(ctx, t, limit, nobody, &RowRelaxation{}); status {
+	case Infeasible:
+		use(t.e.proof)
+	case Optimal: // by so little that it does not count alone
+	default:
+		return status
+	}
+	for r := range out.Rows {
+		if hopeless[r] {
+			out.Rows[r].Alone, out.Rows[r].AloneAmount = math.Inf(1), math.Inf(1)
+			continue
+		}
+		switch status := e.alone(ctx, t, limit, r, &out.Rows[r]); status {
+		case Infeasible:
+			use(t.e.proof)
+		case Optimal:
+		default:
+			return status
+		}
+	}
+	return Optimal
+}
+
+// nobody stands for no row.
+const nobody = -1
+
+// usedBy tells that a proof uses a side of row r of the list that may give way.
+func (e *elastic) usedBy(proof []float64, r int) bool {
+	for k, owner := range e.owner {
+		if y := proof[e.p.unitRow[k]]; owner == r && y*e.p.unitSign[k] < 0 {
+			return true
+		}
+	}
+	return false
 }
 
 func checkRelaxable(p *Problem, relaxable []Relaxable) error {
@@ -126,15 +174,21 @@ func (e *elastic) amount(r *RowRelaxation, k int, by float64) {
 
 // alone solves with the helper columns of one row only.
 func (e *elastic) alone(ctx context.Context, t *session, limit, r int, out *RowRelaxation) Status {
-	n := len(e.p.columns)
+	n, dearest := len(e.p.columns), 0.0
 	for k, owner := range e.owner {
 		upper := 0.0
 		if owner == r {
 			upper = math.Inf(1)
 		}
 		t.setColumn(n+k, 0, upper)
+		if owner == r {
+			dearest = math.Max(dearest, math.Abs(t.s.cost[n+k]))
+		}
 	}
-	status := t.solve(ctx, limit)
+	if dearest > 0 {
+		t.multiplyCost(powerOfTwo(1 / dearest))
+	}
+	status := t.zoom(ctx, limit, t.solve(ctx, limit))
 	switch status {
 	case Infeasible:
 		out.Alone, out.AloneAmount = math.Inf(1), math.Inf(1)

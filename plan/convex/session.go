@@ -1,6 +1,9 @@
 package convex
 
-import "context"
+import (
+	"context"
+	"math"
+)
 
 // session keeps a scaled problem and its engine, so that a series of solves with changed bounds or costs pays for the scaling once
 // and each starts where the last one ended.
@@ -46,3 +49,37 @@ func (t *session) solve(ctx context.Context, pivots int) Status {
 
 // value returns the value of column j.
 func (t *session) value(j int) float64 { return t.e.x[j] * t.s.col[j] }
+
+// smallShare is the scaled cost of the dearest column in use below which the costs are scaled anew: what is left of a price near
+// optimalityTolerance would be too few digits otherwise.
+const smallShare = 0x1p-10
+
+// zoomPasses bounds how often costs are scaled anew; two are the rule when any are needed.
+const zoomPasses = 6
+
+// zoom scales the costs by those of the columns in use and goes on from an optimum, as long as they are small, or large, beside the
+// largest of all: the dearest column may be one that nobody uses.
+func (t *session) zoom(ctx context.Context, pivots int, status Status) Status {
+	for pass := 0; pass < zoomPasses && status == Optimal; pass++ {
+		top := 0.0
+		for j, c := range t.s.cost {
+			if t.e.x[j] != 0 {
+				top = math.Max(top, math.Abs(c))
+			}
+		}
+		if !(top > 0) || (top >= smallShare && top <= 1/smallShare) {
+			return status
+		}
+		t.multiplyCost(powerOfTwo(1 / top))
+		status = t.solve(ctx, pivots)
+	}
+	return status
+}
+
+// multiplyCost changes the unit of the cost, by a power of two.
+func (t *session) multiplyCost(f float64) {
+	for j := range t.s.cost {
+		t.s.cost[j] *= f
+	}
+	t.s.costFactor *= f
+}

@@ -42,7 +42,8 @@ func solveLinear(ctx context.Context, p *Problem, s *scaled, o Options) *Solutio
 	t := newSessionOf(p, s)
 	t.e.progress = o.Progress
 	t.e.start(o.Start)
-	out := report(t, t.solve(ctx, o.iterationLimit(t.e.rows, t.e.n)))
+	limit := o.iterationLimit(t.e.rows, t.e.n)
+	out := report(t, t.zoom(ctx, limit, t.solve(ctx, limit)))
 	if out.Status == Infeasible && !Certify(p, out).Accepted {
 		out.Status, out.Ray = NumericalTrouble, nil
 	}
