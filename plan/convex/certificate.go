@@ -21,6 +21,13 @@ const (
 	CertifiedStray = 1e-3
 )
 
+// worthShare is the share of the worth of the dearest column to which the objective may cancel before its gap is rated by that share: a
+// column that is not in use says nothing about the objective, except by its rounding.
+const worthShare = 1e-3
+
+// priceRounding is the error that prices rounded to a float64 leave in a reduced cost, relative to its terms.
+const priceRounding = 0x1p-51
+
 // twofoldRounding is the relative rounding of a sum in twofold precision: 2^-106 per term, for a million terms.
 const twofoldRounding = 0x1p-86
 
@@ -213,7 +220,7 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 		terms[j] = math.Max(terms[j]+math.Abs(s.ReducedCost[j]), u.cost/u.col[j])
 		off := math.Abs(residual[j].value())
 		c.Stationarity = largest(c.Stationarity, share(off, terms[j]))
-		astray += off * math.Max(math.Abs(s.X[j]), u.natural(j, p.anyColumn(j)))
+		astray += math.Max(0, off-priceRounding*terms[j]) * math.Max(math.Abs(s.X[j]), u.natural(j, p.anyColumn(j)))
 	}
 	d := dualSum{}
 	for i, price := range s.RowPrice {
@@ -231,7 +238,7 @@ func (c *Certificate) checkDual(p *Problem, s *Solution, t primalTerms, u yardst
 		}
 	}
 	c.DualObjective = sign*d.sum.value() - t.quadratic
-	scale := math.Max(math.Max(t.objective, math.Abs(c.DualObjective)), u.worth)
+	scale := math.Max(math.Max(t.objective, math.Abs(c.DualObjective)), worthShare*u.worth)
 	c.Gap = share(math.Abs(c.PrimalObjective-c.DualObjective)+astray, scale)
 	c.Complementarity = share(d.slackness, scale)
 }

@@ -2,6 +2,7 @@ package convex
 
 import (
 	"context"
+	"math"
 	"math/rand/v2"
 	"testing"
 )
@@ -87,7 +88,9 @@ func checkRelaxation(t *testing.T, seed int, p *Problem, list []Relaxable) (agre
 	if s.Status == NumericalTrouble || !Certify(q, s).Accepted {
 		return false
 	}
-	if s.Status != Optimal || !near(s.Objective, r.Total, OpinionAgreement) {
+	// The certificate of the second method holds to a share of the dearest row's worth; the exact optimum above asks for more.
+	size := math.Max(r.Total, worthShare*measure(q).worth)
+	if s.Status != Optimal || !(math.Abs(s.Objective-r.Total) <= OpinionAgreement*size) {
 		t.Errorf("seed %d: total %.15g, by the second method %v %.15g", seed, r.Total, s.Status, s.Objective)
 	}
 	return true

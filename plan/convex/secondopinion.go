@@ -70,7 +70,7 @@ func SecondOpinion(ctx context.Context, p *Problem, s *Solution) Agreement {
 		return a
 	}
 	_, _, _, terms := p.slope(s.X)
-	terms = math.Max(terms, measure(p).worth)
+	terms = math.Max(terms, worthShare*measure(p).worth)
 	for j, x := range s.X {
 		terms += math.Abs(p.anyColumn(j).Cost * x)
 	}
