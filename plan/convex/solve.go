@@ -37,14 +37,19 @@ func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
 	return first, nil
 }
 
-// solveLinear solves a linear programme in the given scales. A proof of infeasibility that the data do not support is none.
+// solveLinear solves a linear programme in the given scales.
 func solveLinear(ctx context.Context, p *Problem, s *scaled, o Options) *Solution {
 	t := newSessionOf(p, s)
 	t.e.progress = o.Progress
 	t.e.start(o.Start)
+	return t.answer(ctx, o)
+}
+
+// answer solves and reports. A proof of infeasibility that the data do not support is none.
+func (t *session) answer(ctx context.Context, o Options) *Solution {
 	limit := o.iterationLimit(t.e.rows, t.e.n)
 	out := report(t, t.zoom(ctx, limit, t.solve(ctx, limit)))
-	if out.Status == Infeasible && !Certify(p, out).Accepted {
+	if out.Status == Infeasible && !Certify(t.p, out).Accepted {
 		out.Status, out.Ray = NumericalTrouble, nil
 	}
 	return out
