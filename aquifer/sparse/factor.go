@@ -50,6 +50,7 @@ func kernelReach(tallest int) int { return 3*tallest + 3 }
 // [Interrupted] when ctx ends. Of several bad rows the one eliminated first is named.
 func (s *Symbolic) Factor(ctx context.Context, values []float64) (*Factor, error) {
 	f := &Factor{symbolic: s, panels: make([]float64, s.panelPtr[len(s.panelPtr)-1]+kernelReach(s.tallest))}
+	preferHugePages(f.panels)
 	if err := f.Refactor(ctx, values); err != nil {
 		return nil, err
 	}
@@ -168,6 +169,7 @@ func (s *Symbolic) takeWorker() *worker {
 	for side := range w.stack {
 		if len(w.stack[side]) < s.plan.stack[side] {
 			w.stack[side] = make([]float64, s.plan.stack[side])
+			preferHugePages(w.stack[side])
 		}
 		w.used[side] = 0
 	}

@@ -30,7 +30,9 @@ func (r *recycler) take(n int) []float64 {
 	}
 	r.mutex.Unlock()
 	if best < 0 {
-		return make([]float64, n)
+		out = make([]float64, n)
+		preferHugePages(out)
+		return out
 	}
 	clear(out)
 	return out
