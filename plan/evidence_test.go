@@ -62,7 +62,7 @@ func TestEvidenceIsCountedAndWritten(t *testing.T) {
 	}
 }
 
-// The second method agrees on a programme of known optimum, and stands back from whole numbers.
+// The second method agrees on a programme of known optimum, and says where it stands back.
 func TestSecondOpinionOnAProgramme(t *testing.T) {
 	problem, err := convex.NewProblem(convex.Minimise, []convex.Column{{Name: "x", Cost: -1, Upper: 4}, {Name: "y", Cost: -2, Upper: 3}})
 	if err != nil {
@@ -77,6 +77,14 @@ func TestSecondOpinionOnAProgramme(t *testing.T) {
 		t.Errorf("%v %+v", err, o)
 	}
 	f.Model.Integer = []int{0}
+	if o, err = f.SecondOpinion(context.Background()); err != nil || o.Result != Pass || !strings.Contains(o.Sentence, "choice of running wells") || o.Aim != -8 {
+		t.Errorf("%v %+v", err, o)
+	}
+	curved := problem.Clone()
+	if err := curved.SetHessian(convex.Hessian{Entries: []convex.HessianEntry{{Row: 0, Column: 0, Value: 1}}}); err != nil {
+		t.Fatal(err)
+	}
+	f.Model.Problem = curved
 	if o, err = f.SecondOpinion(context.Background()); err != nil || o.Result != NotDone {
 		t.Errorf("%v %+v", err, o)
 	}

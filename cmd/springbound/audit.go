@@ -5,6 +5,7 @@ import (
 	"crypto/sha256"
 	"encoding/hex"
 	"fmt"
+	"math"
 	"os"
 	"path/filepath"
 	"strings"
@@ -214,6 +215,9 @@ func (a *audit) optimum(context.Context) error {
 	return nil
 }
 
+// sameTotal is the difference of two optimal totals that counts as none, relative: ten times the gap at which a search for running wells ends.
+const sameTotal = 1e-6
+
 // secondMethod has the plan's programme solved by another method.
 func (a *audit) secondMethod(ctx context.Context) error {
 	l := plan.EvidenceLine{Check: "The optimum by a second method", How: "the plan's programme solved by an interior-point method, which shares no step with the first one",
@@ -231,6 +235,12 @@ func (a *audit) secondMethod(ctx context.Context) error {
 	if o.Result == plan.NotDone {
 		a.e.Add(l)
 		return nil
+	}
+	if r := a.report; r.Aim == string(plan.MostYield) && r.Status == plan.StatusOptimal && len(r.States) < 2 {
+		l.Sentence += fmt.Sprintf(" The optimum is %.2f m³/d, the plan's total %.2f.", -o.Aim, r.TotalRate)
+		if !(math.Abs(o.Aim+r.TotalRate) <= sameTotal*math.Max(1, r.TotalRate)) {
+			l.Result = plan.Fail
+		}
 	}
 	a.add(l, o.Difference, o.Allowed)
 	return nil
