@@ -49,7 +49,7 @@ type Report struct {
 	Switching     *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
 	Firm          *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
 	States        []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
-	YearQuotas    []QuotaResult    `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
+	YearQuotas    []YearQuota      `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
 	Conflict      *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
 	Audit         Audit            `json:"audit"`
 	Checks        []Check          `json:"checks"`

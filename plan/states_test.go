@@ -162,11 +162,11 @@ func TestStatesAgainstEveryCorner(t *testing.T) {
 			got += days[k] / 365.25 * (rateIn(t, r, state, "A") + rateIn(t, r, state, "B"))
 		}
 		exact(t, fmt.Sprintf("trial %d: yearly mean", trial), got, bestVertex(weight, rows))
-		if len(r.YearQuotas) != 1 || len(r.Quotas) != 1 || !(r.YearQuotas[0].Sum <= r.YearQuotas[0].Limit*(1+rounding)) {
+		if len(r.YearQuotas) != 1 || len(r.Quotas) != 1 || !(r.YearQuotas[0].Quota.Sum <= r.YearQuotas[0].Quota.Limit*(1+rounding)) {
 			t.Fatalf("quotas %+v and %+v", r.Quotas, r.YearQuotas)
 		}
-		exact(t, "yearly sum", r.YearQuotas[0].Sum, got)
-		if r.YearQuotas[0].Binds {
+		exact(t, "yearly sum", r.YearQuotas[0].Quota.Sum, got)
+		if r.YearQuotas[0].Quota.Binds {
 			shared++
 		}
 	}
@@ -188,7 +188,7 @@ func TestDemandInPeakYearInAverage(t *testing.T) {
 	exact(t, "peak", rateIn(t, r, "peak", "A"), 900)
 	exact(t, "average", rateIn(t, r, "average", "A"), (year-40*900)/325.25)
 	exact(t, "main total", r.TotalRate, (year-40*900)/325.25)
-	if !r.YearQuotas[0].Binds || r.Demand != nil || *r.States[1].Demand != 900 {
+	if !r.YearQuotas[0].Quota.Binds || r.Demand != nil || *r.States[1].Demand != 900 {
 		t.Errorf("%+v, demand %v", r.YearQuotas[0], r.Demand)
 	}
 	if got := r.Wells[0].Request.Sentence; !strings.Contains(got, "pumped by field at most 100 000 m³ per year takes") {
@@ -328,7 +328,7 @@ func TestStatePricesByPlanningAnew(t *testing.T) {
 		edit  func()
 	}{
 		{"daily quota in both states", r.States[0].Quotas[0].ShadowPrice + r.States[1].Quotas[0].ShadowPrice, 1, func() { day++ }},
-		{"yearly quota", r.YearQuotas[0].ShadowPrice / 365.25, 10, func() { year += 10 }},
+		{"yearly quota", r.YearQuotas[0].Quota.ShadowPrice / 365.25, 10, func() { year += 10 }},
 		{"limit in both states", limitIn(t, r, "average", "L").ShadowPrice + limitIn(t, r, "peak", "L").ShadowPrice, 1e-3, func() { s.brief.Limits[0].Value += 1e-3 }},
 	} {
 		day, s = 700, make()
@@ -353,7 +353,7 @@ func TestMonthsOfUse(t *testing.T) {
 	exact(t, "B, average: the stricter of two licences", rateIn(t, r, "average", "B"), 50)
 	exact(t, "C, average", rateIn(t, r, "average", "C"), 100)
 	exact(t, "A and B, peak: the summer licence's year", rateIn(t, r, "peak", "A")+rateIn(t, r, "peak", "B"), year/150)
-	if r.Wells[0].Mode != "off" || len(r.YearQuotas) != 1 || !r.YearQuotas[0].Binds || len(r.YearQuotas[0].Wells) != 2 {
+	if r.Wells[0].Mode != "off" || len(r.YearQuotas) != 1 || !r.YearQuotas[0].Quota.Binds || len(r.YearQuotas[0].Quota.Wells) != 2 {
 		t.Errorf("A is %s; %+v", r.Wells[0].Mode, r.YearQuotas)
 	}
 	said := strings.Join(append(append([]string(nil), r.Findings...), r.NotAssessed...), "\n")
@@ -439,7 +439,7 @@ func TestEvaluateStates(t *testing.T) {
 	}
 	exact(t, "value", limitIn(t, r, "average", "L").Value, 0.6)
 	exact(t, "peak", limitIn(t, r, "peak", "L").Value, 0.18)
-	exact(t, "year", r.YearQuotas[0].Sum, (300*600+65*300)/365.25)
+	exact(t, "year", r.YearQuotas[0].Quota.Sum, (300*600+65*300)/365.25)
 	if !limitOf(t, r, "L").Passed || limitIn(t, r, "peak", "L").Passed || r.Status != StatusGivenRates || !strings.Contains(r.Headline, "average 600 m³/d, peak 300 m³/d") {
 		t.Errorf("%q", r.Headline)
 	}

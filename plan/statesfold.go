@@ -3,6 +3,7 @@ package plan
 import (
 	"math"
 	"reflect"
+	"strings"
 )
 
 // fold turns the report of an expanded brief into one whose main sections are those of the default state, with a section for each state.
@@ -20,14 +21,19 @@ func (e *expansion) fold(in *Report) *Report {
 	out.Wells, out.Receptors, out.Sensitivities, out.Contributions, out.Quotas = main.Wells, main.Receptors, main.Sensitivities, main.Contributions, main.Quotas
 	out.TotalRate, out.Demand, out.DemandPrice, out.DemandRange = st.Total, st.Demand, st.DemandPrice, st.DemandRange
 	out.PumpingEnergy, out.Requests = st.PumpingEnergy, e.requests(main)
-	out.YearQuotas = []QuotaResult{}
+	out.YearQuotas = []YearQuota{}
 	for _, q := range in.Quotas {
 		if len(marksIn(q.Name)) > 0 {
 			continue
 		}
-		q.Wells = append([]string(nil), unmarkedNames(q.Wells)...)
+		y := YearQuota{States: []string{}}
+		for _, k := range marksIn(strings.Join(q.Wells, "")) {
+			y.States = append(y.States, e.parts[k].name)
+		}
+		q.Wells = append([]string{}, unmarkedNames(q.Wells)...)
 		q.Range = e.rangeWords(q.Range, -1)
-		out.YearQuotas = append(out.YearQuotas, q)
+		y.Quota = q
+		out.YearQuotas = append(out.YearQuotas, y)
 	}
 	out.Headline = e.headline(in, &out)
 	out.WorstLimit = e.words(in.WorstLimit, -1)

@@ -24,6 +24,12 @@ type StateResult struct {
 	Quotas        []QuotaResult    `json:"quotas"` // per hour and per day; yearly ones stand once for all states
 }
 
+// YearQuota is a yearly quota over several operating states: sums are of days times rates, as a mean rate over the year.
+type YearQuota struct {
+	States []string    `json:"states"` // that it counts
+	Quota  QuotaResult `json:"quota"`
+}
+
 // StateWell is a well's line in one operating state.
 type StateWell struct {
 	ID               string   `json:"id"`

@@ -29,8 +29,8 @@ func printStates(w io.Writer, r *plan.Report) {
 		}
 		fmt.Fprintln(w, text+".")
 	}
-	for _, q := range r.YearQuotas {
-		binds := ""
+	for _, y := range r.YearQuotas {
+		q, binds := y.Quota, ""
 		if q.Binds {
 			binds = "; binds"
 		}

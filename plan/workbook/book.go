@@ -22,15 +22,17 @@ type book struct {
 	names    nameTable
 
 	readMe, plan, receptors, contributions, sensitivities, capture, inputs, checks *sheet
+	states                                                                         *sheet // nil where there is one operating state
 
 	evidence *sheet // the only sheet of an audit's workbook; nil in a plan's
 
-	planRows planLayout
-	sens     sensLayout
-	quotas   []quotaLine
-	limits   []limitLine
-	watched  []receptorLine
-	agrees   []agreement
+	planRows  planLayout
+	stateRows statesLayout
+	sens      sensLayout
+	quotas    []quotaLine
+	limits    []limitLine
+	watched   []receptorLine
+	agrees    []agreement
 
 	inputWells int      // row of the first well on Inputs and assumptions
 	fixedParts []string // limits with a part that does not follow the rates
@@ -65,7 +67,11 @@ func (b *book) sheets() []*sheet {
 	if b.evidence != nil {
 		return []*sheet{b.evidence}
 	}
-	return []*sheet{b.readMe, b.plan, b.receptors, b.contributions, b.sensitivities, b.capture, b.inputs, b.checks}
+	all := []*sheet{b.readMe, b.plan, b.receptors}
+	if b.states != nil {
+		all = append(all, b.states)
+	}
+	return append(all, b.contributions, b.sensitivities, b.capture, b.inputs, b.checks)
 }
 
 // fill builds the sheets, those first that others refer to.
@@ -80,6 +86,7 @@ func (b *book) fill() {
 	b.fillReceptors()
 	b.fillLevels()
 	b.fillPlanFoot()
+	b.fillStates()
 	b.fillContributions()
 	b.fillCapture()
 	b.fillChecks()

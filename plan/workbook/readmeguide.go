@@ -26,12 +26,16 @@ func (b *book) guidePart(row int) int {
 	for _, l := range [][2]string{
 		{"Plan", "each well: planned rate, rate to edit, bounds and prices; on the right the levels in the wells; below the totals and licences"},
 		{"Receptors", "each receptor with no pumping, with others, at the plan and now; each limit with headroom, state, price and source"},
+		{statesName, "rates, demands, quotas and limits of each operating state; the other sheets show the default one"},
 		{"Contributions", "each well's part of each receptor's change"},
 		{"Sensitivities", "the numbers that every live figure comes from"},
 		{"Capture", "where the pumped water comes from"},
 		{"Inputs and assumptions", "what was put in, measured or assumed, with sources and file hashes"},
 		{"Checks", "what was checked, what failed and what was not done; one calculation by hand"},
 	} {
+		if l[0] == statesName && b.states == nil {
+			continue
+		}
 		row++
 		s.text(row, 1, l[0], strong)
 		s.across(row, 2, readEnd, b.says(l[1]), line)

@@ -17,6 +17,7 @@ func (b *book) fillReadMe() {
 	row := b.resultPart(firstRow)
 	row = b.conflictPart(row)
 	row = b.bindingPart(row + 1)
+	row = b.statesPart(row)
 	row = b.energyPart(row)
 	row = b.requestPart(row)
 	row = b.waterPart(row + 1)
@@ -35,6 +36,9 @@ func (b *book) fillReadMe() {
 const headlineWords = "Largest total rate that keeps the limits entered"
 
 func (b *book) headline() string {
+	if len(b.report.States) > 0 && !b.noPlan() {
+		return "Total rate in the operating state " + b.report.State
+	}
 	switch {
 	case b.report.Conflict != nil || b.report.Status == plan.StatusInfeasible:
 		return "No plan keeps all the limits entered"
