@@ -71,6 +71,9 @@ func (p *planner) solve(ctx context.Context, g *programme, basis *convex.Basis) 
 	for k, i := range s.decided {
 		x[k] = math.Max(s.Wells[i].Min, math.Min(s.Wells[i].Max, start[i]))
 	}
+	if p.near != nil {
+		copy(x, p.near)
+	}
 	for round := 1; ; round++ {
 		problem, err := p.curvedProblem(base, x)
 		if err != nil {

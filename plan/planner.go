@@ -37,6 +37,7 @@ type planner struct {
 	runs         []bool    // of each well: it runs; nil: there is nothing to choose, or it is not chosen yet
 	lastRates    []float64 // of the last round, where a search may begin
 	search       search
+	near         []float64     // by column: rates near which a curved aim is expected to be least; nil: not known
 	firm         *FirmCapacity // nil when it was not asked for
 	problem      *ProblemFile  // the last programme; nil when it was not asked for
 	keepProblem  bool

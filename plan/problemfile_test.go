@@ -205,3 +205,56 @@ func TestProblemFileWithAnOutsideSolver(t *testing.T) {
 		}
 	}
 }
+
+// With least rates and a curved aim the file is a mixed quadratic programme: the plan keeps its rows, and its aim is the plan's.
+func TestProblemFileOfAMixedCurvedAim(t *testing.T) {
+	s := canalEnergy(800, 0.65)
+	for i := range s.brief.Wells {
+		s.brief.Wells[i].Min = 250
+	}
+	two := 2
+	s.brief.AtMostRunning = &two
+	r, f := drafted(t, s)
+	var b bytes.Buffer
+	if err := f.Write(&b); err != nil {
+		t.Fatal(err)
+	}
+	m, err := convex.ReadMPS(bytes.NewReader(b.Bytes()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	p := m.Problem
+	if len(m.Integer) != 3 || !p.Quadratic() || len(r.Switching.StandStill) == 0 {
+		t.Fatalf("%d whole columns, quadratic %v, %+v", len(m.Integer), p.Quadratic(), r.Switching)
+	}
+	x := make([]float64, p.Columns())
+	for i, w := range r.Wells {
+		if x[i] = w.Rate; w.Rate > 0 {
+			x[m.Integer[i]] = 1
+		}
+	}
+	value := m.Constant
+	for j, v := range x {
+		c := p.Column(j)
+		value += c.Cost * v
+		if !(v >= c.Lower-1e-6 && v <= c.Upper+1e-6) { // rates of hundreds, solved to 1e-9 of themselves
+			t.Errorf("column %s at %v outside %v to %v", c.Name, v, c.Lower, c.Upper)
+		}
+	}
+	for _, e := range p.HessianEntries() {
+		part := e.Value * x[e.Row] * x[e.Column]
+		if e.Row == e.Column {
+			part /= 2
+		}
+		value += part
+	}
+	for i := 0; i < p.Rows(); i++ {
+		row := p.Row(i)
+		if v := dot(row.Coefficients, x); !(v >= row.Lower-1e-6 && v <= row.Upper+1e-6) {
+			t.Errorf("row %s: %v outside %v to %v", row.Name, v, row.Lower, row.Upper)
+		}
+	}
+	if want := r.PumpingEnergy.Energy; !(math.Abs(value-want) <= sameOptimum*want) {
+		t.Errorf("%.12g in the file, %.12g in the plan", value, want)
+	}
+}

@@ -151,7 +151,9 @@ func (p *planner) searchRunning(ctx context.Context, t *runTree) error {
 			return err
 		}
 	}
-	for count := 0; len(t.open) > 0 && t.solved < switchingNodes; count++ {
+	// a later round with further tangents begins with the choice of the last one and has less to look for
+	most := max(switchingNodes-p.search.nodes, switchingNodes/4)
+	for count := 0; len(t.open) > 0 && t.solved < most; count++ {
 		n := heap.Pop(&t.open).(*runNode)
 		if t.beaten(n) {
 			t.closed = append(t.closed, n)
@@ -195,10 +197,11 @@ func (p *planner) branch(ctx context.Context, t *runTree, n *runNode, d decision
 	if n != nil {
 		c.path = append(append([]decision(nil), n.path...), d)
 		copy(c.states, n.states)
-		c.bound, c.basis = n.bound, n.basis
+		c.bound, c.basis, c.x = n.bound, n.basis, n.x
 		c.states[d.well] = d.to
 	}
 	if !p.propagate(c.states) {
+		c.x = nil
 		return c, nil
 	}
 	return c, p.solveNode(ctx, t, c)
@@ -212,8 +215,9 @@ func (p *planner) solveNode(ctx context.Context, t *runTree, n *runNode) error {
 	}
 	kept := p.aimValue
 	g := &programme{problem: problem, share: -1}
+	p.near = n.x
 	sol, err := p.solve(ctx, g, n.basis)
-	p.aimValue = kept
+	p.aimValue, p.near, n.x = kept, nil, nil
 	t.solved++
 	switch {
 	case ctx.Err() != nil:
@@ -290,7 +294,7 @@ func (p *planner) withinRange(i int, x float64) bool {
 
 // offer tries a whole choice of running wells as a plan.
 func (p *planner) offer(ctx context.Context, t *runTree, from *runNode, states []choice) error {
-	n := &runNode{states: append([]choice(nil), states...), basis: from.basis, bound: math.Inf(-1)}
+	n := &runNode{states: append([]choice(nil), states...), basis: from.basis, x: from.x, bound: math.Inf(-1)}
 	for _, i := range p.setup.decided {
 		if n.states[i] == openChoice {
 			n.states[i] = runsChoice
