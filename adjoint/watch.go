@@ -46,6 +46,7 @@ type watched struct {
 	worst      []int32 // nodes to search for the worst place; nil: the functional is fixed
 	river      int     // 1 + river whose flow takes another form where it loses contact; 0 none
 	reach      orb.LineString
+	headEdge   int  // 1 + prescribed-head edge whose flow it is; 0 none
 	local      bool // the change is not convex in the rates where features switch
 }
 
@@ -172,9 +173,12 @@ func (f *Field) gradient(r wells.Receptor, a, b int32) (aquifer.Quantity, error)
 
 func (f *Field) flow(x *watched, r wells.Receptor) error {
 	kind := map[wells.Kind]aquifer.FeatureKind{wells.SpringFlow: aquifer.SpringFeature, wells.RiverReach: aquifer.RiverFeature, wells.EdgeFlow: aquifer.EdgeFeature}[r.Kind]
-	for _, o := range f.outlets {
+	for i, o := range f.outlets {
 		if o.Kind != kind || o.Name != r.Feature {
 			continue
+		}
+		if i < len(f.Model.HeadEdges) {
+			x.headEdge = i + 1
 		}
 		if r.Kind == wells.RiverReach {
 			x.river, x.reach, x.local = o.Index+1, r.Reach, true

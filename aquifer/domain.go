@@ -13,9 +13,10 @@ type domainPlan struct {
 	domain     mesh.Domain
 	outline    *outlineRings
 	stretches  []stretch
-	riverLine  []int // per river: its entry in domain.Lines
-	springAt   []int // per spring: its entry in domain.Points
-	requestAt  []int // per node request: its entry in domain.Points
+	riverLine  []int     // per river: its entry in domain.Lines
+	springAt   []int     // per spring: its entry in domain.Points
+	requestAt  []int     // per node request: its entry in domain.Points
+	floor      []float64 // per place: no finer edge length is allowed there [m]
 	finest     float64
 	growth     float64
 	nodes      int
@@ -156,6 +157,7 @@ func (d *domainPlan) setSizes(s *Site, o Options) {
 		k := d.springAt[i]
 		floor[k] = math.Max(floor[k], 2*sp.EffectiveRadius/radiusPerEdge)
 	}
+	d.floor = floor
 	near := d.clearances()
 	finest := orDefault(o.Finest, finestShare*math.Sqrt(d.areaOfSite))
 	corners := d.corners(s)
@@ -192,6 +194,25 @@ const fitTolerance = 0.04
 
 // fitSteps bounds the search: three or four do.
 const fitSteps = 20
+
+// floorReach is how many of its least edge lengths a place keeps sizes that are asked for from falling below it.
+const floorReach = 4
+
+// allowedSizes raises sizes beside wells and springs to the least that their radii allow.
+func (d *domainPlan) allowedSizes(sizes []mesh.Size) []mesh.Size {
+	out := append([]mesh.Size(nil), sizes...)
+	for k, f := range d.floor {
+		if f == 0 {
+			continue
+		}
+		for i := range out {
+			if out[i].Edge < f && distance(out[i].At, d.domain.Points[k].At) < floorReach*f {
+				out[i].Edge = f
+			}
+		}
+	}
+	return out
+}
 
 // fit raises the finest size until about the allowed number of nodes is enough, or, where the outline's own vertices ask for more than
 // that, until the places add no more than a third to them.

@@ -163,7 +163,7 @@ func (m *Model) patch(node int32, r Radius) (inside, rim []int32) {
 	seen := map[int32]bool{node: true}
 	q := &reachQueue{{0, node}}
 	uniform := m.uniformAround(node, node)
-	for q.Len() > 0 && len(inside) < patchNodes {
+	for q.Len() > 0 && len(inside) < m.patchNodes {
 		item := heap.Pop(q).(reachItem)
 		if item.node != node && (!uniform || !m.uniformAround(item.node, node) || !m.onStraightOutline(item.node, node)) {
 			break

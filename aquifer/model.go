@@ -33,12 +33,14 @@ type Model struct {
 	Factorisations int // how many numeric factorisations were made
 	FactorBytes    int64
 
+	plan         *domainPlan
 	regions      []region
 	conductance  []float64 // three a triangle: of the edge opposite the vertex [m²/d]
 	area         []float64 // three a triangle: part of the node's control volume [m²]
 	onOutline    []bool
 	outlineEdge  []int // per outline edge: 0 no-flow, else 1 + edge
 	isPrescribed []bool
+	patchNodes   int       // in the local problem of an equivalent radius
 	prescribed   []float64 // head at prescribed nodes [m]
 	free         []int32   // node to unknown; -1 prescribed
 	nodeOf       []int32   // unknown to node
@@ -74,6 +76,7 @@ func BuildBisected(ctx context.Context, site *Site, o Options, times int) (*Mode
 	if err != nil {
 		return nil, err
 	}
+	m.patchNodes <<= 2 * times // the same patches around wells
 	return m, m.finish(ctx, o)
 }
 
@@ -102,6 +105,7 @@ func meshSite(ctx context.Context, site *Site, o Options, bad *problems) (*domai
 
 func (d *domainPlan) meshOptions(site *Site, o Options) mesh.Options {
 	mo := mesh.Options{Nodes: d.nodes, Growth: d.growth, DetailGrowth: math.Min(1, detailGrowth*orDefault(o.Scale, 1)), MaxNodes: o.MaxNodes}
+	mo.Sizes = d.allowedSizes(o.Sizes)
 	if o.Coarsest > 0 {
 		mo.Coarsest = o.Coarsest * orDefault(o.Scale, 1)
 	}
@@ -136,7 +140,7 @@ func assemble(ctx context.Context, site *Site, o Options) (*Model, error) {
 }
 
 func assembleOn(site *Site, d *domainPlan, msh *mesh.Mesh, bad *problems) (*Model, error) {
-	m := &Model{Site: site, Mesh: msh, FinestSize: d.finest}
+	m := &Model{Site: site, Mesh: msh, FinestSize: d.finest, plan: d, patchNodes: patchNodes}
 	m.buildRegions(bad)
 	if err := bad.err(); err != nil {
 		return nil, err

@@ -1,6 +1,10 @@
 package aquifer
 
-import "fmt"
+import (
+	"fmt"
+
+	"springbound/aquifer/mesh"
+)
 
 // Options steer the mesh. The zero value is the documented default.
 type Options struct {
@@ -10,7 +14,11 @@ type Options struct {
 	Growth   float64 // growth of edge length per distance; 0 = 0.10 [-]
 	Scale    float64 // multiplies finest size, coarsest size and growth together, for refinement studies; 0 = 1 [-]
 	MaxNodes int     // budget; 0 = the mesher's own
-	Workers  int     // processors to use; 0 = all; results do not depend on it
+	// Sizes are places that want a finer mesh than wells, receptors and lines ask for, such as goal-oriented refinement finds them; a
+	// well's or spring's own least size holds against them. The number of nodes wanted does not count theirs: give Coarsest as well.
+	Sizes []mesh.Size
+
+	Workers int // processors to use; 0 = all; results do not depend on it
 
 	Progress func(stage string, done, total int) // optional; called from one goroutine
 

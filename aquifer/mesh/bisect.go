@@ -37,6 +37,19 @@ func (m *Mesh) Bisect() *Mesh {
 	return f
 }
 
+// Middles lists the ends of the coarse edge in whose middle each node lies that Bisect adds, in the order of those nodes.
+func (m *Mesh) Middles() [][2]int32 {
+	var out [][2]int32
+	for t := range m.Region {
+		for k := range 3 {
+			if e := m.Neighbours[3*t+k]; e < 0 || int(e) > t {
+				out = append(out, [2]int32{m.Triangles[3*t+int(next3[k])], m.Triangles[3*t+int(prev3[k])]})
+			}
+		}
+	}
+	return out
+}
+
 // backEdge is the index, in neighbour e, of edge k of triangle t.
 func (m *Mesh) backEdge(e int32, t, k int) int {
 	a := m.Triangles[3*t+int(next3[k])]

@@ -45,8 +45,18 @@ type Options struct {
 	MaxNodes    int     // budget; 0 = 4 times the nodes estimated plus 50,000, but at most 20 times Nodes or 500,000
 	Tolerance   float64 // nearer vertices are brought together; 0 = 1e-8 of the outline's diagonal [m]
 
+	// Sizes are places that want finer triangles than the domain's own points and lines ask for.
+	Sizes []Size
+
 	// Metric gives the transmissivity tensor of the region that holds the point; called once a region. nil = isotropic.
 	Metric func(at orb.Point) Tensor
+}
+
+// Size is a place with the edge length wanted there.
+type Size struct {
+	At     orb.Point // [m]
+	Edge   float64   // wanted edge length [m]
+	Growth float64   // of the edge length per distance from it; 0 = Options.Growth [-]
 }
 
 // Mesh is a conforming Delaunay triangulation in flat arrays.

@@ -406,6 +406,12 @@ func checkOptions(o Options) []Problem {
 	if !(o.Coarsest >= 0) || math.IsInf(o.Coarsest, 0) {
 		bad("Coarsest", o.Coarsest, "want a length, or 0 for none")
 	}
+	for _, z := range o.Sizes {
+		if !(z.Edge > 0 && z.Growth >= 0 && z.Growth <= largestGrowth && math.Abs(z.At[0]) < math.Inf(1) && math.Abs(z.At[1]) < math.Inf(1)) || math.IsInf(z.Edge, 0) {
+			bad("Sizes", z, fmt.Sprintf("want a finite place, a length above 0 and a growth of 0 to %g", largestGrowth))
+			break
+		}
+	}
 	if !(o.DetailGrowth >= 0 && o.DetailGrowth <= largestGrowth) {
 		bad("DetailGrowth", o.DetailGrowth, fmt.Sprintf("want 0 (default) to %g", largestGrowth))
 	}
