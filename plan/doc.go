@@ -36,7 +36,9 @@
 // Symbols, units, signs: Q rate [m³/d], pumping positive; change = value without pumping - value, so that pumping makes it larger;
 // headroom = limit - quantity in the limit's own direction; shadow price = change of the aim per unit of the limit.
 //
-// Not done: operating states other than the default one (listed as not assessed).
+// Several operating states are planned together, with a rate for each well in each: the year's days join them (states.go).
+//
+// Not done: change with time; every state is steady, and water stored between states is not counted.
 //
 // Sources: Maddock 1972 (Water Resources Research 8) for the response matrix; Kelley 1960 (J. SIAM 8) for cuts; Mangasarian 1979
 // (Linear Algebra and its Applications 25) for other plans as good.

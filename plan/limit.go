@@ -106,7 +106,7 @@ func (p *planner) limitBound(ctx context.Context, index int, l wells.Limit) (b *
 	case s.Receptors[r].Outside:
 		return nil, "the receptor lies outside the model", nil
 	case !s.isState(l.State):
-		return nil, "operating state \"" + l.State + "\" is not run by this version", nil
+		return nil, "the brief has no operating state \"" + l.State + "\"", nil
 	case row == nil:
 		return nil, "the response has no row for the receptor", nil
 	case l.Quantity == wells.ShareOfBase && row.Base == 0:
