@@ -233,20 +233,36 @@ func (l *Ledger) bookRivers() {
 		r := &m.Site.Rivers[i]
 		b := booked{kind: RiverFeature, index: i, name: r.Name}
 		bound := r.Path.Bound().Pad(near)
+		put := func(n int32, c float64, segment int, fraction float64) {
+			b.add(n, c, alongList(r.WaterLevels, segment, fraction), alongList(r.BedLevels, segment, fraction))
+		}
 		for _, e := range lines {
 			pa, pb := m.At(e.a), m.At(e.b)
 			if !bound.Contains(pa) || !bound.Contains(pb) {
 				continue
 			}
-			sa, fa, da := alongPath(r.Path, pa)
-			sb, fb, db := alongPath(r.Path, pb)
-			_, _, middle := alongPath(r.Path, orb.Point{(pa[0] + pb[0]) / 2, (pa[1] + pb[1]) / 2})
-			if !(da <= near && db <= near && middle <= near) {
+			c := r.Width / r.BedResistance.Best * distance(pa, pb) / 2
+			found := false
+			for k := 0; k+1 < len(r.Path); k++ { // a river may come back along itself: it then counts once more
+				fa, da := onSegment(pa, r.Path[k], r.Path[k+1])
+				fb, db := onSegment(pb, r.Path[k], r.Path[k+1])
+				if da <= near && db <= near && fa != fb {
+					found = true
+					put(e.a, c, k, fa)
+					put(e.b, c, k, fb)
+				}
+			}
+			if found {
 				continue
 			}
-			c := r.Width / r.BedResistance.Best * distance(pa, pb) / 2
-			b.add(e.a, c, alongList(r.WaterLevels, sa, fa), alongList(r.BedLevels, sa, fa))
-			b.add(e.b, c, alongList(r.WaterLevels, sb, fb), alongList(r.BedLevels, sb, fb))
+			// vertices of the path that are nearer to each other than the mesher's tolerance are one node: the piece lies on two segments
+			ka, fa, da := alongPath(r.Path, pa)
+			kb, fb, db := alongPath(r.Path, pb)
+			_, _, middle := alongPath(r.Path, orb.Point{(pa[0] + pb[0]) / 2, (pa[1] + pb[1]) / 2})
+			if da <= near && db <= near && middle <= near {
+				put(e.a, c, ka, fa)
+				put(e.b, c, kb, fb)
+			}
 		}
 		l.exchanges = append(l.exchanges, b)
 	}

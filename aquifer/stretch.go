@@ -124,9 +124,9 @@ func (o *outlineRings) match(edges []Edge, bad *problems) []stretch {
 		if e.Path[0] != e.Path[len(e.Path)-1] {
 			o.insert(k, e.Path[0])
 			o.insert(k, e.Path[len(e.Path)-1])
+			o.measure() // the next edge is measured on the ring with these vertices
 		}
 	}
-	o.measure()
 	var out []stretch
 	for i, e := range edges {
 		if ringOf[i] < 0 {
