@@ -185,7 +185,7 @@ func (p *planner) heldByRecharge(ctx context.Context, b *bound, rates []float64)
 	without := restrict(rates, b.counted)
 	var names []string
 	for i, q := range without {
-		if q < 0 {
+		if q < 0 && s.inStateOf(b, i) {
 			names = append(names, s.Wells[i].ID)
 			without[i] = 0
 		}

@@ -102,6 +102,18 @@ func (s *setup) meanWords() string {
 	return " of the yearly mean"
 }
 
+// inStateOf tells whether a well's rate is one of the operating state that a bound is about.
+func (s *setup) inStateOf(b *bound, i int) bool {
+	if s.expanded == nil {
+		return true
+	}
+	k := b.target.receptor / max(1, len(s.expanded.outer.Receptors))
+	if b.target.receptor < 0 {
+		k = s.expanded.stateOf(b.target.well)
+	}
+	return s.expanded.stateOf(i) == k
+}
+
 // inWords names the state of a bound within its sentence.
 func (s *setup) inWords(b *bound) string {
 	if s.expanded == nil || b.target.receptor < 0 {

@@ -389,6 +389,21 @@ func TestRunningInEachState(t *testing.T) {
 	}
 }
 
+// A limit that holds only because a well recharges names that well once, not the same well in other states.
+func TestRechargeInOneState(t *testing.T) {
+	s := newSite(MostYield, decidedWell("A", 0, 1000), wells.Well{ID: "R", Mode: wells.Fixed, FixedRate: -200, DutyHours: 24, Radius: 0.2})
+	s.receptor("P", wells.PointLevel, 10, 0.001, 0.001)
+	s.limit("L", "P", 0.3)
+	s.twoStates(300, 65)
+	r := s.plan(t)
+	exact(t, "rate", r.Wells[0].Rate, 500)
+	for _, state := range []string{"average", "peak"} {
+		if got := limitIn(t, r, state, "L").Sentence; !strings.HasSuffix(got, "Holds only because R recharges.") {
+			t.Errorf("%q", got)
+		}
+	}
+}
+
 // What cannot be met names the state, and giving way by what is said makes a plan.
 func TestConflictNamesTheState(t *testing.T) {
 	s := newSite(MostYield, decidedWell("A", 0, 1000))
