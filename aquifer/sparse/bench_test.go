@@ -36,6 +36,19 @@ func BenchmarkAnalyse(b *testing.B) {
 	})
 }
 
+// BenchmarkSmall makes a whole solution of some six hundred unknowns, as the equivalent radius of each well needs one.
+func BenchmarkSmall(b *testing.B) {
+	p := jitteredMesh(25, 25, 1, 1)
+	right := randomVector(p.Pattern.N, 1)
+	b.ReportAllocs()
+	for b.Loop() {
+		f := mustFactor(b, p, Options{Workers: 1})
+		if err := f.Solve(context.Background(), right, 1); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
+
 func BenchmarkFactor(b *testing.B) {
 	forSides(b, func(b *testing.B, p problem) {
 		s := mustAnalyse(b, p, Options{})

@@ -79,9 +79,16 @@ func Analyse(ctx context.Context, p *Pattern, x, y []float64, o Options) (*Symbo
 	return s, nil
 }
 
+// leastDissected is the number of rows up to which minimum degree orders the whole matrix: dissection saves less fill there
+// than it costs time.
+const leastDissected = 1000
+
+// orderings keeps the memory of minimum degree from one small matrix to the next.
+var orderings = sync.Pool{New: func() any { return new(minDegree) }}
+
 // orderGraph returns the graph of the matrix and its nodes in elimination order.
 func orderGraph(ctx context.Context, p *Pattern, x, y []float64, workers int) (*graph, []int32) {
-	if x != nil && p.N > leafNodes {
+	if x != nil && p.N > leastDissected {
 		return dissect(ctx, p, x, y, workers)
 	}
 	rows := make([]int32, p.N)
@@ -89,8 +96,12 @@ func orderGraph(ctx context.Context, p *Pattern, x, y []float64, workers int) (*
 		rows[i] = int32(i)
 	}
 	g := newGraph(p, rows)
-	var m minDegree
-	return g, m.order(g.n, g.start, g.to)
+	m := orderings.Get().(*minDegree)
+	order := m.order(g.n, g.start, g.to)
+	if p.N <= leastDissected {
+		orderings.Put(m)
+	}
+	return g, order
 }
 
 // buildTree settles order, position and supernodes from a first order of the nodes, and returns the order that follows
