@@ -26,9 +26,9 @@ const (
 	mostNodes        = 50_000_000 // what handles of 32 bits carry with room to spare
 	largestGrowth    = 1.0        // steeper grading cannot keep the angle
 	largestCoarser   = 4          // a mesh is made so many times coarser at most before it is halved
-	steepestCoarse   = 0.35       // size fields of coarse meshes grow no faster, or halving gives uneven sizes
-	leastCoarse      = 3000       // nodes: smaller coarse meshes have too few triangles between their sources for even grading
-	levelNodes       = 3.7        // nodes of a mesh over those of one twice as coarse, at least; for reserving room
+	steepestCoarse   = 0.35
+	leastCoarse      = 3000 // nodes: smaller coarse meshes have too few triangles between their sources for even grading
+	levelNodes       = 3.7  // nodes of a mesh over those of one twice as coarse, at least; for reserving room
 )
 
 // resolved fills in the defaults.
@@ -96,9 +96,11 @@ func (r *refiner) fill(ctx context.Context, fields []*sizeField, expected float6
 	}
 	r.reorder()
 	passes := smoothPasses
+	if level > 0 && fields[level].growth < steepForOnce {
+		passes = 1
+	}
 	for ; level > 0; level-- {
-		passes = levelPasses
-		if err := r.smooth(ctx, passes); err != nil {
+		if err := r.smooth(ctx, coarsePasses); err != nil {
 			return err
 		}
 		r.coarser /= 2
@@ -215,13 +217,6 @@ func (c *carved) sizeBases(d Domain) {
 func (r *refiner) makeFields(d Domain, o Options) ([]*sizeField, float64) {
 	x0, y0, x1, y1 := bounds(r.p)
 	requests := r.requests(d.Points, o.Growth, o.DetailGrowth)
-	for _, z := range o.Sizes {
-		g := z.Growth
-		if g == 0 {
-			g = o.Growth
-		}
-		requests = append(requests, request{z.At[0], z.At[1], z.Edge, math.Inf(1), g})
-	}
 	f := newSizeField(sources(requests, o.Tolerance, 1, 0), x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
 	in := r.integrate(f)

@@ -3,7 +3,7 @@ package mesh
 import "math"
 
 const (
-	sampleVariation = 0.8  // an integration sample is cut while the size may vary across it by more than this share
+	sampleVariation = 1.0  // an integration sample is cut while the size may vary across it by more than this share
 	sampleLeast     = 0.05 // nor is one cut that is worth less than this many squares of the size: slivers at sharp corners
 	sampleDepth     = 30   // halvings at most
 	nodesPerIdeal   = 0.98 // nodes made for each node of a mesh of equilateral triangles of the wanted size: at least, measured

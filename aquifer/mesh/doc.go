@@ -38,8 +38,9 @@
 // are counted apart. A gap between lines of many tolerances' width is meshed however long it is, until the budget is hit: a
 // larger tolerance closes it.
 //
-// Sources: Bank RE, Sherman AH, Weiser A (1983) Scientific Computing, IMACS; Bowyer A (1981) Comput. J. 24(2); Chen L, Holst M (2011) Comput. Methods Appl. Mech. Eng. 200; Engwirda D, Ivers D
-// (2016) Comput.-Aided Des. 72; Lawson CL (1977) Mathematical Software III; Miller GL, Pav SE, Walkington NJ (2003) 12th Int.
-// Meshing Roundtable; Ruppert J (1995) J. Algorithms 18(3); Shewchuk JR (1997) Discrete Comput. Geom. 18(3); Shewchuk JR (2002)
-// Comput. Geom. 22(1-3); Sloan SW (1993) Comput. Struct. 47(3); Ungor A (2004) LATIN 2004.
+// Sources: Bank RE, Sherman AH, Weiser A (1983) Scientific Computing, IMACS; Bowyer A (1981) Comput. J. 24(2); Chen L, Holst M
+// (2011) Comput. Methods Appl. Mech. Eng. 200; Engwirda D, Ivers D (2016) Comput.-Aided Des. 72; Lawson CL (1977) Mathematical
+// Software III; Miller GL, Pav SE, Walkington NJ (2003) 12th Int. Meshing Roundtable; Ruppert J (1995) J. Algorithms 18(3);
+// Shewchuk JR (1997) Discrete Comput. Geom. 18(3); Shewchuk JR (2002) Comput. Geom. 22(1-3); Sloan SW (1993) Comput. Struct.
+// 47(3); Ungor A (2004) LATIN 2004.
 package mesh

@@ -7,7 +7,7 @@ import (
 )
 
 // parallelShare is how many items one task takes. It is fixed, so that tasks are the same for any number of processors.
-const parallelShare = 1 << 13
+const parallelShare = 1 << 12
 
 // inParallel calls do for shares of 0 to n that follow each other, on all processors. What the calls write must not overlap, nor
 // depend on their order.

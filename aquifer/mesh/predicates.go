@@ -7,6 +7,9 @@ const (
 	roundoff      = 1.0 / (1 << 53)
 	orientBound   = (3 + 16*roundoff) * roundoff
 	inCircleBound = (10 + 96*roundoff) * roundoff
+	// quickBound is for the square of the sum of the three squared distances: a third of it is no less than the permanent, and the
+	// added part is far more than its own rounding.
+	quickBound = (1 + 1e-12) * inCircleBound / 3
 )
 
 // orient is positive when a, b, c turn counter-clockwise, negative when clockwise, zero when they are in line. The sign is

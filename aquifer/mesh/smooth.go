@@ -8,7 +8,10 @@ import (
 
 const (
 	smoothPasses = 2 // most of the gain comes with the first two
-	levelPasses  = 1 // of a coarse mesh, and after it has been halved: its vertices have six triangles nearly all
+	coarsePasses = 1 // of a coarse mesh before it is halved
+	// steepForOnce: where a coarse mesh was graded less steeply, one pass is enough after it has been halved, for nearly all vertices have
+	// six triangles of about one size.
+	steepForOnce = 0.25
 	// goodSine2 is the squared sine of 35 degrees: a move may lower the smallest angle of a star down to this, not below.
 	goodSine2 = 0.329
 	// largestStar: vertices with more triangles are left; the mean is six.
@@ -116,12 +119,13 @@ func (s *smoother) move(v, from, to int32, r *star) bool {
 			px, py = s.metrics[region].from(dx, dy)
 		}
 		p := &s.p[v]
-		now, valid := r.worst(dx, dy)
-		if valid && now < goodSine2 {
+		valid := r.reaches(dx, dy, goodSine2)
+		if !valid {
 			if old < 0 {
 				old, _ = r.worst(0, 0)
 			}
-			valid = now >= old
+			now, sound := r.worst(dx, dy)
+			valid = sound && now >= old
 		}
 		if valid && s.clear(v, p.x+px, p.y+py) {
 			p.x, p.y = p.x+px, p.y+py
@@ -185,6 +189,26 @@ func (r *star) target() (dx, dy float64, ok bool) {
 	}
 	dx, dy = dx/(2*sum), dy/(2*sum)
 	return dx, dy, !math.IsNaN(dx) && !math.IsInf(dx, 0)
+}
+
+// reaches says whether, with the centre moved, no triangle turns over, no segment of the rim is encroached upon, and every squared sine
+// is at least as given.
+func (r *star) reaches(dx, dy, sine2 float64) bool {
+	ax, ay := r.x[0]-dx, r.y[0]-dy
+	a2 := ax*ax + ay*ay
+	for i := range r.n {
+		bx, by := r.x[i+1]-dx, r.y[i+1]-dy
+		cross := ax*by - ay*bx
+		ex, ey := bx-ax, by-ay
+		b2, e2 := bx*bx+by*by, ex*ex+ey*ey
+		// sine of the angle opposite the shortest side = cross / product of the two longer ones
+		c2 := cross * cross
+		if !(cross > 0 && c2 >= sine2*(a2*b2) && c2 >= sine2*(a2*e2) && c2 >= sine2*(b2*e2)) || r.seg[i] && ax*bx+ay*by < 0 {
+			return false
+		}
+		ax, ay, a2 = bx, by, b2
+	}
+	return true
 }
 
 // worst is the squared sine of the smallest angle in the star with its centre moved; valid is false when a triangle turns over
