@@ -110,8 +110,10 @@ func (p *planner) askRanges(ctx context.Context, g *programme, r *rangeProgramme
 	ask := func(side convex.SideOf, f func(convex.Range)) {
 		sides, take = append(sides, side), append(take, f)
 	}
+	asked := p.worthRanging(g, r)
 	for i, o := range g.owners {
 		switch {
+		case !asked(o):
 		case o.kind == ofQuota:
 			q := &s.quotas[o.index]
 			ask(convex.SideOf{Index: i, Side: convex.UpperSide}, func(x convex.Range) { q.priceRange = p.rising(g, x, q.limit) })
