@@ -217,6 +217,13 @@ func (c *carved) sizeBases(d Domain) {
 func (r *refiner) makeFields(d Domain, o Options) ([]*sizeField, float64) {
 	x0, y0, x1, y1 := bounds(r.p)
 	requests := r.requests(d.Points, o.Growth, o.DetailGrowth)
+	for _, z := range o.Sizes {
+		g := z.Growth
+		if g == 0 {
+			g = o.Growth
+		}
+		requests = append(requests, request{z.At[0], z.At[1], z.Edge, math.Inf(1), g})
+	}
 	f := newSizeField(sources(requests, o.Tolerance, 1, 0), x0, y0, x1, y1)
 	f.coarsest = o.Coarsest
 	in := r.integrate(f)
