@@ -3,6 +3,7 @@ package convex
 import (
 	"context"
 	"fmt"
+	"math"
 )
 
 // ConflictSet is an irreducible set of bounds that cannot all be met.
@@ -23,14 +24,16 @@ type ConflictSet struct {
 //
 // Method: deletion filter (Chinneck & Dravnieks 1991), with what a proof of infeasibility does not use dropped at once. What is left
 // is irreducible already when no row is outside among (Gleeson & Ryan 1990): the basis of the proof has a point for each member that
-// meets all others, which is computed and checked; only a member without such a point is tried by a warm-started solve. The error is not nil only for an index out of range; other ends are in Status.
+// meets all others, which is computed and checked; only a member without such a point is tried by a warm-started solve. Rows with one
+// entry are worked on as bounds of their column and named as rows; of several on one side of a column the tightest alone can be a member.
+// The error is not nil only for an index out of range; other ends are in Status.
 func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error) {
 	for _, i := range among {
 		if i < 0 || i >= p.Rows() {
 			return nil, fmt.Errorf("convex: Conflict: no row %d among %d", i, p.Rows())
 		}
 	}
-	f := newFilter(ctx, p.Clone(), among)
+	f := newFilter(ctx, p, among)
 	out := &ConflictSet{Status: f.solve()}
 	if out.Status == Infeasible {
 		f.useProof()
@@ -38,15 +41,17 @@ func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error
 	}
 	if out.Status == Infeasible {
 		f.useProof()
-		out.Status = f.reduce(&f.rows)
+		out.Status = f.reduce()
 	}
 	if out.Status == Infeasible {
-		out.Status = f.reduce(&f.columns)
-	}
-	if out.Status == Infeasible {
-		out.Rows, out.Bounds = f.rows.list(), f.columns.list()
-		for k := range out.Rows {
-			out.Rows[k].Index = f.origin[out.Rows[k].Index]
+		for _, m := range f.members {
+			switch {
+			case m.dropped:
+			case m.ofRow:
+				out.Rows = append(out.Rows, m.says)
+			default:
+				out.Bounds = append(out.Bounds, m.says)
+			}
 		}
 		out.Verified = f.verify()
 	}
@@ -54,55 +59,136 @@ func Conflict(ctx context.Context, p *Problem, among []int) (*ConflictSet, error
 	return out, nil
 }
 
-// filterList is a list of bounds of which some have been dropped.
-type filterList struct {
-	all     []Bound
-	dropped []bool
-	row     bool // bounds of rows, not of columns
-}
-
-func (l *filterList) list() []Bound {
-	var kept []Bound
-	for k, b := range l.all {
-		if !l.dropped[k] {
-			kept = append(kept, b)
-		}
-	}
-	return kept
+// filterMember is a side that may be in conflict.
+type filterMember struct {
+	at      Bound // in the filter's problem ...
+	row     bool  // ... of a row of it, not of a column
+	says    Bound // in the caller's problem ...
+	ofRow   bool  // ... of a row of it
+	dropped bool
 }
 
 // filter is the state of the deletion filter. The problem p is its own copy: dropped bounds are removed from it.
 type filter struct {
-	ctx           context.Context
-	p             *Problem
-	t             *session
-	rows, columns filterList
-	origin        []int // by row of p: index in the caller's problem
-	solves        int
-	witness       witness
+	ctx       context.Context
+	p         *Problem
+	t         *session
+	members   []filterMember // in the order in which they are tried
+	low, high []float64      // by column: the bounds that always hold
+	solves    int
+	witness   witness
 }
 
+// newFilter copies p without its costs. Rows with one entry become bounds of their column.
 func newFilter(ctx context.Context, p *Problem, among []int) *filter {
-	p.hessian = nil
-	for j := range p.columns {
-		p.columns[j].Cost = 0
+	f := &filter{ctx: ctx, p: &Problem{sense: p.sense, columns: append([]Column(nil), p.columns...)}}
+	f.low, f.high = make([]float64, p.Columns()), make([]float64, p.Columns())
+	for j := range f.low {
+		f.p.columns[j].Cost = 0
+		f.low[j], f.high[j] = math.Inf(-1), math.Inf(1)
 	}
-	f := &filter{ctx: ctx, p: p, t: newSession(p)}
-	f.t.e.startFromRows()
-	seen := make([]bool, p.Rows())
+	listed := make([]bool, p.Rows())
 	for _, i := range among {
-		if !seen[i] {
-			f.rows.all = append(f.rows.all, sidesOf(i, p.rowLower[i], p.rowUpper[i])...)
+		listed[i] = true
+	}
+	bounds, place := findRowBounds(p), make([]int, p.Rows())
+	for i := range place {
+		switch j := bounds.column[i]; {
+		case !bounds.is[i]:
+			place[i] = f.p.Rows()
+			f.p.takeRow(p, i)
+		case !listed[i]:
+			f.low[j], f.high[j] = math.Max(f.low[j], bounds.lower[i]), math.Min(f.high[j], bounds.upper[i])
 		}
-		seen[i] = true
+	}
+	tightest := newTightest(p, bounds, among, f.low, f.high)
+	for _, i := range among {
+		if !listed[i] {
+			continue // named before
+		}
+		listed[i] = false
+		if bounds.is[i] {
+			for _, side := range [2]Side{LowerSide, UpperSide} {
+				if j := bounds.column[i]; tightest.is(j, side, i) {
+					f.members = append(f.members, filterMember{at: Bound{j, side}, says: Bound{i, bounds.side(i, side)}, ofRow: true})
+				}
+			}
+			continue
+		}
+		for _, b := range sidesOf(i, p.rowLower[i], p.rowUpper[i]) {
+			f.members = append(f.members, filterMember{at: Bound{place[i], b.Side}, row: true, says: b, ofRow: true})
+		}
 	}
 	for j, c := range p.columns {
-		f.columns.all = append(f.columns.all, sidesOf(j, c.Lower, c.Upper)...)
+		for _, b := range sidesOf(j, c.Lower, c.Upper) {
+			if tightest.is(j, b.Side, ownBound) {
+				f.members = append(f.members, filterMember{at: b, says: b})
+			}
+		}
+		f.p.columns[j].Lower, f.p.columns[j].Upper = tightest.lower[j], tightest.upper[j]
 	}
-	f.rows.row = true
-	f.rows.dropped = make([]bool, len(f.rows.all))
-	f.columns.dropped = make([]bool, len(f.columns.all))
+	f.start(f.p)
 	return f
+}
+
+// ownBound stands for the bound of the column itself, nobodysBound for one that always holds.
+const (
+	ownBound     = -1
+	nobodysBound = -2
+)
+
+// tightest are the bounds of the columns, and the rows that set them.
+type tightest struct {
+	lower, upper     []float64
+	byLower, byUpper []int // row, ownBound or nobodysBound
+}
+
+// newTightest takes the bounds that always hold, where these are no less tight, then among ties the bound that is tried last.
+func newTightest(p *Problem, b *rowBounds, among []int, low, high []float64) *tightest {
+	n := p.Columns()
+	t := &tightest{lower: append([]float64(nil), low...), upper: append([]float64(nil), high...), byLower: make([]int, n), byUpper: make([]int, n)}
+	for j := range t.byLower {
+		t.byLower[j], t.byUpper[j] = nobodysBound, nobodysBound
+	}
+	take := func(j, by int, lower, upper float64) {
+		if lower > t.lower[j] || lower == t.lower[j] && lower > low[j] {
+			t.lower[j], t.byLower[j] = lower, by
+		}
+		if upper < t.upper[j] || upper == t.upper[j] && upper < high[j] {
+			t.upper[j], t.byUpper[j] = upper, by
+		}
+	}
+	for _, i := range among {
+		if b.is[i] {
+			take(b.column[i], i, b.lower[i], b.upper[i])
+		}
+	}
+	for j, c := range p.columns {
+		take(j, ownBound, c.Lower, c.Upper)
+	}
+	return t
+}
+
+// is tells that a side of column j is set by a row or by the column itself.
+func (t *tightest) is(j int, side Side, by int) bool {
+	if side == LowerSide {
+		return t.byLower[j] == by
+	}
+	return t.byUpper[j] == by
+}
+
+// takeRow appends row i of another problem with the same columns; the coefficients are shared.
+func (p *Problem) takeRow(of *Problem, i int) {
+	p.a = append(p.a, of.a[i])
+	p.rowName = append(p.rowName, of.rowName[i])
+	p.rowLower = append(p.rowLower, of.rowLower[i])
+	p.rowUpper = append(p.rowUpper, of.rowUpper[i])
+}
+
+// start goes on with p.
+func (f *filter) start(p *Problem) {
+	f.p, f.t = p, newSession(p)
+	f.t.e.startFromRows()
 }
 
 func (f *filter) solve() Status {
@@ -110,51 +196,64 @@ func (f *filter) solve() Status {
 	return f.t.solve(f.ctx, Options{}.iterationLimit(f.p.Rows(), f.p.Columns()))
 }
 
-// bounds returns the bounds that b is a side of.
-func (f *filter) bounds(b Bound, row bool) (lower, upper float64) {
-	if row {
-		return f.p.rowLower[b.Index], f.p.rowUpper[b.Index]
+// bounds returns the bounds that m is a side of.
+func (f *filter) bounds(m *filterMember) (lower, upper float64) {
+	if m.row {
+		return f.p.rowLower[m.at.Index], f.p.rowUpper[m.at.Index]
 	}
-	return f.p.columns[b.Index].Lower, f.p.columns[b.Index].Upper
+	return f.p.columns[m.at.Index].Lower, f.p.columns[m.at.Index].Upper
 }
 
-func (f *filter) set(b Bound, row bool, lower, upper float64) {
-	if row {
-		f.p.rowLower[b.Index], f.p.rowUpper[b.Index] = lower, upper
-		f.t.setRow(b.Index, lower, upper)
+// without returns the bounds that m is a side of with m left out: what always holds is left.
+func (f *filter) without(m *filterMember) (lower, upper float64) {
+	lower, upper = f.bounds(m)
+	switch j := m.at.Index; {
+	case m.row:
+		return without(lower, upper, m.at.Side)
+	case m.at.Side == LowerSide:
+		return f.low[j], upper
+	default:
+		return lower, f.high[j]
+	}
+}
+
+func (f *filter) set(m *filterMember, lower, upper float64) {
+	if m.row {
+		f.p.rowLower[m.at.Index], f.p.rowUpper[m.at.Index] = lower, upper
+		f.t.setRow(m.at.Index, lower, upper)
 		return
 	}
-	f.p.columns[b.Index].Lower, f.p.columns[b.Index].Upper = lower, upper
-	f.t.setColumn(b.Index, lower, upper)
+	f.p.columns[m.at.Index].Lower, f.p.columns[m.at.Index].Upper = lower, upper
+	f.t.setColumn(m.at.Index, lower, upper)
 }
 
-// drop removes member k for good.
-func (f *filter) drop(l *filterList, k int) {
-	b := l.all[k]
-	lower, upper := f.bounds(b, l.row)
-	lower, upper = without(lower, upper, b.Side)
-	f.set(b, l.row, lower, upper)
-	l.dropped[k] = true
+// drop removes a member for good.
+func (f *filter) drop(m *filterMember) {
+	lower, upper := f.without(m)
+	f.set(m, lower, upper)
+	m.dropped = true
 }
 
 // useProof drops every member that the last proof does not need.
 func (f *filter) useProof() {
-	y := f.t.e.proof
-	f.dropUnused(&f.rows, func(i int) float64 { return y[i] })
-	z := f.t.e.byCol
+	y, z := f.t.e.proof, f.t.e.byCol
 	f.t.e.m.combineRows(z, f.t.e.everyRow(y), f.t.e.dr, f.t.e.byRow)
-	f.dropUnused(&f.columns, func(j int) float64 { return -z[j] })
-	f.witness.prepare(f)
-}
-
-func (f *filter) dropUnused(l *filterList, multiplier func(int) float64) {
-	for k, b := range l.all {
-		v := multiplier(b.Index)
-		used := (v > 0 && b.Side == UpperSide) || (v < 0 && b.Side == LowerSide)
-		if !used && !l.dropped[k] {
-			f.drop(l, k)
+	for k := range f.members {
+		m := &f.members[k]
+		if m.dropped {
+			continue
+		}
+		v := 0.0
+		if m.row {
+			v = y[m.at.Index]
+		} else {
+			v = -z[m.at.Index]
+		}
+		if used := (v > 0 && m.at.Side == UpperSide) || (v < 0 && m.at.Side == LowerSide); !used {
+			f.drop(m)
 		}
 	}
+	f.witness.prepare(f)
 }
 
 // compact leaves out the rows without bounds, which are most of them once a proof has been used, and solves what remains.
@@ -163,40 +262,34 @@ func (f *filter) compact() Status {
 	place := make([]int, f.p.Rows())
 	for i := range place {
 		place[i] = small.Rows()
-		lower, upper := f.p.rowLower[i], f.p.rowUpper[i]
-		if !finite(lower) && !finite(upper) {
-			continue
+		if finite(f.p.rowLower[i]) || finite(f.p.rowUpper[i]) {
+			small.takeRow(f.p, i)
 		}
-		f.origin = append(f.origin, i)
-		small.a = append(small.a, f.p.row(i))
-		small.rowName = append(small.rowName, f.p.rowName[i])
-		small.rowLower = append(small.rowLower, lower)
-		small.rowUpper = append(small.rowUpper, upper)
 	}
-	kept := filterList{row: true}
-	for _, b := range f.rows.list() {
-		kept.all = append(kept.all, Bound{place[b.Index], b.Side})
+	for k := range f.members {
+		if m := &f.members[k]; m.row {
+			m.at.Index = place[m.at.Index]
+		}
 	}
-	kept.dropped = make([]bool, len(kept.all))
-	f.p, f.rows, f.t = small, kept, newSession(small)
-	f.t.e.startFromRows()
+	f.start(small)
 	return f.solve()
 }
 
 // reduce tries to do without each member in turn. It returns Infeasible, or the status that stopped it.
-func (f *filter) reduce(l *filterList) Status {
-	for k, b := range l.all {
-		if l.dropped[k] || f.witness.meets(f, b, l.row) {
+func (f *filter) reduce() Status {
+	for k := range f.members {
+		m := &f.members[k]
+		if m.dropped || f.witness.meets(f, m) {
 			continue
 		}
-		lower, upper := f.bounds(b, l.row)
-		f.drop(l, k)
+		lower, upper := f.bounds(m)
+		f.drop(m)
 		switch status := f.solve(); status {
 		case Infeasible:
 			f.useProof()
 		case Optimal:
-			f.set(b, l.row, lower, upper)
-			l.dropped[k] = false
+			f.set(m, lower, upper)
+			m.dropped = false
 			switch status := f.solve(); status { // back to a proof, for the points of the members to come
 			case Infeasible:
 				f.useProof()
@@ -220,21 +313,20 @@ func (f *filter) verify() bool {
 	if err != nil || s.Status != Infeasible || !Certify(f.p, s).Accepted {
 		return false
 	}
-	for _, l := range []*filterList{&f.rows, &f.columns} {
-		for k, b := range l.all {
-			if l.dropped[k] || f.witness.meets(f, b, l.row) {
-				continue
-			}
-			lower, upper := f.bounds(b, l.row)
-			f.drop(l, k)
-			status := f.solve()
-			f.set(b, l.row, lower, upper)
-			l.dropped[k] = false
-			if status != Optimal || f.solve() != Infeasible {
-				return false
-			}
-			f.witness.prepare(f)
+	for k := range f.members {
+		m := &f.members[k]
+		if m.dropped || f.witness.meets(f, m) {
+			continue
 		}
+		lower, upper := f.bounds(m)
+		f.drop(m)
+		status := f.solve()
+		f.set(m, lower, upper)
+		m.dropped = false
+		if status != Optimal || f.solve() != Infeasible {
+			return false
+		}
+		f.witness.prepare(f)
 	}
 	return true
 }

@@ -33,11 +33,11 @@ func (w *witness) prepare(f *filter) {
 	}
 }
 
-// meets tells that a point was found which meets all bounds of the problem but b. The engine must be at the basis of the last proof.
-func (w *witness) meets(f *filter, b Bound, row bool) bool {
+// meets tells that a point was found which meets all bounds of the problem but m. The engine must be at the basis of the last proof.
+func (w *witness) meets(f *filter, m *filterMember) bool {
 	e, s := f.t.e, f.t.s
-	v := b.Index
-	if row {
+	v := m.at.Index
+	if m.row {
 		v += e.n
 	}
 	for _, j := range w.moved {
@@ -61,7 +61,7 @@ func (w *witness) meets(f *filter, b Bound, row bool) bool {
 			w.shift(v, theta*s.col[v])
 		}
 	}
-	return w.within(f.p, b, row)
+	return w.within(f, m)
 }
 
 func (w *witness) shift(j int, by float64) {
@@ -70,17 +70,18 @@ func (w *witness) shift(j int, by float64) {
 }
 
 // within checks the moved point against the data.
-func (w *witness) within(p *Problem, b Bound, row bool) bool {
+func (w *witness) within(f *filter, m *filterMember) bool {
+	p := f.p
 	ok := func(v, lower, upper, size float64, own bool) bool {
 		if own {
-			lower, upper = without(lower, upper, b.Side)
+			lower, upper = f.without(m)
 		}
 		by, bound := outside(v, lower, upper)
 		return by <= CertifiedPrimal*math.Max(size, math.Abs(bound))
 	}
 	for j, x := range w.x {
 		c := p.columns[j]
-		if !ok(x+w.move[j], c.Lower, c.Upper, w.unit.value*w.unit.col[j], !row && j == b.Index) {
+		if !ok(x+w.move[j], c.Lower, c.Upper, w.unit.value*w.unit.col[j], !m.row && j == m.at.Index) {
 			return false
 		}
 	}
@@ -91,7 +92,7 @@ func (w *witness) within(p *Problem, b Bound, row bool) bool {
 			v += by
 			terms += math.Abs(by)
 		}
-		if !ok(v, p.rowLower[i], p.rowUpper[i], math.Max(terms, w.unit.value/w.unit.row[i]), row && i == b.Index) {
+		if !ok(v, p.rowLower[i], p.rowUpper[i], math.Max(terms, w.unit.value/w.unit.row[i]), m.row && i == m.at.Index) {
 			return false
 		}
 	}
