@@ -19,7 +19,7 @@ func TestLedgerBalancesEveryNode(t *testing.T) {
 	m := motions(2)[1]
 	site, ws, rs := everything(m, 20)
 	f := build(t, site, ws, rs, aquifer.Options{Nodes: 6000})
-	ledger := f.Model.Ledger()
+	ledger := f.Model.Ledger(1)
 	throughflow := 0.0
 	for _, rates := range [][]float64{make([]float64, len(ws)), ratesOf(ws)} {
 		s, err := f.Changes(ctx, rates)
@@ -58,6 +58,27 @@ func TestLedgerBalancesEveryNode(t *testing.T) {
 	}
 }
 
+// The same under another recharge, that of a drought: the records times its factor.
+func TestLedgerUnderAnotherRecharge(t *testing.T) {
+	site, ws, rs := everything(motions(1)[0], 20)
+	f := build(t, site, ws, rs, aquifer.Options{Nodes: 3000})
+	dry, err := f.InState(0.4)
+	if err != nil {
+		t.Fatal(err)
+	}
+	s, err := dry.Changes(context.Background(), ratesOf(ws))
+	if err != nil {
+		t.Fatal(err)
+	}
+	b := dry.Model.Ledger(0.4).Book(s.Heads, dry.Sinks(s.Rates))
+	if worst := math.Abs(b.Residual[b.Worst]) / math.Max(b.In, b.Out); !(worst <= bookedTolerance) {
+		t.Errorf("a node keeps %.2e of the throughflow", worst)
+	}
+	if b = dry.Model.Ledger(1).Book(s.Heads, dry.Sinks(s.Rates)); !(math.Abs(b.Residual[b.Worst]) > 1e-6*b.In) {
+		t.Error("the wrong recharge is not seen")
+	}
+}
+
 func TestLedgerSeesPlantedFaults(t *testing.T) {
 	ctx := context.Background()
 	m := motions(1)[0]
@@ -80,7 +101,7 @@ func TestLedgerSeesPlantedFaults(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		b := f.Model.Ledger().Book(s.Heads, f.Sinks(s.Rates))
+		b := f.Model.Ledger(1).Book(s.Heads, f.Sinks(s.Rates))
 		if worst := math.Abs(b.Residual[b.Worst]) / math.Max(b.In, b.Out); !(worst > 100*bookedTolerance) {
 			t.Errorf("%s: the worst node keeps %.2e of the throughflow: not seen", c.name, worst)
 		} else {

@@ -77,14 +77,15 @@ type Booked struct {
 	LevelsApart float64 // largest difference of a prescribed head from its record [m]
 }
 
-// Ledger reads the site's records once; Book then serves any state.
-func (m *Model) Ledger() *Ledger {
+// Ledger reads the site's records once; Book then serves any state. Recharge multiplies that of the records: 1, but for a model made by
+// WithRecharge.
+func (m *Model) Ledger(recharge float64) *Ledger {
 	l := &Ledger{m: m}
 	places := make([]record, len(m.Mesh.Region))
 	l.corners = make([]corners3, len(m.Mesh.Region))
 	covers := newCovers(m.Site)
 	for t := range l.corners {
-		l.readTriangle(t, covers, &places[t])
+		l.readTriangle(t, covers, &places[t], recharge)
 	}
 	l.bookOutline()
 	l.bookRivers()
@@ -98,7 +99,7 @@ func (m *Model) Ledger() *Ledger {
 	return l
 }
 
-func (l *Ledger) readTriangle(t int, covers *covers, r *record) {
+func (l *Ledger) readTriangle(t int, covers *covers, r *record, recharge float64) {
 	m, c := l.m, &l.corners[t]
 	var x, y [3]float64
 	for k := range 3 {
@@ -112,6 +113,7 @@ func (l *Ledger) readTriangle(t int, covers *covers, r *record) {
 	c.gx[2], c.gy[2] = -ay/twice, ax/twice
 	c.gx[0], c.gy[0] = -c.gx[1]-c.gx[2], -c.gy[1]-c.gy[2]
 	*r = covers.at(orb.Point{(x[0] + x[1] + x[2]) / 3, (y[0] + y[1] + y[2]) / 3})
+	r.recharge *= recharge
 	c.recharge = r.recharge
 	sin, cos := math.Sincos(r.angle)
 	major, minor := r.mean*math.Sqrt(r.ratio), r.mean/math.Sqrt(r.ratio)

@@ -130,7 +130,7 @@ func TestLedgerOnRandomSites(t *testing.T) {
 		if err != nil {
 			t.Fatalf("site %d: %v", seed, err)
 		}
-		b := m.Ledger().Book(state.Heads, sinks)
+		b := m.Ledger(1).Book(state.Heads, sinks)
 		through := math.Max(b.In, b.Out)
 		if worst := math.Abs(b.Residual[b.Worst]); !(worst <= ledgerTolerance*through) || !(b.LevelsApart <= 1e-9) { // rounding of a level
 			t.Errorf("site %d: a node at %v keeps %.2e of the throughflow; levels differ by %.1e m", seed, m.At(b.Worst), worst/through, b.LevelsApart)

@@ -140,9 +140,10 @@ type BoundaryChange struct {
 
 // InwardStretch is where water comes in through a prescribed head.
 type InwardStretch struct {
+	State     string  `json:"state"`
 	Edge      string  `json:"edge"`
 	Saline    bool    `json:"saline"`
-	NoPumping float64 `json:"inflow_no_pumping_m3_per_d"`
+	NoPumping float64 `json:"inflow_no_pumping_m3_per_d"` // of the whole edge
 	AtPlan    float64 `json:"inflow_m3_per_d"`
 	Length    float64 `json:"length_m"`
 	Place     string  `json:"place"`

@@ -74,6 +74,7 @@ type audit struct {
 	rates  []float64
 	state  *adjoint.State
 	rows   []plan.Row // at the plan, in the order of state.Rows
+	booked []booking  // by operating state: without pumping, at the plan
 }
 
 // evidence makes the plan and checks it and the model behind it, each by other means than those that it was made with.
@@ -128,7 +129,7 @@ func (a *audit) begin() {
 	set("edge length at wells, springs and receptors", fmt.Sprintf("%.4g m, growing by %.3g per distance to %.4g m", r.Mesh.FinestM, r.Mesh.Growth, r.Mesh.CoarsestM))
 	set("accuracy asked of the mesh", fmt.Sprintf("%.3g %%%s", 100*a.accuracy(), statedWords(p.Mesh.Accuracy > 0)))
 	if len(r.States) > 1 {
-		set("operating state", r.State+": the default one; checks of the model look at its rates, the plan holds for all states")
+		set("operating state", r.State+": the default one; water balance, salt water, confined condition and optimum are checked for every state, the other checks look at this one")
 	}
 	set("coordinates", r.Plane)
 	set("vertical datum", r.Datum)

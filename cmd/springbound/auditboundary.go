@@ -147,7 +147,7 @@ func (a *audit) without(ctx context.Context, s source) (*plan.BoundaryLine, floa
 		}
 		b.Outcome = fmt.Sprintf("%s; without it there is no steady state at the plan's rates.", sentence(gives)[:len(sentence(gives))-1])
 		b.Receptors = []plan.BoundaryChange{{Receptor: "all", Decides: true, Limited: true}}
-		return b, math.MaxFloat64, nil
+		return b, math.Inf(1), nil
 	}
 	if err := other.watch(ctx, m); err != nil {
 		return stopped(err)
@@ -291,22 +291,16 @@ func passedWithout(with, without *plan.LimitResult) bool {
 func (a *audit) saltWater(context.Context) error {
 	l := plan.EvidenceLine{Check: "Salt water drawn in", Unit: "m³/d", How: "flow into the aquifer through edges marked saline, without pumping and at the plan, found along the edge node by node",
 		Reason: "no more than without pumping", Remedy: "lower the rates near the stretch named, or state a limit on the gradient there; a density study is another matter"}
-	saline, m := 0, a.j.field.Model
+	saline := 0
 	for _, e := range a.j.project.Site.Edges {
 		if e.Saline && e.Kind == aquifer.PrescribedHead {
 			saline++
 		}
 	}
-	before := map[int]float64{}
-	for _, t := range m.InwardFlow(a.state.Base) {
-		before[t.Index] += t.Inflow
-	}
 	more, worst := 0.0, ""
-	for _, t := range m.InwardFlow(a.state.Heads) {
-		s := plan.InwardStretch{Edge: t.Edge, Saline: t.Saline, NoPumping: before[t.Index], AtPlan: t.Inflow, Length: t.Length, Place: a.j.placeText(t.At)}
-		a.e.Inward = append(a.e.Inward, s)
-		if d := s.AtPlan - s.NoPumping; t.Saline && d > more {
-			more, worst = d, fmt.Sprintf("%.0f m³/d come in through edge %s over %.0f m, most near %s; %.0f without pumping", t.Inflow, t.Edge, t.Length, s.Place, s.NoPumping)
+	for k := 0; k+1 < len(a.booked); k += 2 {
+		if d, words := a.inward(&a.booked[k], &a.booked[k+1]); d > more {
+			more, worst = d, words
 		}
 	}
 	if saline == 0 {
@@ -320,4 +314,26 @@ func (a *audit) saltWater(context.Context) error {
 	}
 	a.add(l, more, balanceTolerance*math.Max(1, a.e.Balances[1].In))
 	return nil
+}
+
+// inward lists where water comes in at the plan, and says by how much the worst saline edge takes in more than without pumping [m³/d].
+func (a *audit) inward(base, planned *booking) (more float64, words string) {
+	before, after, largest := map[int]float64{}, map[int]float64{}, map[int]int{}
+	for _, t := range base.model.InwardStretches(base.heads) {
+		before[t.Index] += t.Inflow
+	}
+	for _, t := range planned.model.InwardStretches(planned.heads) {
+		if _, seen := largest[t.Index]; !seen || t.Inflow > a.e.Inward[largest[t.Index]].AtPlan {
+			largest[t.Index] = len(a.e.Inward)
+		}
+		after[t.Index] += t.Inflow
+		a.e.Inward = append(a.e.Inward, plan.InwardStretch{State: planned.name, Edge: t.Edge, Saline: t.Saline, NoPumping: before[t.Index], AtPlan: t.Inflow, Length: t.Length, Place: a.j.placeText(t.At)})
+	}
+	for i, e := range a.j.project.Site.Edges {
+		if d := after[i] - before[i]; e.Saline && d > more {
+			s := a.e.Inward[largest[i]]
+			more, words = d, fmt.Sprintf("%s %.0f m³/d come in through edge %s, the largest part over %.0f m near %s; without pumping %.0f m³/d", planned.name, after[i], e.Name, s.Length, s.Place, before[i])
+		}
+	}
+	return more, words
 }

@@ -24,21 +24,45 @@ func relative(got, want float64) float64 {
 	return math.Abs(got-want) / math.Abs(want)
 }
 
-// balance books the water of both states anew, at every node and by every feature.
-func (a *audit) balance(context.Context) error {
+// booking is a state whose water is booked anew.
+type booking struct {
+	name   string
+	model  *aquifer.Model
+	ledger *aquifer.Ledger
+	sinks  []aquifer.Sink
+	heads  []float64
+	b      *aquifer.Booked
+}
+
+// bookings lists the state without pumping and that at the plan, of every operating state.
+func (a *audit) bookings(ctx context.Context) ([]booking, error) {
 	m := a.j.field.Model
-	ledger := m.Ledger()
-	type booking struct {
-		name  string
-		sinks []aquifer.Sink
-		heads []float64
-		b     *aquifer.Booked
+	ledger := m.Ledger(1)
+	out := []booking{{name: "without pumping", model: m, ledger: ledger, heads: a.state.Base}, {name: "at the plan", model: m, ledger: ledger, heads: a.state.Heads, sinks: a.j.field.Sinks(a.rates)}}
+	for _, s := range a.j.otherStates() {
+		rates := ratesInState(a.report, s.index)
+		state, err := s.field.Changes(ctx, rates)
+		if err != nil {
+			return nil, err
+		}
+		ledger := s.field.Model.Ledger(a.j.project.States[s.index].RechargeFactor / defaultFactor(a.j.project))
+		out = append(out, booking{name: "without pumping, " + s.name, model: s.field.Model, ledger: ledger, heads: state.Base},
+			booking{name: "at the plan, " + s.name, model: s.field.Model, ledger: ledger, heads: state.Heads, sinks: s.field.Sinks(rates)})
 	}
-	states := []booking{{name: "without pumping", heads: a.state.Base}, {name: "at the plan", heads: a.state.Heads, sinks: a.j.field.Sinks(a.rates)}}
+	return out, nil
+}
+
+// balance books the water of every state anew, at every node and by every feature.
+func (a *audit) balance(ctx context.Context) error {
+	states, err := a.bookings(ctx)
+	if err != nil {
+		return err
+	}
+	a.booked = states
 	through, levels := 0.0, 0.0
 	for i := range states {
 		s := &states[i]
-		s.b = ledger.Book(s.heads, s.sinks)
+		s.b = s.ledger.Book(s.heads, s.sinks)
 		through = math.Max(through, math.Max(s.b.In, s.b.Out))
 		levels = math.Max(levels, s.b.LevelsApart)
 	}
@@ -46,8 +70,8 @@ func (a *audit) balance(context.Context) error {
 	for _, s := range states {
 		nodal = math.Max(nodal, math.Abs(s.b.Residual[s.b.Worst]))
 		whole = math.Max(whole, math.Abs(s.b.In-s.b.Out))
-		e := plan.EvidenceBalance{State: s.name, In: s.b.In, Out: s.b.Out, Worst: math.Abs(s.b.Residual[s.b.Worst]), WorstPlace: a.j.placeText(m.At(s.b.Worst))}
-		model := m.Balance(s.heads, s.sinks)
+		e := plan.EvidenceBalance{State: s.name, In: s.b.In, Out: s.b.Out, Worst: math.Abs(s.b.Residual[s.b.Worst]), WorstPlace: a.j.placeText(s.model.At(s.b.Worst))}
+		model := s.model.Balance(s.heads, s.sinks)
 		for _, f := range append(s.b.Features, s.b.Wells) {
 			line := plan.EvidenceBalanceLine{Feature: f.Feature, Kind: string(f.Kind), In: f.In, Out: f.Out}
 			for _, x := range append(model.Features, model.Wells) {

@@ -145,10 +145,19 @@ func (a *audit) figures(f *adjoint.Field, s *adjoint.State) *meshFigures {
 	for w, q := range a.rates {
 		if q != 0 {
 			level := wellLevel(f, w, s.Heads, a.rates)
-			put("level in well", f.Wells[w].ID, "m", level, math.Abs(s.Base[f.Node(w)]-level))
+			put("level in well", f.Wells[w].ID, "m", level, a.drawdownSize(w, s.Base[f.Node(w)]-level))
 		}
 	}
 	return g
+}
+
+// drawdownSize is the drawdown in a bore; where wells work against each other there, the sum of their parts.
+func (a *audit) drawdownSize(w int, drawdown float64) float64 {
+	r, size := &a.report.Wells[w], 0.0
+	for k, d := range r.DrawdownByWell {
+		size += math.Abs(d * a.rates[k])
+	}
+	return math.Max(math.Abs(drawdown), size)
 }
 
 // convergenceLines judges every figure. Scales are those of the plan's mesh.

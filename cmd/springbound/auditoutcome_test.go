@@ -41,6 +41,10 @@ func TestAuditOutcomes(t *testing.T) {
 	}{
 		{"one canal alone fixes the head", func(d *draft) { d.layers["edges"] = d.layers["edges"][:1] }, "Without edge west", plan.NotDone, "only thing that fixes the head"},
 		{"a limit watches the canal that is taken away", func(d *draft) { d.layers["edges"][1].properties["available_flow_m3_per_d"] = 300 }, "Without edge east", plan.Fail, "planned anew, the total is"},
+		{"without the canal the brook dries up and nothing fixes the head", func(d *draft) {
+			d.layers["edges"] = d.layers["edges"][:1]
+			d.layers["rivers"] = []feature{{map[string]any{"name": "Brook", "water_level_m": 10.1, "bed_level_m": 10, "width_m": 2, "bed_resistance_d": 20}, "LineString", lineString(turns(1)[0].at(1000, 300), turns(1)[0].at(2500, 300))}}
+		}, "Without edge west", plan.Fail, "no steady state"},
 		{"salt water comes in", func(d *draft) { d.layers["edges"][0].properties["saline"] = true }, "Salt water drawn in", plan.Fail, "through edge west"},
 		{"no salt water", func(d *draft) {}, "Salt water drawn in", plan.NotDone, "No edge is marked saline"},
 		{"head below the top", func(d *draft) { d.toml = strings.Replace(d.toml, "[aquifer]\n", "[aquifer]\ntop_m = 9.9\n", 1) }, "Head above the top", plan.Fail, "below the top"},
@@ -184,5 +188,26 @@ func TestAuditBytesAndInterruption(t *testing.T) {
 	}
 	if _, err := os.Stat(to); !os.IsNotExist(err) {
 		t.Error("something was written")
+	}
+}
+
+// The example, as the README tells it: of all checks the coast alone fails, and without it the fen falls by two thirds more.
+func TestAuditOfTheExample(t *testing.T) {
+	if os.Getenv("SPRINGBOUND_LONG") != "1" {
+		t.Skip("set SPRINGBOUND_LONG=1: it solves on half a million nodes")
+	}
+	e := audited(t, filepath.Join(moduleRoot(t), "examples", "varrow-bight"), nil, nil)
+	if got := failing(e); len(got) != 1 || got[0] != "Without edge Coast" {
+		t.Errorf("%q fail", got)
+	}
+	for _, r := range e.Boundaries[0].Receptors {
+		if r.Receptor == "SEDGE" && !(math.Abs(*r.Factor-5.0/3) < 0.05) {
+			t.Errorf("the fen falls by %.2f times as much", *r.Factor)
+		}
+	}
+	for _, c := range e.Convergence[:6] { // the receptors: heads are smooth there, and three meshes tell the order to a tenth or two
+		if c.Order == nil || !(math.Abs(*c.Order-2) <= 0.2) {
+			t.Errorf("%s %s: order %s", c.What, c.ID, figureText(c.Order))
+		}
 	}
 }

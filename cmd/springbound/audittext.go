@@ -199,13 +199,13 @@ func textBoundaries(b *bytes.Buffer, e *plan.Evidence) {
 		return
 	}
 	textTable(b, "Where water comes in through a prescribed head", func(t *tabwriter.Writer) {
-		fmt.Fprintln(t, "edge\tsaline\tm³/d without pumping\tm³/d at the plan\tlength, m\tmost near")
+		fmt.Fprintln(t, "edge\tstate\tsaline\twhole edge without pumping, m³/d\tm³/d at the plan\tlength, m\tmost near")
 		for _, s := range e.Inward {
 			salt := "no"
 			if s.Saline {
 				salt = "yes"
 			}
-			fmt.Fprintf(t, "%s\t%s\t%.1f\t%.1f\t%.0f\t%s\n", s.Edge, salt, s.NoPumping, s.AtPlan, s.Length, s.Place)
+			fmt.Fprintf(t, "%s\t%s\t%s\t%.1f\t%.1f\t%.0f\t%s\n", s.Edge, s.State, salt, s.NoPumping, s.AtPlan, s.Length, s.Place)
 		}
 	})
 }

@@ -340,12 +340,12 @@ func (s *sheet) evidenceInward(row int, e *plan.Evidence) int {
 		return row
 	}
 	row = s.sectionHead(row+1, evidenceEnd, "Where water comes in through a prescribed head")
-	s.heads(row, 1, "Edge", "", "Saline", ">Without pumping\nm³/d", ">At the plan\nm³/d", ">Length\nm", "Most near", "", "")
+	s.heads(row, 1, "Edge, state", "", "Saline", ">Whole edge without pumping\nm³/d", ">At the plan\nm³/d", ">Length\nm", "Most near", "", "")
 	s.merge(row, 1, 2)
 	s.merge(row, 7, evidenceEnd)
 	for _, t := range e.Inward {
 		row++
-		s.across(row, 1, 2, t.Edge, line)
+		s.across(row, 1, 2, joinFilled(", ", t.Edge, t.State), line)
 		salt := "no"
 		if t.Saline {
 			salt = "yes"
