@@ -110,7 +110,7 @@ func (p *planner) askRanges(ctx context.Context, g *programme, r *rangeProgramme
 	ask := func(side convex.SideOf, f func(convex.Range)) {
 		sides, take = append(sides, side), append(take, f)
 	}
-	asked := p.worthRanging(g, r)
+	asked, askedColumn := p.worthRanging(g, r)
 	for i, o := range g.owners {
 		switch {
 		case !asked(o):
@@ -137,6 +137,8 @@ func (p *planner) askRanges(ctx context.Context, g *programme, r *rangeProgramme
 		side := convex.UpperSide
 		atMin := r.solution.X[k] == w.Min && (w.Min < w.Max || p.minHolds[i])
 		switch {
+		case !askedColumn(k):
+			continue
 		case w.Min == w.Max:
 			side = convex.BothSides
 		case atMin:
