@@ -38,10 +38,12 @@ type Solved struct {
 // System solves with the matrix of a model, or of one of its settled states.
 type System interface {
 	SolveFree(ctx context.Context, block []float64, k int) error
+	SolveAt(ctx context.Context, quantities []aquifer.Quantity, nodes []int32) ([][]float64, error)
 }
 
 // Solve makes one adjoint solve per distinct functional and returns z at the wanted nodes; each, where not nil, gets every functional's
-// whole field over the nodes, in the functionals' order of first appearance. Prescribed nodes have z = 0.
+// whole field over the nodes, in the functionals' order of first appearance. Without it only what the wanted nodes need is solved.
+// Prescribed nodes have z = 0.
 func Solve(ctx context.Context, m *aquifer.Model, system System, fs []Functional, wanted []int32, each func(functional int, z []float64) error, progress func(done, total int)) (*Solved, error) {
 	n := m.Unknowns()
 	first := map[string]int{}
@@ -63,38 +65,32 @@ func Solve(ctx context.Context, m *aquifer.Model, system System, fs []Functional
 		users[d] = append(users[d], i)
 	}
 	width := min(blockWidth, len(distinct))
-	block := make([]float64, n*width)
+	var block []float64
+	if each != nil {
+		block = make([]float64, n*width)
+	}
 	for start := 0; start < len(distinct); start += width {
 		if err := ctx.Err(); err != nil {
 			return nil, fmt.Errorf("adjoint: stopped after %d of %d solves: %w", start, len(distinct), err)
 		}
 		k := min(width, len(distinct)-start)
-		clear(block[:n*k])
-		for c := 0; c < k; c++ {
-			q := fs[distinct[start+c]].Quantity
-			for i, node := range q.Nodes {
-				if u := m.Unknown(node); u >= 0 {
-					block[c*n+int(u)] += q.Weights[i]
-				}
-			}
+		quantities := make([]aquifer.Quantity, k)
+		for c := range quantities {
+			quantities[c] = fs[distinct[start+c]].Quantity
 		}
-		if err := system.SolveFree(ctx, block[:n*k], k); err != nil {
+		found, err := solveBlock(ctx, m, system, quantities, wanted, block)
+		if err != nil {
 			return nil, err
 		}
-		for c := 0; c < k; c++ {
-			z := block[c*n : (c+1)*n]
-			values := make([]float64, len(wanted))
-			for i, node := range wanted {
-				if u := m.Unknown(node); u >= 0 {
-					values[i] = z[u]
-				}
-				if math.IsNaN(values[i]) || math.IsInf(values[i], 0) {
+		for c, values := range found {
+			for _, v := range values {
+				if math.IsNaN(v) || math.IsInf(v, 0) {
 					return nil, fmt.Errorf("adjoint: the influence of %s is not finite", fs[distinct[start+c]].Name)
 				}
 			}
 			at[start+c] = values
 			if each != nil {
-				field := m.Spread(z)
+				field := m.Spread(block[c*n : (c+1)*n])
 				for _, i := range users[start+c] {
 					if err := each(i, field); err != nil {
 						return nil, err
@@ -111,6 +107,35 @@ func Solve(ctx context.Context, m *aquifer.Model, system System, fs []Functional
 		out.At = append(out.At, at[same[i]])
 	}
 	return out, nil
+}
+
+// solveBlock returns z of each quantity at the wanted nodes; where there is a block, whole fields are left in it.
+func solveBlock(ctx context.Context, m *aquifer.Model, system System, quantities []aquifer.Quantity, wanted []int32, block []float64) ([][]float64, error) {
+	if block == nil {
+		return system.SolveAt(ctx, quantities, wanted)
+	}
+	n, k := m.Unknowns(), len(quantities)
+	clear(block[:n*k])
+	for c, q := range quantities {
+		for i, node := range q.Nodes {
+			if u := m.Unknown(node); u >= 0 {
+				block[c*n+int(u)] += q.Weights[i]
+			}
+		}
+	}
+	if err := system.SolveFree(ctx, block[:n*k], k); err != nil {
+		return nil, err
+	}
+	found := make([][]float64, k)
+	for c := range found {
+		found[c] = make([]float64, len(wanted))
+		for i, node := range wanted {
+			if u := m.Unknown(node); u >= 0 {
+				found[c][i] = block[c*n+int(u)]
+			}
+		}
+	}
+	return found, nil
 }
 
 // signature is equal for quantities with the same weights on unknown heads.
