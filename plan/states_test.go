@@ -357,7 +357,8 @@ func TestMonthsOfUse(t *testing.T) {
 		t.Errorf("A is %s; %+v", r.Wells[0].Mode, r.YearQuotas)
 	}
 	said := strings.Join(append(append([]string(nil), r.Findings...), r.NotAssessed...), "\n")
-	for _, want := range []string{"average: A stands still, as no licence of it is for all of its months", "licence summer: its year begins on 06-01"} {
+	for _, want := range []string{"average: A stands still, as no licence of it is for all of its months", "licence summer: its year begins on 06-01",
+		"licence early is for some of the months of average only; it is held for the whole of it"} {
 		if !strings.Contains(said, want) {
 			t.Errorf("no %q in\n%s", want, said)
 		}

@@ -144,6 +144,16 @@ func anyMonth(a, b []int) bool {
 	return false
 }
 
+// allMonths tells whether each of some months is in a list; an empty list is every month.
+func allMonths(some, months []int) bool {
+	for _, m := range some {
+		if !hasMonth(months, m) {
+			return false
+		}
+	}
+	return true
+}
+
 func hasMonth(months []int, m int) bool {
 	for _, x := range months {
 		if x == m {
@@ -285,6 +295,15 @@ func (e *expansion) sayMonths() {
 	say := func(what, day string, months []int) {
 		if len(months) > 0 && len(months) < 12 && len(without) > 0 {
 			e.notAssessed.addf("%s: its months, in %s, whose months are not stated; it is taken to hold there", what, list(without))
+		}
+		var partly []string
+		for _, s := range b.States {
+			if len(s.Months) > 0 && len(months) > 0 && anyMonth(s.Months, months) && !allMonths(s.Months, months) {
+				partly = append(partly, s.Name)
+			}
+		}
+		if len(partly) > 0 {
+			e.findings.addf("%s is for some of the months of %s only; it is held for the whole of %s", what, list(partly), plural(len(partly), "it", "each"))
 		}
 		if day != "" {
 			e.notAssessed.addf("%s: its year begins on %s; every year is taken to hold all operating states with their days, so that this day makes no difference", what, day)
