@@ -142,15 +142,12 @@ func statedWords(stated bool) string {
 	return ", not stated in [mesh], so the default"
 }
 
-// defaultAccuracy is the relative error asked of the mesh where [mesh] accuracy says nothing: half a per cent, far below what
-// transmissivity and recharge are known to.
-const defaultAccuracy = 0.005
-
+// accuracy is the relative error asked of the mesh, by default half a per cent: far below what transmissivity and recharge are known to.
 func (a *audit) accuracy() float64 {
 	if v := a.j.project.Mesh.Accuracy; v > 0 {
 		return v
 	}
-	return defaultAccuracy
+	return adjoint.DefaultAccuracy
 }
 
 // add appends a line that compares a figure with what is allowed.

@@ -33,6 +33,7 @@ type source struct {
 	index  int
 	name   string
 	share  *float64 // of the pumped water
+	flow   float64  // more into the aquifer than without pumping [m³/d]
 	judged bool     // a prescribed head: a line of its own
 }
 
@@ -48,7 +49,7 @@ func (a *audit) sources() []source {
 		s.judged = o.Kind == aquifer.EdgeFeature && a.j.project.Site.Edges[o.Index].Kind == aquifer.PrescribedHead
 		for _, x := range a.report.Capture {
 			if x.Feature == o.Name && x.Kind == string(o.Kind) {
-				s.share = x.Share
+				s.share, s.flow = x.Share, x.Flow
 			}
 		}
 		out = append(out, s)
@@ -111,13 +112,19 @@ func (a *audit) boundaryLine(l plan.EvidenceLine, b *plan.BoundaryLine, growth f
 		a.e.Add(l)
 		return
 	}
+	limited := false
+	l.Result = plan.Pass
 	for _, r := range b.Receptors {
+		limited = limited || r.Limited
 		if r.Decides {
 			l.Result = plan.Fail
 		}
 	}
-	if l.Result == "" {
-		l.Result = plan.Pass
+	if !limited {
+		l.Result = plan.NotDone
+		l.Sentence += " No receptor carries a limit to judge it by."
+		a.e.Add(l)
+		return
 	}
 	a.add(l, growth, decidesShare)
 }
@@ -126,10 +133,7 @@ func (a *audit) boundaryLine(l plan.EvidenceLine, b *plan.BoundaryLine, growth f
 // source cannot be taken away.
 func (a *audit) without(ctx context.Context, s source) (*plan.BoundaryLine, float64, error) {
 	b := &plan.BoundaryLine{Feature: s.name, Kind: string(s.kind), Share: s.share, Before: a.report.TotalRate}
-	gives := "it gives no share of the pumped water that could be told"
-	if s.share != nil {
-		gives = fmt.Sprintf("it gives %.0f %% of the pumped water", 100**s.share)
-	}
+	gives := givesWords(s)
 	m, err := a.j.field.Model.Without(ctx, a.j.modelOptions(a.workers), s.kind, s.index)
 	var only *aquifer.OnlySource
 	if errors.As(err, &only) {
@@ -186,6 +190,17 @@ func (a *audit) ratesByState() [][]float64 {
 		out[k] = ratesInState(a.report, k)
 	}
 	return out
+}
+
+// givesWords says what a source has to do with the pumped water.
+func givesWords(s source) string {
+	switch {
+	case s.flow < 0:
+		return fmt.Sprintf("it takes %.0f m³/d more than without pumping", -s.flow)
+	case s.share == nil:
+		return fmt.Sprintf("it gives %.0f m³/d more than without pumping", s.flow)
+	}
+	return fmt.Sprintf("it gives %.0f %% of the pumped water", 100**s.share)
 }
 
 // boundaryWords says what a missing source does to the receptors at the plan's rates.

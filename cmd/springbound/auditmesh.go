@@ -197,7 +197,7 @@ func judgeConvergence(c *plan.ConvergenceLine, ofPlan int) {
 		c.Behaviour = "swings"
 		index(largest, safetyOfTwo)
 	case !(ratio < 1):
-		c.Behaviour = "does not settle"
+		c.Behaviour = "does not settle yet"
 		index(math.Abs(first)+math.Abs(second), safetyOfTwo)
 	default:
 		p := -math.Log2(ratio)

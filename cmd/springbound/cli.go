@@ -22,7 +22,8 @@ A first plan:
     springbound check my-site          reads everything and reports every problem at once
     springbound plan  my-site          writes plan.xlsx, plan.json and maps to my-site/out
 
-Exit codes: 0 done, 2 usage, 3 bad data, 4 no plan can meet the limits or the plan is not valid, 5 numerical failure, 130 interrupted.`
+Exit codes: 0 done, 2 usage, 3 bad data, 4 no plan can meet the limits, the plan is not valid, or
+a check of the audit fails, 5 numerical failure, 130 interrupted.`
 
 // common are the flags of every command that reads a project.
 type common struct {

@@ -16,7 +16,7 @@ const (
 	exitDone        = 0
 	exitUsage       = 2
 	exitBadData     = 3
-	exitNoPlan      = 4 // no plan can meet the limits, or the plan is not valid
+	exitNoPlan      = 4 // no plan can meet the limits, the plan is not valid, or a check of the audit fails
 	exitNumerical   = 5
 	exitInterrupted = 130
 )
