@@ -19,17 +19,25 @@ func elasticDense(t testing.TB, p *Problem, list []Relaxable) *Problem {
 		columns = append(columns, c)
 	}
 	n := len(columns)
-	entry := make([][2]int, p.Rows())
+	entry := make([]int, p.Rows())
+	upper := func(weight float64) float64 { // a weight of zero keeps the side
+		if weight == 0 {
+			return 0
+		}
+		return inf
+	}
 	for _, r := range list {
-		entry[r.Row] = [2]int{len(columns), len(columns) + 1}
-		columns = append(columns, Column{Cost: r.LowerWeight, Upper: inf}, Column{Cost: r.UpperWeight, Upper: inf})
+		entry[r.Row] = len(columns)
+		columns = append(columns, Column{Cost: r.LowerWeight, Upper: upper(r.LowerWeight)}, Column{Cost: r.UpperWeight, Upper: upper(r.UpperWeight)})
 	}
 	q := mustProblem(t, Minimise, columns)
 	for i := range p.Rows() {
 		r := p.Row(i)
 		a := make([]float64, len(columns))
 		copy(a[:n], r.Coefficients)
-		a[entry[i][0]], a[entry[i][1]] = 1, -1
+		if entry[i] > 0 {
+			a[entry[i]], a[entry[i]+1] = 1, -1
+		}
 		r.Coefficients = a
 		if _, err := q.AddRow(r); err != nil {
 			t.Fatal(err)

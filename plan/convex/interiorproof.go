@@ -16,8 +16,7 @@ func interiorRest(ctx context.Context, p *Problem, o Options) *Solution {
 		}
 		return s
 	}
-	elastic := newElastic(p, everyRelaxable(p))
-	e := solve(elastic.p)
+	e := solve(everyRowElastic(p))
 	if e.Status != Optimal {
 		return emptySolution(p, e.Status)
 	}
@@ -39,14 +38,19 @@ func interiorRest(ctx context.Context, p *Problem, o Options) *Solution {
 	return out
 }
 
-// everyRelaxable lets every row give way, weighted by its largest entry.
-func everyRelaxable(p *Problem) []Relaxable {
-	list := make([]Relaxable, p.Rows())
-	u := measure(p)
-	for i := range list {
-		list[i] = Relaxable{Row: i, LowerWeight: u.row[i], UpperWeight: u.row[i]}
+// everyRowElastic is p without costs, with columns that let every row give way, weighted by its largest entry.
+func everyRowElastic(p *Problem) *Problem {
+	e := &elastic{p: p.Clone()}
+	e.p.sense, e.p.hessian = Minimise, nil
+	for j := range e.p.columns {
+		e.p.columns[j].Cost = 0
 	}
-	return list
+	u := measure(p)
+	for i := range p.rowName {
+		e.addUnit(i, i, u.row[i], p.rowLower[i], 1)
+		e.addUnit(i, i, u.row[i], p.rowUpper[i], -1)
+	}
+	return e.p
 }
 
 // farkas turns the row prices of the elastic problem into a proof.

@@ -38,87 +38,30 @@ type Relaxation struct {
 // Graves 1975), and for each listed row the least change of it alone that does. The error is not nil for an index out of range or a
 // weight that is negative or not finite.
 func LeastRelaxation(ctx context.Context, p *Problem, relaxable []Relaxable) (*Relaxation, error) {
-	if err := checkRelaxable(p, relaxable); err != nil {
+	r, err := NewRelaxer(p, relaxable)
+	if err != nil {
 		return nil, err
 	}
-	e := newElastic(p, relaxable)
-	t := newSession(e.p)
-	t.e.startFromRows()
-	limit := Options{}.iterationLimit(e.p.Rows(), e.p.allColumns())
-	out := &Relaxation{Status: t.zoom(ctx, limit, t.solve(ctx, limit)), Rows: make([]RowRelaxation, len(relaxable))}
-	for r := range out.Rows {
-		out.Rows[r] = RowRelaxation{Row: relaxable[r].Row, Alone: math.NaN(), AloneAmount: math.NaN()}
-	}
-	if out.Status == Infeasible {
-		for r := range out.Rows {
-			out.Rows[r].Alone, out.Rows[r].AloneAmount = math.Inf(1), math.Inf(1)
-		}
-	}
+	out := r.Least(ctx, func(int) bool { return true })
 	if out.Status != Optimal {
 		return out, nil
 	}
-	out.X = report(t, Optimal).X[:p.Columns()]
-	for k, u := range e.p.unit {
-		by := math.Max(0, t.value(p.Columns()+k))
-		out.Total += u.Cost * by
-		e.amount(&out.Rows[e.owner[k]], k, by)
-	}
-	if status := e.eachAlone(ctx, t, limit, out); status != Optimal {
-		out.Status = status
-	}
-	return out, nil
-}
-
-// eachAlone finds for each listed row how far it must give way when no other does. A proof that nothing is feasible stays one when a
-// row gives way that it does not use, so that every proof settles the rows outside it at once; only the rows in all proofs found so far
-// are solved for. The result is Optimal or what stopped it.
-func (e *elastic) eachAlone(ctx context.Context, t *session, limit int, out *Relaxation) Status {
 	if out.Total == 0 {
-		for r := range out.Rows {
-			out.Rows[r].Alone, out.Rows[r].AloneAmount = 0, 0
+		for k := range out.Rows {
+			out.Rows[k].Alone, out.Rows[k].AloneAmount = 0, 0
 		}
-		return Optimal
+		return out, nil
 	}
-	hopeless := make([]bool, len(out.Rows))
-	use := func(proof []float64) {
-		for r := range hopeless {
-			hopeless[r] = hopeless[r] || !e.usedBy(proof, r)
-		}
+	every := make([]int, len(relaxable))
+	for k := range every {
+		every[k] = k
 	}
-	switch status := e.alone(ctx, t, limit, nobody, &RowRelaxation{}); status {
-	case Infeasible:
-		use(t.e.proof)
-	case Optimal: // by so little that it does not count alone
-	default:
-		return status
+	weighted, amount, status := r.Alone(ctx, every)
+	for k := range out.Rows {
+		out.Rows[k].Alone, out.Rows[k].AloneAmount = weighted[k], amount[k]
 	}
-	for r := range out.Rows {
-		if hopeless[r] {
-			out.Rows[r].Alone, out.Rows[r].AloneAmount = math.Inf(1), math.Inf(1)
-			continue
-		}
-		switch status := e.alone(ctx, t, limit, r, &out.Rows[r]); status {
-		case Infeasible:
-			use(t.e.proof)
-		case Optimal:
-		default:
-			return status
-		}
-	}
-	return Optimal
-}
-
-// nobody stands for no row.
-const nobody = -1
-
-// usedBy tells that a proof uses a side of row r of the list that may give way.
-func (e *elastic) usedBy(proof []float64, r int) bool {
-	for k, owner := range e.owner {
-		if y := proof[e.p.unitRow[k]]; owner == r && y*e.p.unitSign[k] < 0 {
-			return true
-		}
-	}
-	return false
+	out.Status = status
+	return out, nil
 }
 
 func checkRelaxable(p *Problem, relaxable []Relaxable) error {
@@ -135,72 +78,162 @@ func checkRelaxable(p *Problem, relaxable []Relaxable) error {
 	return nil
 }
 
-// elastic is a problem with a helper column for each side that may give way.
+// elastic is a problem without costs and with a helper column for each side of a row that may give way. A row with one entry is a bound
+// of its column; where it may give way its helper is a copy of that column, which takes on what passes the bound.
 type elastic struct {
-	p     *Problem
-	owner []int // by helper column: index in the list of relaxable rows
+	p       *Problem
+	helpers []elasticHelper
+}
+
+// elasticHelper is a column by which a side gives way.
+type elasticHelper struct {
+	column  int     // in the elastic problem
+	owner   int     // index in the list of relaxable rows
+	upper   bool    // of the row's upper side
+	weight  float64 // per unit of the row
+	size    float64 // units of the row per unit of the column
+	most    float64 // of the column: what always holds allows no more
+	of      int     // the column that it is a copy of, -1: none
+	upperOf bool    // it adds to that column, otherwise it takes from it
 }
 
 func newElastic(p *Problem, relaxable []Relaxable) *elastic {
-	e := &elastic{p: p.Clone()}
-	e.p.sense, e.p.hessian = Minimise, nil
-	for j := range e.p.columns {
+	n := p.Columns()
+	e := &elastic{p: &Problem{sense: Minimise, columns: append([]Column(nil), p.columns...)}}
+	bounds := findRowBounds(p)
+	weights := make([]Relaxable, p.Rows()) // by row: the sum of its entries in the list
+	for _, v := range relaxable {
+		weights[v.Row].LowerWeight += v.LowerWeight
+		weights[v.Row].UpperWeight += v.UpperWeight
+	}
+	e.keepSeveral(p, bounds, relaxable)
+	low, high := make([]float64, n), make([]float64, n)
+	for j := range low {
 		e.p.columns[j].Cost = 0
+		low[j], high[j] = p.columns[j].Lower, p.columns[j].Upper
 	}
-	add := func(r, row int, weight, bound, sign float64) {
-		if weight == 0 || !finite(bound) {
-			return
+	for i, w := range weights {
+		if !bounds.is[i] {
+			continue
 		}
-		e.p.unit = append(e.p.unit, Column{Cost: weight, Lower: 0, Upper: math.Inf(1)})
-		e.p.unitRow = append(e.p.unitRow, row)
-		e.p.unitSign = append(e.p.unitSign, sign)
-		e.owner = append(e.owner, r)
+		j, lowerWeight, upperWeight := bounds.column[i], w.LowerWeight, w.UpperWeight
+		if bounds.flipped[i] {
+			lowerWeight, upperWeight = upperWeight, lowerWeight
+		}
+		if lowerWeight == 0 {
+			low[j] = math.Max(low[j], bounds.lower[i])
+		}
+		if upperWeight == 0 {
+			high[j] = math.Min(high[j], bounds.upper[i])
+		}
 	}
-	for r, v := range relaxable {
-		add(r, v.Row, v.LowerWeight, p.rowLower[v.Row], 1)
-		add(r, v.Row, v.UpperWeight, p.rowUpper[v.Row], -1)
+	for j := range low {
+		e.p.columns[j].Lower, e.p.columns[j].Upper = low[j], high[j]
+	}
+	e.addCopies(bounds, relaxable, low, high)
+	place := make([]int, p.Rows())
+	for i := range place {
+		if !bounds.is[i] {
+			place[i] = e.p.Rows()
+			e.p.takeRow(p, i)
+			e.extend(place[i])
+		}
+	}
+	for k, v := range relaxable {
+		if !bounds.is[v.Row] {
+			e.addUnit(k, place[v.Row], v.LowerWeight, p.rowLower[v.Row], 1)
+			e.addUnit(k, place[v.Row], v.UpperWeight, p.rowUpper[v.Row], -1)
+		}
+	}
+	for k := range e.helpers {
+		h := &e.helpers[k]
+		if h.of < 0 {
+			h.column += len(e.p.columns)
+		}
 	}
 	return e
 }
 
-// amount books the value of helper column k.
-func (e *elastic) amount(r *RowRelaxation, k int, by float64) {
-	if e.p.unitSign[k] > 0 {
-		r.Lower = by
-	} else {
-		r.Upper = by
+// keepSeveral leaves those rows that may give way as rows that share a side of a column with others that may.
+func (e *elastic) keepSeveral(p *Problem, b *rowBounds, relaxable []Relaxable) {
+	count := make([][2]int, p.Columns())
+	each := func(v Relaxable, f func(c *int)) {
+		if !b.is[v.Row] {
+			return
+		}
+		if v.LowerWeight > 0 && finite(p.rowLower[v.Row]) {
+			f(&count[b.column[v.Row]][b.side(v.Row, LowerSide)-LowerSide])
+		}
+		if v.UpperWeight > 0 && finite(p.rowUpper[v.Row]) {
+			f(&count[b.column[v.Row]][b.side(v.Row, UpperSide)-LowerSide])
+		}
+	}
+	for _, v := range relaxable {
+		each(v, func(c *int) { *c++ })
+	}
+	var several []int
+	for _, v := range relaxable {
+		each(v, func(c *int) {
+			if *c > 1 {
+				several = append(several, v.Row)
+			}
+		})
+	}
+	for _, i := range several {
+		b.is[i] = false
 	}
 }
 
-// alone solves with the helper columns of one row only.
-func (e *elastic) alone(ctx context.Context, t *session, limit, r int, out *RowRelaxation) Status {
-	n, dearest := len(e.p.columns), 0.0
-	for k, owner := range e.owner {
-		upper := 0.0
-		if owner == r {
-			upper = math.Inf(1)
-		}
-		t.setColumn(n+k, 0, upper)
-		if owner == r {
-			dearest = math.Max(dearest, math.Abs(t.s.cost[n+k]))
-		}
+// addCopies tightens the columns by the bounds that may give way and adds the copies.
+func (e *elastic) addCopies(b *rowBounds, relaxable []Relaxable, low, high []float64) {
+	add := func(owner int, upper bool, weight, size, most float64, of int, upperOf bool) {
+		h := elasticHelper{column: len(e.p.columns), owner: owner, upper: upper, weight: weight, size: size, most: most, of: of, upperOf: upperOf}
+		e.helpers = append(e.helpers, h)
+		e.p.columns = append(e.p.columns, Column{Cost: weight * size, Upper: most})
 	}
-	if dearest > 0 {
-		t.multiplyCost(powerOfTwo(1 / dearest))
-	}
-	status := t.zoom(ctx, limit, t.solve(ctx, limit))
-	switch status {
-	case Infeasible:
-		out.Alone, out.AloneAmount = math.Inf(1), math.Inf(1)
-	case Optimal:
-		out.Alone, out.AloneAmount = 0, 0
-		for k, owner := range e.owner {
-			if owner == r {
-				by := math.Max(0, t.value(n+k))
-				out.Alone += by * e.p.unit[k].Cost
-				out.AloneAmount += by
-			}
+	for k, v := range relaxable {
+		if !b.is[v.Row] {
+			continue
+		}
+		j := b.column[v.Row]
+		lowerWeight, upperWeight := v.LowerWeight, v.UpperWeight
+		if b.flipped[v.Row] {
+			lowerWeight, upperWeight = upperWeight, lowerWeight
+		}
+		if bound := b.lower[v.Row]; lowerWeight > 0 && bound > low[j] {
+			e.p.columns[j].Lower = bound
+			add(k, b.flipped[v.Row], lowerWeight, b.size[v.Row], bound-low[j], j, false)
+		}
+		if bound := b.upper[v.Row]; upperWeight > 0 && bound < high[j] {
+			e.p.columns[j].Upper = bound
+			add(k, !b.flipped[v.Row], upperWeight, b.size[v.Row], high[j]-bound, j, true)
 		}
 	}
-	return status
+}
+
+// extend lengthens row i by the entries of the copies.
+func (e *elastic) extend(i int) {
+	a := make([]float64, len(e.p.columns))
+	copy(a, e.p.a[i])
+	for _, h := range e.helpers {
+		switch {
+		case h.of < 0:
+		case h.upperOf:
+			a[h.column] = a[h.of]
+		default:
+			a[h.column] = -a[h.of]
+		}
+	}
+	e.p.a[i] = a
+}
+
+// addUnit adds a column with one entry in row i, for a side that may give way.
+func (e *elastic) addUnit(owner, i int, weight, bound, sign float64) {
+	if weight == 0 || !finite(bound) {
+		return
+	}
+	e.helpers = append(e.helpers, elasticHelper{column: len(e.p.unit), owner: owner, upper: sign < 0, weight: weight, size: 1, most: math.Inf(1), of: -1})
+	e.p.unit = append(e.p.unit, Column{Cost: weight, Lower: 0, Upper: math.Inf(1)})
+	e.p.unitRow = append(e.p.unitRow, i)
+	e.p.unitSign = append(e.p.unitSign, sign)
 }

@@ -49,12 +49,13 @@ type rowBounds struct {
 	column       []int  // by row
 	lower, upper []float64
 	flipped      []bool
+	size         []float64 // of the entry
 }
 
 // findRowBounds finds them. Those on a column whose bounds exclude each other stay rows, as NewProblem asks of columns.
 func findRowBounds(p *Problem) *rowBounds {
 	m := p.Rows()
-	b := &rowBounds{is: make([]bool, m), column: make([]int, m), lower: make([]float64, m), upper: make([]float64, m), flipped: make([]bool, m)}
+	b := &rowBounds{is: make([]bool, m), column: make([]int, m), lower: make([]float64, m), upper: make([]float64, m), flipped: make([]bool, m), size: make([]float64, m)}
 	lower, upper := make([]float64, p.Columns()), make([]float64, p.Columns())
 	for j, c := range p.columns {
 		lower[j], upper[j] = c.Lower, c.Upper
@@ -62,6 +63,7 @@ func findRowBounds(p *Problem) *rowBounds {
 	for i := range m {
 		b.column[i], b.lower[i], b.upper[i], b.flipped[i], b.is[i] = p.asBound(i)
 		if j := b.column[i]; b.is[i] {
+			b.size[i] = math.Abs(p.a[i][j])
 			lower[j], upper[j] = math.Max(lower[j], b.lower[i]), math.Min(upper[j], b.upper[i])
 		}
 	}
