@@ -93,6 +93,29 @@ func TestAuditWithoutAPlan(t *testing.T) {
 	}
 }
 
+// The plan on file is compared with the one found again; a changed file or rate is seen.
+func TestAuditOfThePlanOnFile(t *testing.T) {
+	const check = "The plan on file is this plan"
+	d := smallCanals()
+	dir := d.write(t)
+	if l := lineOf(t, audited(t, dir, nil, nil), check); l.Result != plan.NotDone {
+		t.Errorf("no plan yet: %s %s", l.Result, l.Sentence)
+	}
+	planned(t, dir, exitDone)
+	if l := lineOf(t, audited(t, dir, nil, nil), check); l.Result != plan.Pass {
+		t.Errorf("the same plan: %s %s", l.Result, l.Sentence)
+	}
+	limits := strings.Replace(d.tables["limits"], "0.30", "0.31", 1)
+	save(t, dir, "limits.csv", []byte(limits))
+	if l := lineOf(t, audited(t, dir, nil, nil), check); l.Result != plan.Fail || !strings.Contains(l.Sentence, "other files") {
+		t.Errorf("another limit: %s %s", l.Result, l.Sentence)
+	}
+	save(t, filepath.Join(dir, "out"), "plan.json", []byte("{"))
+	if l := lineOf(t, audited(t, dir, nil, nil), check); l.Result != plan.Fail {
+		t.Errorf("a broken file: %s %s", l.Result, l.Sentence)
+	}
+}
+
 // Too large to refine: that is said, and two coarser meshes stand in.
 func TestAuditScalesTheOtherWay(t *testing.T) {
 	var out, errs bytes.Buffer
