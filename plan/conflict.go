@@ -109,15 +109,21 @@ func (p *planner) conflict(ctx context.Context) (*Conflict, error) {
 		}
 		c := &Conflict{Members: []ConflictMember{}, Relaxation: []ConflictMember{}}
 		var set, relaxed []string
+		var listed []int
+		for k := range members {
+			if inSet[k] {
+				listed = append(listed, k)
+			}
+		}
+		alone, err := e.each(ctx, p, listed)
+		if err != nil {
+			return nil, err
+		}
 		for k, m := range members {
 			entry := ConflictMember{Limit: m.words, Receptor: m.receptor, Unit: m.unit, By: least[k] * m.size, Source: m.source}
 			if inSet[k] {
-				alone, possible, err := e.relax(ctx, p, func(other int) bool { return other == k })
-				if err != nil {
-					return nil, err
-				}
-				if possible {
-					amount := alone[k] * m.size
+				if share := alone[len(c.Members)]; finite(share) {
+					amount := share * m.size
 					entry.Alone = &amount
 				}
 				c.Members = append(c.Members, entry)
