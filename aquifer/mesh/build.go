@@ -77,7 +77,7 @@ func (o Options) build(ctx context.Context, d Domain) (*Mesh, error) {
 	if r.maxNodes == 0 {
 		r.maxNodes = int(min(budgetFactor*expected+budgetExtra, max(budgetWanted*float64(o.Nodes), budgetLeast)))
 	}
-	if err := r.fill(ctx, fields, expected); err != nil {
+	if err := r.fill(ctx, fields, expected, o.Growth); err != nil {
 		return nil, err
 	}
 	m := r.finish(d, o, g)
@@ -87,8 +87,8 @@ func (o Options) build(ctx context.Context, d Domain) (*Mesh, error) {
 	return m, nil
 }
 
-// fill makes the mesh of the coarsest field and halves it until it has the sizes of the first field.
-func (r *refiner) fill(ctx context.Context, fields []*sizeField, expected float64) error {
+// fill makes the mesh of the coarsest field and halves it until it has the sizes of the first field, which grow by growth.
+func (r *refiner) fill(ctx context.Context, fields []*sizeField, expected, growth float64) error {
 	level := len(fields) - 1
 	r.start(fields[level], expected/math.Pow(levelNodes, float64(level)), level)
 	if err := r.run(ctx); err != nil {
@@ -96,7 +96,7 @@ func (r *refiner) fill(ctx context.Context, fields []*sizeField, expected float6
 	}
 	r.reorder()
 	passes := smoothPasses
-	if level > 0 && fields[level].growth < steepForOnce {
+	if level > 0 && r.coarser*growth < steepForOnce {
 		passes = 1
 	}
 	for ; level > 0; level-- {
@@ -224,17 +224,19 @@ func (r *refiner) makeFields(d Domain, o Options) ([]*sizeField, float64) {
 		}
 		requests = append(requests, request{z.At[0], z.At[1], z.Edge, math.Inf(1), g})
 	}
-	f := newSizeField(sources(requests, o.Tolerance, 1, 0), x0, y0, x1, y1)
-	f.coarsest = o.Coarsest
+	limit := math.Inf(1)
+	if o.Coarsest > 0 {
+		limit = o.Coarsest
+	}
+	f := newSizeField(sources(requests, o.Tolerance, 1, 0), limit, x0, y0, x1, y1)
 	in := r.integrate(f)
 	if !(o.Coarsest > 0) {
 		f.coarsest = in.coarsestFor(float64(o.Nodes))
 	}
 	fields, expected := []*sizeField{f}, in.nodes(f.coarsest)
 	for coarser := 2.0; coarser <= largestCoarser && r.worthHalving(expected, coarser, o.Growth); coarser *= 2 {
-		g := newSizeField(sources(requests, o.Tolerance, coarser, steepestCoarse), x0, y0, x1, y1)
-		g.coarsest = coarser * f.coarsest
-		fields = append(fields, g)
+		coarse := sources(requests, o.Tolerance, coarser, steepestCoarse)
+		fields = append(fields, newSizeField(coarse, coarser*f.coarsest, x0, y0, x1, y1))
 	}
 	return fields, expected
 }

@@ -146,14 +146,21 @@ func (s *halver) markEdges(from, to int) {
 	}
 }
 
-// long says whether edge k is cut; both its triangles get the same answer.
+// long says whether edge k is cut; both its triangles get the same answer. As everywhere, what is inside a region is measured in its
+// metric and segments are measured in the plane.
 func (s *halver) long(tr *triangle, k int32) bool {
 	a, b := tr.v[next3[k]], tr.v[prev3[k]]
 	p, q := &s.refiner.p[a], &s.refiner.p[b]
-	fine := s.h[a] + s.h[b]
+	limit := (halveFrom*(s.h[a]+s.h[b]) - halveSlope*(p.h+q.h)) / 2
 	dx, dy := p.x-q.x, p.y-q.y
-	limit := (halveFrom*fine - halveSlope*(p.h+q.h)) / 2
-	return dx*dx+dy*dy > limit*limit && (tr.s[k] < 0 || s.divisible(math.Abs(dx)+math.Abs(dy)))
+	if tr.s[k] >= 0 {
+		l := math.Sqrt(dx*dx + dy*dy)
+		return l > limit && s.divisible(l)
+	}
+	if s.metrics != nil {
+		dx, dy = s.metrics[tr.region].to(dx, dy)
+	}
+	return dx*dx+dy*dy > limit*limit
 }
 
 // diagonal picks the shorter diagonal of the part beside the whole edge.

@@ -182,6 +182,18 @@ func TestHalvedPolygons(t *testing.T) {
 	}
 }
 
+// TestHalvedAnisotropic: a coarse mesh is halved in the metric of its region, or long triangles are cut the wrong way.
+func TestHalvedAnisotropic(t *testing.T) {
+	d := wellfield(20, 10)
+	for _, ratio := range []float64{5, 100} {
+		m := mustBuild(t, d, Options{Nodes: 30000, Metric: func(orb.Point) Tensor { return tensor(ratio, 30) }})
+		// 0.035: without halving 0.030 at a ratio of 100, with edges measured in the plane 0.052.
+		if q := m.Quality; q.PoorOther > 0 || q.EncroachedLeft > 0 || !(q.ObtuseShare < 0.035) {
+			t.Errorf("ratio %v: quality %+v", ratio, q)
+		}
+	}
+}
+
 // TestHalvedNeedles: wedges too sharp to be filled well are not cut across.
 func TestHalvedNeedles(t *testing.T) {
 	d := Domain{Outer: square()}
@@ -195,6 +207,23 @@ func TestHalvedNeedles(t *testing.T) {
 	}
 	if q := m.Quality; q.PoorOther > 0 || q.EncroachedLeft > 0 || q.BudgetHit {
 		t.Errorf("quality %+v", q)
+	}
+}
+
+// TestSizesAtFurtherPlaces: what Options.Sizes asks for is met where nothing else asks, whether a coarse mesh is halved or not.
+func TestSizesAtFurtherPlaces(t *testing.T) {
+	at := orb.Point{7311, 1187}
+	for _, nodes := range []int{3000, 30000} {
+		m := mustBuild(t, wellfield(8, 15), Options{Nodes: nodes, Sizes: []Size{{At: at, Edge: 4}}})
+		tr, ok := m.Locate(at)
+		if !ok {
+			t.Fatal("not found")
+		}
+		s := m.shapeOf(int(tr))
+		// Half and twice the size: halving and refinement keep edges between 0.5 and 1.6 of the size wanted.
+		if l := math.Sqrt(max(s.l2[0], s.l2[1], s.l2[2])); !(l > 2 && l < 8) {
+			t.Errorf("%d nodes: longest edge %v m where 4 m was asked for", nodes, l)
+		}
 	}
 }
 

@@ -10,19 +10,26 @@ type source struct {
 }
 
 const (
-	leafSources   = 6    // sources that a quadtree leaf evaluates one by one
+	leafSources   = 10   // sources that a quadtree leaf evaluates one by one
 	leafVariation = 0.25 // a leaf across which the size varies by less than this share keeps its best source only
 	fieldDepth    = 40   // levels of the quadtree: 10,000 km down to 10 µm
 )
 
-// sizeField is h(x) = min(coarsest, min over sources of size + growth dist), each source with a growth of its own. A quadtree holds in each leaf the sources that can
-// be the smallest somewhere in it.
+// sizeField is h(x) = min(coarsest, min over sources of size + growth dist), each source with a growth of its own. A quadtree holds in
+// each leaf the sources that can be the smallest somewhere in it.
 type sizeField struct {
 	coarsest, growth float64 // growth is the largest of any source
+	limit            float64 // sizes above it were not looked into; +Inf none [m]
 	x, y, side       float64 // lower left corner and side of the root
 	cells            []fieldCell
 	lists            []source
-	scratch          []source // while the tree is made: a stack of kept sources
+	scratch          []nearSource // while the tree is made: a stack of kept sources
+}
+
+// nearSource is a source that a cell keeps.
+type nearSource struct {
+	source
+	least float64 // no less than this anywhere in the cell [m]
 }
 
 // fieldCell is a quadtree cell: an inner one with four children in a row, or a leaf with a list.
@@ -31,16 +38,20 @@ type fieldCell struct {
 	from, to int32 // list of a leaf
 }
 
-// newSizeField builds the quadtree over a box.
-func newSizeField(sources []source, x0, y0, x1, y1 float64) *sizeField {
+// newSizeField builds the quadtree over a box. Sizes above the limit are not told apart.
+func newSizeField(sources []source, limit, x0, y0, x1, y1 float64) *sizeField {
 	side := max(x1-x0, y1-y0) * 1.001
 	growth := 0.0
 	for _, s := range sources {
 		growth = max(growth, s.growth)
 	}
-	f := &sizeField{coarsest: math.Inf(1), growth: growth, x: x0, y: y0, side: side}
-	f.cells = append(f.cells, fieldCell{child: -1})
-	f.scratch = append(make([]source, 0, 8*len(sources)), sources...)
+	f := &sizeField{coarsest: limit, growth: growth, limit: limit, x: x0, y: y0, side: side}
+	f.cells = append(make([]fieldCell, 0, 8*len(sources)), fieldCell{child: -1})
+	f.lists = make([]source, 0, 8*len(sources))
+	f.scratch = make([]nearSource, 0, 8*len(sources))
+	for _, s := range sources {
+		f.scratch = append(f.scratch, nearSource{source: s})
+	}
 	f.split(0, 0, x0+side/2, y0+side/2, side/2, 0)
 	f.scratch = nil
 	return f
@@ -51,26 +62,41 @@ func newSizeField(sources []source, x0, y0, x1, y1 float64) *sizeField {
 func (f *sizeField) split(c int32, from int, cx, cy, half float64, depth int) {
 	r := half * math.Sqrt2
 	to := len(f.scratch)
-	upper, best := math.Inf(1), source{} // upper bounds the size anywhere in the cell
-	for _, s := range f.scratch[from:to] {
-		dx, dy := s.x-cx, s.y-cy
-		if u := s.size + s.growth*(math.Sqrt(dx*dx+dy*dy)+r); u < upper {
-			upper, best = u, s
-		}
-	}
+	upper, best := f.limit, -1 // upper bounds the size anywhere in the cell
 	for i := from; i < to; i++ {
 		s := f.scratch[i]
+		if s.least > upper { // in the parent's cell, so here too
+			continue
+		}
 		dx, dy := s.x-cx, s.y-cy
-		if s.size+s.growth*max(0, math.Sqrt(dx*dx+dy*dy)-r) <= upper {
+		d := math.Sqrt(dx*dx + dy*dy)
+		if u := s.size + s.growth*(d+r); u < upper {
+			upper, best = u, len(f.scratch)
+		}
+		s.least = s.size + s.growth*max(0, d-r)
+		if s.least <= upper {
 			f.scratch = append(f.scratch, s)
 		}
 	}
-	if 2*f.growth*r < leafVariation*(upper-best.growth*r) && len(f.scratch) > to+1 {
-		f.scratch = append(f.scratch[:to], best)
+	kept := f.scratch[to:]
+	if best >= 0 {
+		if b := kept[best-to]; 2*f.growth*r < leafVariation*(upper-b.growth*r) {
+			kept[0], kept = b, kept[:1]
+		}
 	}
-	if len(f.scratch) <= to+leafSources || depth == fieldDepth {
+	n := 0
+	for _, s := range kept {
+		if s.least <= upper {
+			kept[n] = s
+			n++
+		}
+	}
+	f.scratch = f.scratch[:to+n]
+	if n <= leafSources || depth == fieldDepth {
 		f.cells[c].from = int32(len(f.lists))
-		f.lists = append(f.lists, f.scratch[to:]...)
+		for _, s := range f.scratch[to:] {
+			f.lists = append(f.lists, s.source)
+		}
 		f.cells[c].to = int32(len(f.lists))
 		f.scratch = f.scratch[:to]
 		return
@@ -111,9 +137,9 @@ func (f *sizeField) leaf(x, y float64) (cell *fieldCell, half float64) {
 	return cell, half
 }
 
-// size is the smallest size that the sources of a leaf give at (x, y).
+// size is the smallest size that the sources of a leaf give at (x, y), or the limit.
 func (f *sizeField) size(cell *fieldCell, x, y float64) float64 {
-	h := math.Inf(1)
+	h := f.limit
 	for i := range f.lists[cell.from:cell.to] {
 		s := &f.lists[int(cell.from)+i]
 		dx, dy := s.x-x, s.y-y
@@ -125,7 +151,7 @@ func (f *sizeField) size(cell *fieldCell, x, y float64) float64 {
 	return h
 }
 
-// free is the size at (x, y) without the cap.
+// free is the size at (x, y) without the cap, up to the limit.
 func (f *sizeField) free(x, y float64) float64 {
 	cell, _ := f.leaf(x, y)
 	return f.size(cell, x, y)
