@@ -94,13 +94,16 @@ func meshSite(ctx context.Context, site *Site, o Options, bad *problems) (*domai
 	if err := bad.err(); err != nil {
 		return nil, nil, err
 	}
+	if err := o.fits(d.nodes, EstimateMemory(d.nodes)); err != nil {
+		return nil, nil, err
+	}
 	o.report("mesh", 0, 1)
 	msh, err := mesh.Build(ctx, d.domain, d.meshOptions(site, o))
 	if err != nil {
 		return nil, nil, err
 	}
 	o.report("mesh", 1, 1)
-	return d, msh, nil
+	return d, msh, o.fits(len(msh.X), EstimateMemory(len(msh.X)))
 }
 
 func (d *domainPlan) meshOptions(site *Site, o Options) mesh.Options {
@@ -251,6 +254,10 @@ func (m *Model) finish(ctx context.Context, o Options) error {
 	}
 	m.symbolic = symbolic
 	m.FactorBytes = symbolic.FactorBytes()
+	known := Memory{Factor: symbolic.PeakBytes(), Rest: EstimateMemory(len(m.Mesh.X)).Rest}
+	if err := o.fits(len(m.Mesh.X), known); err != nil {
+		return err
+	}
 	if err := m.findRadii(ctx, o); err != nil {
 		return err
 	}

@@ -18,7 +18,8 @@ type Options struct {
 	// well's or spring's own least size holds against them. The number of nodes wanted does not count theirs: give Coarsest as well.
 	Sizes []mesh.Size
 
-	Workers int // processors to use; 0 = all; results do not depend on it
+	Workers int   // processors to use; 0 = all; results do not depend on it
+	Memory  int64 // what the job may hold at once; what needs more is refused before the work starts; 0 = not checked [bytes]
 
 	Progress func(stage string, done, total int) // optional; called from one goroutine
 
@@ -37,8 +38,8 @@ func (o Options) Validate() error {
 			return fmt.Errorf("aquifer: option %s is %v; allowed: 0 (default) to %v", v.name, v.value, v.max)
 		}
 	}
-	if o.Nodes < 0 || o.MaxNodes < 0 {
-		return fmt.Errorf("aquifer: options nodes %d and max nodes %d must not be negative", o.Nodes, o.MaxNodes)
+	if o.Nodes < 0 || o.MaxNodes < 0 || o.Memory < 0 {
+		return fmt.Errorf("aquifer: options nodes %d, max nodes %d and memory %d must not be negative", o.Nodes, o.MaxNodes, o.Memory)
 	}
 	return nil
 }

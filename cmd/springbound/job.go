@@ -122,7 +122,7 @@ func (j *job) build(ctx context.Context, workers int) error {
 // modelOptions are the wishes for the mesh.
 func (j *job) modelOptions(workers int) aquifer.Options {
 	m := j.project.Mesh
-	return aquifer.Options{Nodes: m.Nodes, Finest: m.Finest, Growth: m.Growth, Workers: workers, Progress: j.progress.report, Alter: j.alter}
+	return aquifer.Options{Nodes: m.Nodes, Finest: m.Finest, Growth: m.Growth, Workers: workers, Memory: availableMemory(), Progress: j.progress.report, Alter: j.alter}
 }
 
 // watch puts wells and receptors into a model and settles the state without pumping.
