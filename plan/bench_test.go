@@ -5,6 +5,8 @@ import (
 	"math/rand/v2"
 	"testing"
 	"time"
+
+	"springbound/plan/convex"
 )
 
 // BenchmarkMake plans with as many limits as wells, and explains the same brief with a demand that cannot be met.
@@ -54,29 +56,55 @@ func BenchmarkExplain(b *testing.B) {
 	}
 }
 
-// BenchmarkFirm plans, and plans with the firm capacity: per outage is what each well out of service costs beside the plan.
-func BenchmarkFirm(b *testing.B) {
+// BenchmarkLostWell compares, in one run, the largest total planned from nothing with the new total after each of the ten largest wells is
+// lost, one at a time, both with writing the programme: cold/lost is how often the second goes into the first.
+func BenchmarkLostWell(b *testing.B) {
 	for _, size := range [][2]int{{300, 40}, {1000, 200}} {
 		s := randomSite(rand.New(rand.NewPCG(3, 5)), size[0], size[1])
 		b.Run(fmt.Sprintf("%d wells, %d limits", size[0], size[1]), func(b *testing.B) {
-			var plain, firm time.Duration
+			ctx := b.Context()
+			setup, err := newSetup(s.brief)
+			if err != nil {
+				b.Fatal(err)
+			}
+			var cold, lost time.Duration
 			outages := 0
 			for b.Loop() {
+				p := &planner{setup: setup, oracle: &oracle{setup: setup, model: s.table}}
+				start, _ := setup.startRates()
+				if _, err := p.oracle.linearise(ctx, start); err != nil {
+					b.Fatal(err)
+				}
+				if err := p.buildBounds(ctx); err != nil {
+					b.Fatal(err)
+				}
 				begin := time.Now()
-				if _, err := Make(b.Context(), s.brief, s.table, Options{}); err != nil {
+				g, err := p.build(true)
+				if err != nil {
 					b.Fatal(err)
 				}
-				plain += time.Since(begin)
+				sol, err := convex.Solve(ctx, g.problem, convex.Options{})
+				if err != nil || sol.Status != convex.Optimal {
+					b.Fatal(err, sol.Status)
+				}
+				cold += time.Since(begin)
+				all, err := p.outage(ctx, -1, nil)
+				if err != nil || all == nil {
+					b.Fatal(err)
+				}
+				pumping, _ := p.outages(p.rates(sol.X))
 				begin = time.Now()
-				r, err := Make(b.Context(), s.brief, s.table, Options{Firm: true})
-				if err != nil || r.Firm == nil {
-					b.Fatal(err)
+				for _, i := range pumping[:firmLargest] {
+					if one, err := p.outage(ctx, i, all.basis); err != nil || one == nil {
+						b.Fatal(err)
+					}
 				}
-				firm += time.Since(begin)
-				outages += len(r.Firm.Lines)
+				lost += time.Since(begin)
+				outages += firmLargest
 			}
-			b.ReportMetric(float64(plain.Microseconds())/1000/float64(b.N), "plan-ms")
-			b.ReportMetric(float64((firm-plain).Microseconds())/1000/float64(outages+b.N), "per-outage-ms")
+			b.ReportMetric(cold.Seconds()*1000/float64(b.N), "cold-ms")
+			b.ReportMetric(lost.Seconds()*1000/float64(outages), "lost-ms")
+			b.ReportMetric(cold.Seconds()/float64(b.N)/(lost.Seconds()/float64(outages)), "cold/lost")
 		})
 	}
 }

@@ -2,6 +2,7 @@ package plan
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"sort"
@@ -129,20 +130,12 @@ func (p *planner) outage(ctx context.Context, i int, basis *convex.Basis) (*outa
 		p.setup.standing[i] = 0
 	}
 	for round := 1; ; round++ {
-		g, err := p.buildRound(ctx)
+		g, sol, err := p.solveOutage(ctx, basis)
 		switch {
 		case ctx.Err() != nil:
 			return nil, fmt.Errorf("plan: stopped while planning without one well: %w", ctx.Err())
-		case err != nil:
-			return nil, err
-		case g == nil:
+		case err == nil && g == nil:
 			return nil, nil
-		}
-		sol, err := convex.Solve(ctx, g.problem, convex.Options{Start: basis})
-		if err == nil && sol.Status == convex.NumericalTrouble {
-			sol, err = convex.Solve(ctx, g.problem, convex.Options{})
-		}
-		switch {
 		case err != nil:
 			return nil, fmt.Errorf("plan: the programme without one well: %w", err)
 		case sol.Status == convex.Interrupted:
@@ -162,11 +155,87 @@ func (p *planner) outage(ctx context.Context, i int, basis *convex.Basis) (*outa
 	}
 }
 
+// solveOutage solves the programme of the present outage from a basis. The programme is nil where no choice of running wells keeps every
+// limit.
+func (p *planner) solveOutage(ctx context.Context, basis *convex.Basis) (*programme, *convex.Solution, error) {
+	if !p.setup.switches() {
+		return p.inService.solve(ctx, p, basis)
+	}
+	g, err := p.buildRound(ctx)
+	if err != nil || g == nil {
+		return nil, nil, err
+	}
+	sol, err := convex.Solve(ctx, g.problem, convex.Options{Start: basis})
+	if err == nil && sol.Status == convex.NumericalTrouble {
+		sol, err = convex.Solve(ctx, g.problem, convex.Options{})
+	}
+	return g, sol, err
+}
+
+// inService keeps the programme with every well in service. An outage holds a rate at zero and lets go the lowest level of the well:
+// bounds only, so that each starts from the factors and the scales of the last. Cuts ask for a programme written anew.
+type inService struct {
+	g      *programme
+	solver *convex.Solver
+	cuts   int // in the programme
+}
+
+// solve changes the bounds for the present outage, solves from a basis and changes them back.
+func (k *inService) solve(ctx context.Context, p *planner, basis *convex.Basis) (*programme, *convex.Solution, error) {
+	if k.g == nil || k.cuts != len(p.cuts) {
+		out := p.outOfService
+		p.outOfService, p.runs = nil, nil
+		g, err := p.build(true)
+		p.outOfService = out
+		if err != nil {
+			return nil, nil, err
+		}
+		k.g, k.cuts, k.solver = g, len(p.cuts), convex.NewSolver(g.problem)
+	}
+	if err := k.take(p, true); err != nil {
+		return nil, nil, err
+	}
+	sol, err := k.solver.Solve(ctx, convex.Options{Start: basis})
+	return k.g, sol, errors.Join(err, k.take(p, false))
+}
+
+// take takes the wells that are out of service out of the solver's programme, or puts them back.
+func (k *inService) take(p *planner, out bool) error {
+	if p.outOfService == nil {
+		return nil
+	}
+	var errs []error
+	for j, i := range p.setup.decided {
+		if !p.isOut(i) {
+			continue
+		}
+		c := k.g.problem.Column(j)
+		if out {
+			c.Lower, c.Upper = p.rangeOf(i)
+		}
+		errs = append(errs, k.solver.SetBounds(j, c.Lower, c.Upper))
+	}
+	for r, o := range k.g.owners {
+		if o.kind != ofBound || !p.idle(p.bounds[o.index]) {
+			continue
+		}
+		upper := math.Inf(1)
+		if !out {
+			upper = k.g.problem.Row(r).Upper
+		}
+		errs = append(errs, k.solver.SetRowBounds(r, math.Inf(-1), upper))
+	}
+	return errors.Join(errs...)
+}
+
 // binding names what holds the total: limits, levels and quotas with a price; largest rates where nothing else has one.
 func (p *planner) binding(g *programme, sol *convex.Solution) []string {
 	s, out, seen := p.setup, []string{}, map[string]bool{}
 	scale := p.aimScale()
 	for r, o := range g.owners {
+		if sol.RowPrice[r] == 0 {
+			continue
+		}
 		row, size := g.problem.Row(r), 0.0
 		for k, i := range s.decided {
 			size = math.Max(size, math.Abs(row.Coefficients[k])*s.rateScale(i))

@@ -33,6 +33,7 @@ type planner struct {
 	certificate      *convex.Certificate // of the solution whose rates or whose conflict are shown; nil when nothing was optimised
 	conflictVerified bool                // the irreducible set was proven afresh, member by member
 
+	inService    inService // of the outages
 	outOfService []bool    // of each well: out of service beyond the brief; nil: none
 	runs         []bool    // of each well: it runs; nil: there is nothing to choose, or it is not chosen yet
 	lastRates    []float64 // of the last round, where a search may begin
