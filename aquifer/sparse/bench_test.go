@@ -73,44 +73,71 @@ func BenchmarkRefactor(b *testing.B) {
 	})
 }
 
+// BenchmarkSolve solves for full right-hand sides; the time for each falls as the block grows.
 func BenchmarkSolve(b *testing.B) {
 	forSides(b, func(b *testing.B, p problem) {
-		f := mustFactor(b, p, Options{})
-		for _, k := range []int{1, 16, 100} {
-			b.Run(fmt.Sprint(k), func(b *testing.B) {
-				right := randomVector(p.Pattern.N*k, 1)
-				block := make([]float64, len(right))
-				for b.Loop() {
-					copy(block, right)
-					if err := f.Solve(context.Background(), block, k); err != nil {
-						b.Fatal(err)
-					}
-				}
-				b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*k), "ns/rhs")
-			})
-		}
+		benchmarkBlocks(b, p, func(block []float64, k int) { copy(block, randomVector(len(block), 1)) })
 	})
 }
 
-// BenchmarkSelected solves for the influence of 40 places at 300 places spread over the mesh, the costly case.
+// BenchmarkAdjoints solves for the influence of one place each, whole fields.
+func BenchmarkAdjoints(b *testing.B) {
+	forSides(b, func(b *testing.B, p problem) {
+		benchmarkBlocks(b, p, func(block []float64, k int) {
+			clear(block)
+			for r := range k {
+				block[r*p.Pattern.N+r*7919%p.Pattern.N] = 1
+			}
+		})
+	})
+}
+
+func benchmarkBlocks(b *testing.B, p problem, fill func(block []float64, k int)) {
+	f := mustFactor(b, p, Options{})
+	for _, k := range []int{1, 16, 32, 100} {
+		b.Run(fmt.Sprint(k), func(b *testing.B) {
+			right := make([]float64, p.Pattern.N*k)
+			fill(right, k)
+			block := make([]float64, len(right))
+			for b.Loop() {
+				b.StopTimer()
+				copy(block, right)
+				b.StartTimer()
+				if err := f.Solve(context.Background(), block, k); err != nil {
+					b.Fatal(err)
+				}
+			}
+			b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*k), "ns/rhs")
+			b.ReportMetric(float64(f.symbolic.SolveBytes(k)), "solve-bytes")
+			b.ReportMetric(float64(8*len(block)), "block-bytes")
+		})
+	}
+}
+
+// BenchmarkSelected solves for the influence of 100 places at wells spread over the mesh, the costly case.
 func BenchmarkSelected(b *testing.B) {
 	forSides(b, func(b *testing.B, p problem) {
 		f := mustFactor(b, p, Options{})
 		n := int32(p.Pattern.N)
-		rhs := make([]SparseVector, 40)
+		rhs := make([]SparseVector, 100)
 		for r := range rhs {
 			rhs[r] = SparseVector{[]int32{int32(r) * 7919 % n}, []float64{1}}
 		}
-		wanted := make([]int32, 300)
-		for w := range wanted {
-			wanted[w] = int32(int64(w) * 104729 % int64(n))
+		for _, wells := range []int{30, 300, 1000, 3000} {
+			b.Run(fmt.Sprint(wells), func(b *testing.B) {
+				wanted := make([]int32, wells)
+				for w := range wanted {
+					wanted[w] = int32(int64(w) * 104729 % int64(n))
+				}
+				b.ReportAllocs()
+				for b.Loop() {
+					if _, err := f.SolveSelected(context.Background(), rhs, wanted); err != nil {
+						b.Fatal(err)
+					}
+				}
+				b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*len(rhs)), "ns/rhs")
+				b.ReportMetric(float64(f.symbolic.SolveBytes(len(rhs))), "solve-bytes")
+			})
 		}
-		b.ResetTimer()
-		for b.Loop() {
-			if _, err := f.SolveSelected(context.Background(), rhs, wanted); err != nil {
-				b.Fatal(err)
-			}
-		}
-		b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*len(rhs)), "ns/rhs")
 	})
 }
