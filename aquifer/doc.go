@@ -21,5 +21,8 @@
 // below it: a spring below its outlet, a river or lake below its bed, leakage below the confining layer's base. Heads solves the linear
 // problem in which every feature acts; Settle finds the state with those that switch, the minimum of a strictly convex energy.
 //
+// A Ledger books the water of every control volume anew from the site's records, and takes no number from the matrix: what an audit compares
+// with.
+//
 // The package knows no file format and no unit other than metre and day.
 package aquifer

@@ -11,27 +11,70 @@ import (
 	"springbound/plan/convex"
 )
 
-// evidenceUnits are the keys of the record whose unit stands beside them, and those of pure numbers.
-var evidenceUnits = map[string]string{
-	"figure": "in unit", "allowed": "in unit", "scale": "in unit", "richardson": "in unit", "change_without": "in unit",
-	"adjoint_in_unit_per_m3_per_d": "in unit per m³/d", "difference_in_unit_per_m3_per_d": "in unit per m³/d",
-	"observed_order": "power of the edge length", "grid_convergence_index_percent": "per cent", "factor": "ratio",
-}
-
+// Every number of audit.json has a unit in the schema, and no other unit is listed.
 func TestEveryNumberOfTheEvidenceHasAUnit(t *testing.T) {
+	used := map[string]bool{}
 	eachField(reflect.TypeFor[Evidence](), map[reflect.Type]bool{}, func(owner string, f reflect.StructField) {
 		key := keyOf(f)
 		if key == "" || key != strings.ToLower(key) {
 			t.Errorf("%s.%s: key %q", owner, f.Name, key)
 		}
-		if !holdsNumber(f.Type) {
-			return
-		}
-		_, known := UnitOf(key)
-		if _, here := evidenceUnits[key]; !known && !here {
+		used[key], used[owner+"."+key] = true, true
+		if _, known := evidenceDocument.UnitOf(key); holdsNumber(f.Type) && !known {
 			t.Errorf("%s.%s: key %q says no unit", owner, f.Name, key)
 		}
 	})
+	for key := range evidenceDocument.Units {
+		if !used[key] {
+			t.Errorf("no number has the key %q", key)
+		}
+	}
+	for key := range evidenceDocument.Words {
+		if !used[key] {
+			t.Errorf("no field %q", key)
+		}
+	}
+}
+
+// The schema holds for a record, and not for spoilt ones.
+func TestSchemaHoldsForEvidence(t *testing.T) {
+	var schema map[string]any
+	if err := json.Unmarshal(EvidenceSchema(), &schema); err != nil {
+		t.Fatal(err)
+	}
+	x := 0.5
+	e := &Evidence{PlanStatus: StatusOptimal, Convergence: []ConvergenceLine{{Unit: "m", Values: []float64{1, 2, 3}, Order: &x}}, Differences: []DifferenceLine{{Unit: "m3/d"}},
+		Boundaries: []BoundaryLine{{Share: &x, Receptors: []BoundaryChange{{Unit: "1"}}}}, HandFormula: &HandFormula{}, Inward: []InwardStretch{{}}, Meshes: []EvidenceMesh{{}},
+		Balances: []EvidenceBalance{{Lines: []EvidenceBalanceLine{{}}}}, Capture: []Capture{{}}, Settings: []EvidenceSetting{{}}, Inputs: []InputFile{{}}}
+	e.Add(EvidenceLine{Result: Pass, Figure: &x})
+	e.Conclude()
+	data, err := MarshalEvidence(e)
+	if err != nil {
+		t.Fatal(err)
+	}
+	read := func() (v map[string]any) {
+		if err := json.Unmarshal(data, &v); err != nil {
+			t.Fatal(err)
+		}
+		return v
+	}
+	if faults := validate(schema, schema, read(), ""); len(faults) > 0 {
+		t.Errorf("%q", faults)
+	}
+	for name, spoil := range map[string]func(v map[string]any){
+		"key more":     func(v map[string]any) { v["more"] = 1 },
+		"key less":     func(v map[string]any) { delete(v, "boundaries") },
+		"wrong type":   func(v map[string]any) { v["total_rate_m3_per_d"] = "12" },
+		"wrong word":   func(v map[string]any) { v["lines"].([]any)[0].(map[string]any)["result"] = "fine" },
+		"null list":    func(v map[string]any) { v["meshes"] = nil },
+		"other schema": func(v map[string]any) { v["schema"] = SchemaName },
+	} {
+		v := read()
+		spoil(v)
+		if faults := validate(schema, schema, v, ""); len(faults) != 1 {
+			t.Errorf("%s: %q", name, faults)
+		}
+	}
 }
 
 func TestEvidenceIsCountedAndWritten(t *testing.T) {

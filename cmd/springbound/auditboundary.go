@@ -269,6 +269,9 @@ func (a *audit) compare(b *plan.BoundaryLine, report *plan.Report) float64 {
 		if now.Outside || old == nil {
 			continue
 		}
+		if now.Kind == wells.SpringFlow.String() { // a spring that stops loses all that it had, no more
+			now.Change = math.Min(now.Change, math.Max(0, now.NoPumping))
+		}
 		c := plan.BoundaryChange{Receptor: now.ID, Unit: now.Unit, With: old.Change, Without: now.Change}
 		if old.Change != 0 {
 			c.Factor = finiteOrNil(now.Change / old.Change)

@@ -92,6 +92,9 @@ func (a *audit) balance(ctx context.Context) error {
 		}
 		a.e.Balances = append(a.e.Balances, e)
 	}
+	for i := range a.booked {
+		a.booked[i].ledger, a.booked[i].b = nil, nil // large, and done with
+	}
 	l := plan.EvidenceLine{Check: "Water balance of every node and feature, recomputed", Unit: "share of the throughflow",
 		How:    "flows between nodes from the gradient of head and each zone's transmissivity, control volumes, recharge, leakage, rivers, springs and edges from their records; nothing is taken from the solved matrix",
 		Reason: "rounding of a direct solve; a wrong or forgotten term shows powers of ten above it", Remedy: "do not use any result: a term of the model is wrong near the place named; send the project files to the makers of the program"}

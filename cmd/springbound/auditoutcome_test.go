@@ -3,6 +3,7 @@ package main
 import (
 	"bytes"
 	"context"
+	"encoding/json"
 	"math"
 	"os"
 	"path/filepath"
@@ -178,7 +179,7 @@ func TestJudgeConvergence(t *testing.T) {
 	}
 }
 
-// Same input, same bytes, whatever the number of processors; and an interrupted audit leaves nothing behind.
+// Same input, same bytes, whatever the number of processors; they fit the schema; and an interrupted audit leaves nothing behind.
 func TestAuditBytesAndInterruption(t *testing.T) {
 	dir := valley(turns(1)[0], 0, "nodes = 1500\n").write(t)
 	read := func(workers, name string) map[string][]byte {
@@ -202,6 +203,16 @@ func TestAuditBytesAndInterruption(t *testing.T) {
 		if !bytes.Equal(one[name], two[name]) {
 			t.Errorf("%s differs between one and two processors", name)
 		}
+	}
+	var schema, written map[string]any
+	if err := json.Unmarshal(plan.EvidenceSchema(), &schema); err != nil {
+		t.Fatal(err)
+	}
+	if err := json.Unmarshal(one["audit.json"], &written); err != nil {
+		t.Fatal(err)
+	}
+	if faults := schemaFaults(schema, schema, written, ""); len(faults) > 0 {
+		t.Errorf("audit.json does not fit its schema: %q", faults)
 	}
 	ctx, cancel := context.WithCancel(context.Background())
 	cancel()

@@ -21,6 +21,8 @@
 // Symbols, units, signs: Q rate [m³/d], pumping positive; S sensitivity in the receptor's unit per m³/d; D drawdown per rate
 // [d/m²], positive downward; changes grow with pumping.
 //
+// WriteEvidence writes the record of an audit as a workbook of its own, with one sheet that prints.
+//
 // Assumptions and what is not done: prices, capture shares, the worst place of a receptor and all checks belong to the planned
 // rates and do not follow an edit; every sheet says so as soon as a rate is changed. Sheet protection guards against slips only.
 package workbook
