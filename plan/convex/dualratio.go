@@ -73,7 +73,11 @@ func (e *engine) gatherBreakpoints(direction float64) {
 		default:
 			a, slack = math.Abs(a), 0
 		}
-		e.ratio = append(e.ratio, breakpoint{v, a, slack, math.Max(slack, 0) / a})
+		ratio := 0.0
+		if slack > 0 {
+			ratio = slack / a
+		}
+		e.ratio = append(e.ratio, breakpoint{v, a, slack, ratio})
 	}
 	e.ratio.heapify()
 }

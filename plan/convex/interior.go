@@ -168,7 +168,7 @@ func (s *interiorPoint) barrier() {
 		}
 		switch {
 		case k < n:
-			s.sys.t[k] = math.Min(theta, excluded/10)
+			s.sys.t[k] = math.Min(theta, excluded/2)
 		case s.equation[k-n]:
 			s.sys.e[k-n] = 0
 		default:
@@ -343,12 +343,12 @@ func (s *interiorPoint) step(p, d float64) {
 	for k := range s.v {
 		s.v[k] += p * s.dv[k]
 		if s.hasLow[k] {
-			s.low[k] = math.Max(s.low[k]+p*s.dlow[k], tiniest)
 			s.zl[k] = math.Max(s.zl[k]+d*s.dzl[k], tiniest)
+			s.low[k] = math.Max(s.low[k]+p*s.dlow[k], math.Max(tiniest, s.zl[k]/steepest))
 		}
 		if s.hasUp[k] {
-			s.up[k] = math.Max(s.up[k]+p*s.dup[k], tiniest)
 			s.zu[k] = math.Max(s.zu[k]+d*s.dzu[k], tiniest)
+			s.up[k] = math.Max(s.up[k]+p*s.dup[k], math.Max(tiniest, s.zu[k]/steepest))
 		}
 	}
 	for i := range s.y {
@@ -356,6 +356,10 @@ func (s *interiorPoint) step(p, d float64) {
 	}
 	s.stepP, s.stepD = p, d
 }
+
+// steepest is the price per distance that a pair keeps to, so that the system has the very diagonal that the step of the price is computed
+// with: one above excluded would be cut off, and the difference to the step goes into the prices many times over.
+const steepest = excluded / 10
 
 // tiniest keeps distances and prices positive when a step rounds them away.
 const tiniest = 1e-40
