@@ -11,6 +11,7 @@ const (
 	parallelPart  = 4000 // parts from this size on may be split by another worker
 	sweepWindow   = 0.2  // the cut lies within this share of the median by count
 	sweepMargin   = 0.08 // nodes further than this share before the window are not looked at
+	fewDirections = 4000 // parts below this size are swept along x and y only
 	imbalanceCost = 0.5  // a side with share s of the nodes makes a separator 1 + imbalanceCost (2s-1)² as dear
 	largestShare  = 0.68 // no side of a separator holds a larger share of its part after improvement
 )
@@ -78,6 +79,14 @@ func dissect(ctx context.Context, p *Pattern, x, y []float64, workers int) (*gra
 	return d.g, d.order
 }
 
+// directionsIn returns along how many directions a part of n nodes is swept.
+func directionsIn(n int) int {
+	if n < fewDirections {
+		return 2
+	}
+	return len(directions)
+}
+
 // split orders the part [lo, hi).
 func (d *dissection) split(w *dissector, lo, hi int) {
 	for hi-lo > leafNodes {
@@ -135,7 +144,7 @@ func (d *dissection) bestCut(lo, hi int) (direction, cut int) {
 	from := max(lo, first-int(float64(n)*sweepMargin))
 	change := d.scratch[lo:hi]
 	best := 0.0
-	for k := range directions {
+	for k := range directionsIn(n) {
 		clear(change[from-lo : last-lo+2])
 		rank, far := d.rank[k], d.far[k]
 		for p, v := range d.sweeps[k][from:last] {
@@ -188,7 +197,8 @@ func (d *dissection) separate(w *dissector, direction, lo, hi, cut int) (left, r
 
 // divide rearranges every sweep of the part into left, right, between, and writes the separator into the result.
 func (d *dissection) divide(lo, hi, left, right int) {
-	for k := range d.sweeps {
+	count := directionsIn(hi - lo)
+	for k := range count {
 		sweep, rank, spare := d.sweeps[k], d.rank[k], d.scratch[lo:hi]
 		a, b, c := lo, 0, right
 		for p := lo; p < hi; p++ {
@@ -212,16 +222,16 @@ func (d *dissection) divide(lo, hi, left, right int) {
 	between := d.order[lo+left+right : hi]
 	copy(between, d.sweeps[0][lo+left+right:hi])
 	for _, v := range between {
-		d.detach(v)
+		d.detach(v, count)
 	}
 }
 
-// detach takes a node of a separator out of its part.
-func (d *dissection) detach(v int32) {
+// detach takes a node of a separator out of its part, which is swept along count directions.
+func (d *dissection) detach(v int32, count int) {
 	neighbours := d.g.inside(v)
 	d.g.detach(v)
 	for _, u := range neighbours {
-		for k := range d.far {
+		for k := range d.far[:count] {
 			if d.far[k][u] == v {
 				d.findFar(k, u)
 			}

@@ -190,11 +190,13 @@ func (s *Symbolic) mapEntries(g *graph, order, position, rowIndex []int32, worke
 	}
 	total := len(s.nodes.rows)
 	chunks := min(total, 4*workers)
+	spare := sync.Pool{New: func() any { return make([]int32, n) }}
 	runFixed(workers, chunks, func(c int) {
-		place := make([]int32, n)
+		place := spare.Get().([]int32)
 		for k := total * c / chunks; k < total*(c+1)/chunks; k++ {
 			s.mapSupernode(g, k, order, position, rowIndex, place)
 		}
+		spare.Put(place)
 	})
 }
 
