@@ -96,7 +96,7 @@ func (j *job) evidence(ctx context.Context, o auditOptions) (*plan.Evidence, err
 		run  func(context.Context) error
 	}{
 		{"water balance", a.balance}, {"reciprocity", a.reciprocity}, {"differences", a.differences}, {"superposition", a.superposition},
-		{"refined meshes", a.convergence}, {"hand formula", a.handFormula}, {"boundaries", a.boundaries}, {"salt water", a.saltWater},
+		{"refined meshes", a.convergence}, {"hand formula", a.handFormula}, {"sources of water", a.waterSources}, {"boundaries", a.boundaries}, {"salt water", a.saltWater},
 		{"confined condition", a.confinedLine}, {"optimum", a.optimum}, {"second method", a.secondMethod}, {"files", a.files}, {"the plan on file", a.onFile},
 	} {
 		if err := ctx.Err(); err != nil {

@@ -46,6 +46,12 @@ func TestAuditOutcomes(t *testing.T) {
 			d.layers["edges"] = d.layers["edges"][:1]
 			d.layers["rivers"] = []feature{{map[string]any{"name": "Brook", "water_level_m": 10.1, "bed_level_m": 10, "width_m": 2, "bed_resistance_d": 20}, "LineString", lineString(turns(1)[0].at(1000, 300), turns(1)[0].at(2500, 300))}}
 		}, "Without edge west", plan.Fail, "no steady state"},
+		{"a lake that has less than it gives", func(d *draft) {
+			m := turns(1)[0]
+			d.layers["lakes"] = []feature{{map[string]any{"name": "Tarn", "water_level_m": 10, "bed_resistance_d": 5, "available_flow_m3_per_d": 1}, "Polygon",
+				polygon([][2]float64{m.at(900, 300), m.at(1300, 300), m.at(1300, 600), m.at(900, 600)})}}
+		}, "Where the pumped water comes from", plan.Fail, "Lake Tarn would have to give"},
+		{"two canals share", func(d *draft) {}, "Where the pumped water comes from", plan.Pass, "Edge west"},
 		{"no limits", func(d *draft) { delete(d.tables, "limits") }, "Without edge west", plan.NotDone, "No receptor carries a limit"},
 		{"salt water comes in", func(d *draft) { d.layers["edges"][0].properties["saline"] = true }, "Salt water drawn in", plan.Fail, "through edge west"},
 		{"no salt water", func(d *draft) {}, "Salt water drawn in", plan.NotDone, "No edge is marked saline"},
