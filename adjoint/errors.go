@@ -12,7 +12,7 @@ import (
 // entered. They say nothing of how well the site's parameters are known.
 type Errors struct {
 	Rows      []RowError
-	Indicator []float64 // per triangle of the mesh: sum over rows of the absolute terms over the accuracy wanted, each row weighted by its error over it [-]
+	Indicator []float64 // per node: sum over rows of the absolute part of the error that its surroundings add, over the accuracy wanted, each row weighted by its own error over it [-]
 
 	FineNodes int     // nodes of the finer mesh
 	Cycles    int     // cycles of the slowest batch of solves
@@ -24,6 +24,7 @@ type RowError struct {
 	BaseError   float64   // of the value without pumping [the row's unit]
 	ChangeError float64   // of the change at the state's rates [the row's unit]
 	ChangeBound float64   // twice the sum of the absolute values of the terms that the difference between the meshes is made of [the row's unit]
+	SlopeBound  []float64 // twice the sum of the absolute terms of each slope's; nil where not asked for [the row's unit per m³/d]
 	SlopeError  []float64 // of d change/d rate, one a well [the row's unit per m³/d]
 	Size        float64   // sum of the absolute contributions of the wells to the change, what accuracy is relative to; |change| where no slopes are asked for [the row's unit]
 }
@@ -34,6 +35,7 @@ type ErrorOptions struct {
 	Workers  int     // processors to use; 0 = all; results do not depend on it
 	Progress func(done, total int)
 
+	SlopeBounds bool // a bound for each slope as well: one more solve a well
 	ChangesOnly bool // no slopes, bounds and indicator: two solves for all rows together
 }
 
@@ -61,6 +63,7 @@ type comparison struct {
 	difference          []float64 // of drawdowns, over the finer nodes
 	springs             [][]int32 // per spring: triangles of the patch where both fields are logarithms about it
 	corners             []cornerError
+	pairs               *pairNorms
 	out                 *Errors
 }
 

@@ -18,6 +18,11 @@ func (c *comparison) influences(ctx context.Context) error {
 	for _, n := range c.f.Model.SpringNode {
 		c.springs = append(c.springs, c.f.patchTriangles(n))
 	}
+	if c.o.SlopeBounds {
+		if err := c.wellNorms(ctx); err != nil {
+			return err
+		}
+	}
 	first := map[string]int{}
 	same := make([]int, len(coarse))
 	var distinct []int
@@ -31,7 +36,7 @@ func (c *comparison) influences(ctx context.Context) error {
 		same[i] = d
 	}
 	c.findCorners()
-	c.out.Indicator = make([]float64, len(c.f.Model.Mesh.Region))
+	c.out.Indicator = make([]float64, len(c.f.Model.Mesh.X))
 	n, nf := c.f.Model.Unknowns(), c.finer.Unknowns()
 	for start := 0; start < len(distinct); start += blockWidth {
 		k := min(blockWidth, len(distinct)-start)
@@ -96,12 +101,14 @@ func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) {
 	e := &c.out.Rows[row]
 	e.SlopeError = make([]float64, len(c.f.node))
 	e.Size = 0
+	slopes := make([]float64, len(c.f.node))
 	for w, n := range c.f.node {
 		slope, d := zc[n], zc[n]-zf[n]
 		if coarse.Direct != nil {
 			slope -= coarse.Direct[w]
 			d -= coarse.Direct[w] - fine.Direct[w]
 		}
+		slopes[w] = slope
 		e.Size += math.Abs(slope * c.state.Rates[w])
 		e.SlopeError[w] = remaining * d
 	}
@@ -111,7 +118,11 @@ func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) {
 	difference := -e.ChangeError / remaining
 	e.ChangeError -= c.cornerChange(terms)
 	c.cornerRow(row, zc, dz)
-	e.ChangeBound = slowest * c.absolute(terms, difference, coarse, fine)
+	total, patch, rest := c.absolute(terms, difference, coarse, fine)
+	e.ChangeBound = slowest * total
+	if c.pairs != nil {
+		c.slopeBounds(e, zc, dz, slopes, patch, rest, coarse)
+	}
 	if wanted := c.o.Accuracy * e.Size; wanted > 0 {
 		c.indicate(terms, remaining/wanted*math.Max(math.Abs(e.ChangeError)/wanted, leastWeight))
 	}
@@ -119,16 +130,15 @@ func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) {
 
 // indicate adds a row's terms to the indicator.
 func (c *comparison) indicate(terms aquifer.ErrorTerms, weight float64) {
+	m := c.f.Model.Mesh
+	sum := append([]float64(nil), terms.Node...)
 	for t, v := range terms.Triangle {
-		c.out.Indicator[t] += weight * math.Abs(v)
-	}
-	for n, v := range terms.Node {
-		if v != 0 {
-			list := c.f.Model.Mesh.NodeTriangles(int32(n))
-			for _, t := range list {
-				c.out.Indicator[t] += weight * math.Abs(v) / float64(len(list))
-			}
+		for _, n := range m.Triangles[3*t : 3*t+3] {
+			sum[n] += v / 3
 		}
+	}
+	for n, v := range sum {
+		c.out.Indicator[n] += weight * math.Abs(v)
 	}
 }
 
@@ -165,8 +175,8 @@ func (f *Field) patchTriangles(node int32) []int32 {
 // absolute sums the absolute terms. Where both fields are logarithms about one node, at springs and at the bore that a row reads, the
 // discrete logarithms of the two meshes differ by as much as the equivalent radii there: the terms of such a patch count as one,
 // together with what the radius takes back, and in the list they become equal shares of it. What all terms leave of the difference, which comes from
-// the quantity's own weights, counts by itself.
-func (c *comparison) absolute(terms aquifer.ErrorTerms, difference float64, coarse, fine Functional) float64 {
+// the quantity's own weights, counts by itself. patch is the springs' parts.
+func (c *comparison) absolute(terms aquifer.ErrorTerms, difference float64, coarse, fine Functional) (total float64, patch []float64, rest float64) {
 	for _, n := range c.f.Model.SpringNode {
 		terms.Node[n] += (weightAt(fine.Quantity, n) - weightAt(coarse.Quantity, n)) * c.coarseDrawdown[n]
 	}
@@ -178,7 +188,7 @@ func (c *comparison) absolute(terms aquifer.ErrorTerms, difference float64, coar
 			nodes = append(nodes, -1)
 		}
 	}
-	rest := difference
+	rest = difference
 	for _, v := range terms.Triangle {
 		rest -= v
 	}
@@ -193,6 +203,7 @@ func (c *comparison) absolute(terms aquifer.ErrorTerms, difference float64, coar
 		if n := nodes[i]; n >= 0 {
 			sum += terms.Node[n]
 			terms.Node[n] = 0
+			patch = append(patch, sum)
 		} else {
 			sum += rest
 			rest = 0
@@ -201,14 +212,14 @@ func (c *comparison) absolute(terms aquifer.ErrorTerms, difference float64, coar
 			terms.Triangle[t] = sum / float64(len(list))
 		}
 	}
-	total := math.Abs(rest)
+	total = math.Abs(rest)
 	for _, v := range terms.Triangle {
 		total += math.Abs(v)
 	}
 	for _, v := range terms.Node {
 		total += math.Abs(v)
 	}
-	return total
+	return total, patch, rest
 }
 
 func weightAt(q aquifer.Quantity, node int32) float64 {

@@ -85,7 +85,7 @@ func randomSite(seed uint64) (*aquifer.Site, []wells.Well, []wells.Receptor) {
 	for i := range 1 + rng.IntN(3) {
 		x, y := place(0)
 		name := fmt.Sprintf("spring %d", i)
-		site.Springs = append(site.Springs, aquifer.Spring{Name: name, At: m.at(x, y), OutletLevel: -500, Conductance: constant(span(10, 400)), EffectiveRadius: span(0.5, 2)})
+		site.Springs = append(site.Springs, aquifer.Spring{Name: name, At: m.at(x, y), OutletLevel: -500, Conductance: constant(span(10, 400)), EffectiveRadius: span(0.1, 0.3)})
 		rs = append(rs, wells.Receptor{ID: name, Kind: wells.SpringFlow, Feature: name})
 	}
 	var ws []wells.Well

@@ -14,6 +14,9 @@
 // cotangents are those in the metric of the inverse tensor. Recharge, leakage, rivers, lakes and head-dependent edges are lumped
 // at nodes, so the matrix stays an M-matrix. Prescribed heads are eliminated; the flow through them is the residual of their row.
 //
+// Finer is the model on the mesh with every triangle cut into four, assembled from the same site and solved without a factor of its own; Corners
+// lists where the gradient of head has no limit. Both serve estimates of the discretisation error (package adjoint).
+//
 // Symbols, units, signs: h head [m]; T transmissivity [m²/d]; N recharge [m/d]; c leakage resistance [d]; Q rate [m³/d],
 // positive out; flows in a balance are positive into the aquifer [m³/d].
 //

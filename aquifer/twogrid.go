@@ -82,12 +82,32 @@ func (s *FineSystem) Improve(ctx context.Context, x, b [][]float64, workers int)
 			break
 		}
 	}
-	for i := range x {
-		for k := range x[i] {
-			x[i][k] = xs[i/lane][k*lane+i%lane]
-		}
+	for g := range groups {
+		s.unweave(x, xs[g], g)
 	}
 	return left, cycles, nil
+}
+
+// Smooth makes double sweeps only: what they leave is what the coarse mesh shows too.
+func (s *FineSystem) Smooth(ctx context.Context, x, b [][]float64, sweeps, workers int) error {
+	return inParallel(ctx, (len(x)+lane-1)/lane, workers, func(_ context.Context, g int) error {
+		y, r := s.weave(x, g), s.weave(b, g)
+		for range sweeps {
+			s.sweep(y, r, false)
+			s.sweep(y, r, true)
+		}
+		s.unweave(x, y, g)
+		return nil
+	})
+}
+
+// unweave takes group g apart again.
+func (s *FineSystem) unweave(x [][]float64, y []float64, g int) {
+	for c, f := range x[g*lane : min(len(x), (g+1)*lane)] {
+		for k := range f {
+			f[k] = y[k*lane+c]
+		}
+	}
 }
 
 // worstShare is the largest of the norms over the first ones.
