@@ -11,11 +11,12 @@
 // [Factor], a Factor solves any number of right-hand sides.
 //
 // Ordering. Nested dissection (George 1973; Lipton, Rose & Tarjan 1979): the nodes are swept along four directions of
-// the plane, the position with the smallest vertex separator near the median by count is taken, the cut edges are
-// covered by the fewest nodes (König 1931; Hopcroft & Karp 1973) and the separator is improved by moving single nodes
-// (Fiduccia & Mattheyses 1982). Parts of a few hundred nodes are ordered by approximate minimum degree (Amestoy, Davis
-// & Duff 1996) with their surroundings as a halo that counts in the degrees and is not eliminated (Pellegrini, Roman &
-// Amestoy 2000). Without coordinates minimum degree orders the whole graph.
+// the plane, in small parts along two, the position with the smallest vertex separator near the median by count is
+// taken, the cut edges are covered by the fewest nodes (König 1931; Hopcroft & Karp 1973) and the separator is improved
+// by moving single nodes (Fiduccia & Mattheyses 1982). Parts of a few hundred nodes are ordered by approximate minimum
+// degree (Amestoy, Davis & Duff 1996) with their surroundings as a halo that counts in the degrees and is not eliminated
+// (Pellegrini, Roman & Amestoy 2000). Without coordinates, and up to a thousand rows, minimum degree orders the whole
+// graph.
 //
 // Analysis. Elimination tree (Liu 1990), column counts (Gilbert, Ng & Peyton 1994), supernodes with relaxed
 // amalgamation (Ashcraft & Grimes 1989), rows of each supernode from row subtrees.
@@ -24,8 +25,13 @@
 // fixed order; dense partial Cholesky in blocks of columns.
 //
 // Solve. Right-hand sides go through the factor in panels of fixed width; a column's result does not depend on the
-// panel that it sits in. For sparse right-hand sides and few wanted entries only the paths of the elimination tree
-// to the root are walked (Gilbert 1994).
+// panel that it sits in. Supernodes that no entry other than zero leads to are passed over on the way up, so that a
+// right-hand side with few entries walks only their paths of the elimination tree to the root; where few entries of the
+// solutions are wanted, the way back walks theirs alone (Gilbert 1994). A panel holds the rows of one subtree at a
+// time and the rows that subtrees share, some tenth of all, and stays in the caches.
+//
+// Memory. [Symbolic.FactorBytes], [Symbolic.PeakBytes] and [Symbolic.SolveBytes] tell after the analysis what the rest
+// takes.
 //
 // # Symbols
 //

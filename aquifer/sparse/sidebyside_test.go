@@ -9,6 +9,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
+	"runtime/debug"
 	"slices"
 	"strconv"
 	"syscall"
@@ -207,6 +208,7 @@ func TestSideBySide(t *testing.T) {
 	if name == "" || os.Getenv("SPRINGBOUND_MATRIX_NODES") != "" {
 		t.Skip("SPRINGBOUND_MATRIX names no file to read")
 	}
+	debug.SetGCPercent(30) // as the command has it
 	workers, _ := strconv.Atoi(os.Getenv("SPRINGBOUND_WORKERS"))
 	in, err := readTable(name)
 	if err != nil {
