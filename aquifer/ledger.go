@@ -150,7 +150,8 @@ func (l *Ledger) readParts(t int, c *corners3, x, y [3]float64, r *record) {
 	d := 2 * (u[1]*v[2] - v[1]*u[2])
 	p, q := u[1]*u[1]+v[1]*v[1], u[2]*u[2]+v[2]*v[2]
 	cu, cv := (v[2]*p-v[1]*q)/d, (u[1]*q-u[2]*p)/d // circumcentre, from corner 0
-	half := func(i, j int) float64 {               // triangle corner i, middle of ij, circumcentre
+	// half is the triangle of corner i, the middle of ij and the circumcentre
+	half := func(i, j int) float64 {
 		mu, mv := (u[i]+u[j])/2-u[i], (v[i]+v[j])/2-v[i]
 		return (mu*(cv-v[i]) - mv*(cu-u[i])) / 2
 	}
