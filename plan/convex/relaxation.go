@@ -79,7 +79,8 @@ func checkRelaxable(p *Problem, relaxable []Relaxable) error {
 }
 
 // elastic is a problem without costs and with a helper column for each side of a row that may give way. A row with one entry is a bound
-// of its column; where it may give way its helper is a copy of that column, which takes on what passes the bound.
+// of its column; where it may give way its helper is a copy of that column, which takes on what passes the bound, or, in the bare form for
+// one row at a time, that column itself.
 type elastic struct {
 	p       *Problem
 	helpers []elasticHelper
@@ -97,7 +98,7 @@ type elasticHelper struct {
 	upperOf bool    // it adds to that column, otherwise it takes from it
 }
 
-func newElastic(p *Problem, relaxable []Relaxable) *elastic {
+func newElastic(p *Problem, relaxable []Relaxable, bare bool) *elastic {
 	n := p.Columns()
 	e := &elastic{p: &Problem{sense: Minimise, columns: append([]Column(nil), p.columns...)}}
 	bounds := findRowBounds(p)
@@ -130,7 +131,7 @@ func newElastic(p *Problem, relaxable []Relaxable) *elastic {
 	for j := range low {
 		e.p.columns[j].Lower, e.p.columns[j].Upper = low[j], high[j]
 	}
-	e.addCopies(bounds, relaxable, low, high)
+	e.addCopies(bounds, relaxable, low, high, bare)
 	place := make([]int, p.Rows())
 	for i := range place {
 		if !bounds.is[i] {
@@ -184,12 +185,16 @@ func (e *elastic) keepSeveral(p *Problem, b *rowBounds, relaxable []Relaxable) {
 	}
 }
 
-// addCopies tightens the columns by the bounds that may give way and adds the copies.
-func (e *elastic) addCopies(b *rowBounds, relaxable []Relaxable, low, high []float64) {
+// addCopies tightens the columns by the bounds that may give way and adds the copies, none in the bare form.
+func (e *elastic) addCopies(b *rowBounds, relaxable []Relaxable, low, high []float64, bare bool) {
 	add := func(owner int, upper bool, weight, size, most float64, of int, upperOf bool) {
 		h := elasticHelper{column: len(e.p.columns), owner: owner, upper: upper, weight: weight, size: size, most: most, of: of, upperOf: upperOf}
+		if bare {
+			h.column = of
+		} else {
+			e.p.columns = append(e.p.columns, Column{Cost: weight * size, Upper: most})
+		}
 		e.helpers = append(e.helpers, h)
-		e.p.columns = append(e.p.columns, Column{Cost: weight * size, Upper: most})
 	}
 	for k, v := range relaxable {
 		if !b.is[v.Row] {
@@ -217,7 +222,7 @@ func (e *elastic) extend(i int) {
 	copy(a, e.p.a[i])
 	for _, h := range e.helpers {
 		switch {
-		case h.of < 0:
+		case h.of < 0 || h.of == h.column:
 		case h.upperOf:
 			a[h.column] = a[h.of]
 		default:

@@ -2,7 +2,6 @@ package convex
 
 import (
 	"context"
-	"fmt"
 	"math"
 )
 
@@ -30,7 +29,7 @@ func NewRelaxer(p *Problem, relaxable []Relaxable) (*Relaxer, error) {
 }
 
 func (r *Relaxer) build() {
-	r.e = newElastic(r.original, r.relaxable)
+	r.e = newElastic(r.original, r.relaxable, false)
 	r.t = newSession(r.e.p)
 	r.t.e.startFromRows()
 	r.cost, r.costFactor = make([]float64, len(r.e.helpers)), r.t.s.costFactor
@@ -126,148 +125,3 @@ func (r *Relaxer) solveOne(ctx context.Context, row int) Status {
 	}
 	return r.optimise(ctx)
 }
-
-// Alone finds for each listed row of the list the least weighted relaxation of it that makes the problem feasible when no other gives
-// way, and its amount: zero where the problem is feasible, +Inf when none does, NaN from where the search was stopped. The status is
-// Optimal or what stopped it.
-//
-// A proof that nothing is feasible stays one when a row gives way that it does not use, so that every proof settles the rows outside it
-// at once. Of the others, an optimum with one row giving way settles those that meet all bounds when they take its place along an edge
-// of the optimum: what is left of the one falls along a line of which the prices say that nothing is below it. Only the rest is solved for.
-func (r *Relaxer) Alone(ctx context.Context, which []int) (weighted, amount []float64, status Status) {
-	a := &aloneSearch{r: r, which: which, hopeless: make([]bool, len(r.relaxable)), done: make([]bool, len(which))}
-	a.weighted, a.amount = make([]float64, len(which)), make([]float64, len(which))
-	for k, i := range which {
-		if i < 0 || i >= len(r.relaxable) {
-			panic(fmt.Sprintf("convex: Relaxer.Alone: no row %d in a list of %d", i, len(r.relaxable)))
-		}
-		a.weighted[k], a.amount[k] = math.NaN(), math.NaN()
-	}
-	status = a.run(ctx)
-	return a.weighted, a.amount, status
-}
-
-// aloneSearch is the state of Alone.
-type aloneSearch struct {
-	r                *Relaxer
-	which            []int
-	weighted, amount []float64
-	done             []bool // by place in which
-	hopeless         []bool // by row of the list
-}
-
-func (a *aloneSearch) run(ctx context.Context) Status {
-	switch status := a.r.solveOne(ctx, nobody); status {
-	case Infeasible:
-		a.useProof()
-	case Optimal: // feasible, or by so little that it does not count alone
-	default:
-		return status
-	}
-	for k, row := range a.which {
-		if a.hopeless[row] && !a.done[k] {
-			a.settle(k, math.Inf(1), math.Inf(1))
-		}
-		if a.done[k] {
-			continue
-		}
-		switch status := a.r.solveOne(ctx, row); status {
-		case Infeasible:
-			a.settle(k, math.Inf(1), math.Inf(1))
-			a.useProof()
-		case Optimal:
-			weighted, amount := 0.0, 0.0
-			for _, h := range a.r.e.helpers {
-				if h.owner == row {
-					by := math.Max(0, a.r.t.value(h.column)) * h.size
-					weighted, amount = weighted+by*h.weight, amount+by
-				}
-			}
-			a.settle(k, weighted, amount)
-			a.exchange(row)
-		default:
-			return status
-		}
-	}
-	return Optimal
-}
-
-func (a *aloneSearch) settle(k int, weighted, amount float64) {
-	a.weighted[k], a.amount[k], a.done[k] = weighted, amount, true
-}
-
-// useProof marks the rows that the last proof does not use.
-func (a *aloneSearch) useProof() {
-	e := a.r.t.e
-	e.m.combineRows(e.byCol, e.everyRow(e.proof), e.dr, e.byRow)
-	used := make([]bool, len(a.hopeless))
-	for _, h := range a.r.e.helpers {
-		if e.byCol[h.column] < 0 { // raising the helper takes from the proof
-			used[h.owner] = true
-		}
-	}
-	for row := range a.hopeless {
-		a.hopeless[row] = a.hopeless[row] || !used[row]
-	}
-}
-
-// exchange lets each open row take the place of the one that gives way in the present optimum.
-func (a *aloneSearch) exchange(row int) {
-	e, p := a.r.t.e, -1
-	for _, h := range a.r.e.helpers {
-		if h.owner == row && e.place[h.column] == Basic && e.x[h.column] > exchangeLeast {
-			p = h.column
-		}
-	}
-	if p < 0 {
-		return
-	}
-	e.pivotRow(p)
-	rate := append([]float64(nil), e.alpha[:e.n]...)
-	helper := make([]int, len(a.hopeless)) // by row: the helper that takes from the one in place
-	for i := range helper {
-		helper[i] = -1
-	}
-	for k, h := range a.r.e.helpers {
-		if e.place[h.column] != Basic && h.owner != row && -rate[h.column] > steadyPivot {
-			helper[h.owner] = k
-		}
-	}
-	for k, other := range a.which {
-		if a.done[k] || a.hopeless[other] || helper[other] < 0 {
-			continue
-		}
-		h := a.r.e.helpers[helper[other]]
-		if by, ok := a.reaches(p, h.column, rate[h.column], h.most); ok {
-			a.settle(k, by*h.size*h.weight, by*h.size)
-		}
-	}
-}
-
-// reaches raises helper column q until p, which changes by rate for each unit of it, is zero. It returns the amount that this takes, and
-// whether all else stays within its bounds.
-func (a *aloneSearch) reaches(p, q int, rate, most float64) (amount float64, ok bool) {
-	e := a.r.t.e
-	e.pivotColumn(q)
-	if !(math.Abs(e.stepOf(p)-rate) <= sharpTolerance*math.Abs(rate)) {
-		return 0, false
-	}
-	t := e.x[p] / -rate
-	amount = t * a.r.t.s.col[q]
-	ok = amount <= most
-	e.eachBasic(func(v int, step float64) {
-		if v == p {
-			return
-		}
-		x := e.x[v] + t*step
-		by, bound := outside(x, e.lower[v], e.upper[v])
-		ok = ok && by <= sharpTolerance*math.Max(1, math.Abs(bound))
-	})
-	return amount, ok
-}
-
-// nobody stands for no row.
-const nobody = -1
-
-// exchangeLeast is the scaled relaxation below which its rounding would count.
-const exchangeLeast = 1e-3
