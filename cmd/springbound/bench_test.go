@@ -126,8 +126,8 @@ func timeStages(b *testing.B, dir string, stage map[string]time.Duration) {
 	mark("workbook")
 }
 
-// BenchmarkWells shows that the cost of sensitivities does not grow with the number of wells beyond reading their entries: the same mesh serves
-// 30 and 3,000 wells.
+// BenchmarkWells shows that the cost of sensitivities does not grow with the number of wells beyond reading their entries where influence fields are
+// made, and is below that where they are not: the same mesh serves 30 and 3,000 wells.
 func BenchmarkWells(b *testing.B) {
 	ctx := context.Background()
 	var sink bytes.Buffer
@@ -142,13 +142,20 @@ func BenchmarkWells(b *testing.B) {
 		for i := range wanted {
 			wanted[i] = int32(i * (len(j.field.Model.Mesh.X) / count))
 		}
-		b.Run(fmt.Sprintf("wells=%d", count), func(b *testing.B) {
-			for range b.N {
-				if _, err := adjoint.Solve(ctx, j.field.Model, j.field.Model, fs, wanted, nil, nil); err != nil {
-					b.Fatal(err)
-				}
+		for _, fields := range []bool{false, true} {
+			var each func(int, []float64) error
+			if fields {
+				each = func(int, []float64) error { return nil }
 			}
-		})
+			b.Run(fmt.Sprintf("fields=%t/wells=%d", fields, count), func(b *testing.B) {
+				for range b.N {
+					if _, err := adjoint.Solve(ctx, j.field.Model, j.field.Model, fs, wanted, each, nil); err != nil {
+						b.Fatal(err)
+					}
+				}
+				b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*len(fs)), "ns/receptor")
+			})
+		}
 	}
 }
 
