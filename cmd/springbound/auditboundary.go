@@ -220,7 +220,7 @@ func boundaryWords(changes []plan.BoundaryChange) string {
 	if len(decided) == 0 {
 		return "without it no limited receptor changes by much at the plan's rates"
 	}
-	out := "without it, at the plan's rates, changes are other ones: " + strings.Join(decided, ", ")
+	out := "without it, at the plan's rates, changes are other ones: " + firstNames(decided)
 	if len(passed) > 0 {
 		out += fmt.Sprintf("; %s passed", isAre(passed))
 	}
@@ -231,7 +231,15 @@ func isAre(ids []string) string {
 	if len(ids) == 1 {
 		return "limit " + ids[0] + " is"
 	}
-	return "limits " + strings.Join(ids, ", ") + " are"
+	return "limits " + firstNames(ids) + " are"
+}
+
+// firstNames lists the first of many names and counts the rest; the tables hold all.
+func firstNames(names []string) string {
+	if len(names) <= mostNamed {
+		return strings.Join(names, ", ")
+	}
+	return fmt.Sprintf("%s and %d more", strings.Join(names[:mostNamed], ", "), len(names)-mostNamed)
 }
 
 // jobWithout is the job on a model without a source: receptors that watch the source itself, and their limits, are left out.

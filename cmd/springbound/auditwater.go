@@ -11,7 +11,7 @@ import (
 	"springbound/plan"
 )
 
-// mostNamed is how many sources of water a sentence names.
+// mostNamed is how many sources, receptors or limits a sentence names.
 const mostNamed = 6
 
 // waterSources says where the pumped water comes from, whether every well's shares sum to all of it, and whether a feature would have to give more
