@@ -22,6 +22,9 @@ func TestFirmAgainstSeparatePlans(t *testing.T) {
 			s.brief.Wells[0].QuadraticLoss = 1e-6
 			s.level(0, 20, 18, 0.001, 0.0002, 0.0002, 0.0001, 0.0001)
 		}
+		if trial%3 == 2 { // a linear level that the others lower too, so that letting it go counts
+			s.level(1, 20, 19.95, 0.0004, 0.001, 0.0004, 0.0003, 0.0002)
+		}
 		calls := s.table.calls
 		f, err := Firm(context.Background(), s.brief, s.table, Options{})
 		if err != nil {
@@ -76,4 +79,20 @@ func TestFirmDemand(t *testing.T) {
 			}
 		}
 	}
+}
+
+// The lowest level of the well that is out is let go: without B, which alone has one, A gives all it can.
+func TestFirmLetsLevelGo(t *testing.T) {
+	s := newSite(MostYield, decidedWell("A", 0, 80), decidedWell("B", 0, 90))
+	s.level(1, 20, 19.95, 0.001, 0.0005)
+	f, err := Firm(context.Background(), s.brief, s.table, Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	exact(t, "all in service", f.AllInService, 90+0.005/0.001) // 0.045 m for B, the rest for A
+	if len(f.Lines) != 2 || f.Lines[0].Well != "B" || f.Lines[1].Well != "A" {
+		t.Fatalf("%+v", f.Lines)
+	}
+	exact(t, "without B", *f.Lines[0].Total, 80)
+	exact(t, "without A", *f.Lines[1].Total, 90)
 }
