@@ -72,8 +72,8 @@
 // Status is never more than the arithmetic supports, and Certify recomputes from the data alone what it claims: violations, signs,
 // stationarity, slackness and gap of an optimum, the proof of infeasibility (Farkas 1902), the direction of an unbounded problem. A proof must
 // show more than the tolerance on its bounds, and more than values a thousand times the largest bound make of what meets no bound.
-// Where prices or plan are not the only ones Solution.PrimalDegenerate or DualDegenerate says so. Conflict and LeastRelaxation
-// explain what cannot be met.
+// Where prices or plan are not the only ones Solution.PrimalDegenerate or DualDegenerate says so. Conflict, LeastRelaxation and
+// Relaxer explain what cannot be met; rows with one entry, which can be named and give way, cost them no more than bounds.
 //
 // # Not done
 //
