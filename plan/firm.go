@@ -230,20 +230,17 @@ func (k *inService) take(p *planner, out bool) error {
 
 // binding names what holds the total: limits, levels and quotas with a price; largest rates where nothing else has one.
 func (p *planner) binding(g *programme, sol *convex.Solution) []string {
-	s, out, seen := p.setup, []string{}, map[string]bool{}
+	out, seen := []string{}, map[string]bool{}
 	scale := p.aimScale()
 	for r, o := range g.owners {
 		if sol.RowPrice[r] == 0 {
 			continue
 		}
-		row, size := g.problem.Row(r), 0.0
-		for k, i := range s.decided {
-			size = math.Max(size, math.Abs(row.Coefficients[k])*s.rateScale(i))
-		}
-		if math.Abs(sol.RowPrice[r])*size > priceTolerance*scale && !seen[row.Name] {
-			seen[row.Name] = true
+		size := p.rowSize(g, r)
+		if name := g.name[r]; math.Abs(sol.RowPrice[r])*size > priceTolerance*scale && !seen[name] {
+			seen[name] = true
 			if o.kind != ofDemand {
-				out = append(out, row.Name)
+				out = append(out, name)
 			}
 		}
 	}
@@ -251,6 +248,22 @@ func (p *planner) binding(g *programme, sol *convex.Solution) []string {
 		out = append(out, "the wells' largest rates")
 	}
 	return out
+}
+
+// rowSize is the largest change that one decided well causes in a row; it is kept for the next outage.
+func (p *planner) rowSize(g *programme, r int) float64 {
+	for len(g.size) <= r {
+		g.size = append(g.size, math.NaN())
+		g.name = append(g.name, "")
+	}
+	if math.IsNaN(g.size[r]) {
+		row, size := g.problem.Row(r), 0.0
+		for k, i := range p.setup.decided {
+			size = math.Max(size, math.Abs(row.Coefficients[k])*p.setup.rateScale(i))
+		}
+		g.size[r], g.name[r] = size, row.Name
+	}
+	return g.size[r]
 }
 
 // checkFirm judges the demand with one well out of service.

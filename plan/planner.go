@@ -73,4 +73,7 @@ type programme struct {
 	problem *convex.Problem
 	owners  []owner
 	share   int // column of t; -1: none
+
+	size []float64 // by row, as far as asked for: see rowSize
+	name []string
 }
