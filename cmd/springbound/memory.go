@@ -2,6 +2,7 @@ package main
 
 import (
 	"os"
+	"runtime"
 	"runtime/debug"
 	"strconv"
 	"strings"
@@ -16,6 +17,18 @@ const garbagePercent = 30
 func tameGarbage() {
 	if os.Getenv("GOGC") == "" {
 		debug.SetGCPercent(garbagePercent)
+	}
+}
+
+// collectedHeap is the heap from which what a stage leaves is collected before the next: the next asks for large pieces at once, before the
+// collector would have run by itself. At a million nodes that saves 70 MB and costs hundredths of a second [bytes].
+const collectedHeap = 100 << 20
+
+func collectAtStage() {
+	var now runtime.MemStats
+	runtime.ReadMemStats(&now)
+	if now.HeapAlloc > collectedHeap {
+		runtime.GC()
 	}
 }
 

@@ -32,7 +32,11 @@ func newProgress(s streams, quiet bool) *progress {
 	return &progress{w: s.err, on: s.terminal && !quiet, start: time.Now()}
 }
 
+// report tells how far a stage is. At the start of each, what earlier ones left is collected.
 func (p *progress) report(stage string, done, total int) {
+	if done == 0 {
+		collectAtStage()
+	}
 	if !p.on || (done < total && time.Since(p.last) < 100*time.Millisecond && done > 0) {
 		return
 	}
