@@ -2,7 +2,7 @@
 //
 //     mesh FILE SCALE DEGREES RUNS
 //
-// prints nodes, median seconds, smallest angle in degrees, per cent of obtuse triangles and peak memory in MB. A triangle is too large when its longest edge
+// prints nodes, median seconds, seconds of processor, smallest angle in degrees, per cent of obtuse triangles and peak memory in MB. A triangle is too large when its longest edge
 // exceeds SCALE times the size wanted at its centroid. The time is that of inserting outline and points and refining; nothing is copied out.
 #include <CGAL/Exact_predicates_inexact_constructions_kernel.h>
 #include <CGAL/Constrained_Delaunay_triangulation_2.h>
@@ -17,6 +17,7 @@
 #include <cstdlib>
 #include <fstream>
 #include <string>
+#include <sys/resource.h>
 #include <vector>
 
 using K = CGAL::Exact_predicates_inexact_constructions_kernel;
@@ -105,6 +106,13 @@ public:
     Is_bad is_bad_object() const { return Is_bad(this->bound(), field, scale, this->traits); }
 };
 
+// processor is what this process has used of all processors [s].
+static double processor() {
+    rusage u;
+    getrusage(RUSAGE_SELF, &u);
+    return double(u.ru_utime.tv_sec + u.ru_stime.tv_sec) + 1e-6 * double(u.ru_utime.tv_usec + u.ru_stime.tv_usec);
+}
+
 int main(int argc, char** argv) {
     if (argc != 5) return std::fprintf(stderr, "usage: mesh FILE SCALE DEGREES RUNS\n"), 2;
     std::ifstream in(argv[1]);
@@ -121,11 +129,12 @@ int main(int argc, char** argv) {
         (i < n ? outline : field.at).push_back(Point(x, y));
         xmin = std::min(xmin, x), xmax = std::max(xmax, x), ymin = std::min(ymin, y), ymax = std::max(ymax, y);
     }
-    std::vector<double> seconds;
+    std::vector<double> seconds, busy;
     size_t nodes = 0;
     double least = 180, obtuse = 0;
     for (int r = 0; r < runs; r++) {
         auto begin = std::chrono::steady_clock::now();
+        double before = processor();
         Field f = field;
         f.prepare(xmin, ymin, xmax, ymax);
         CDT cdt;
@@ -134,6 +143,7 @@ int main(int argc, char** argv) {
         CGAL::Delaunay_mesher_2<CDT, Criteria> mesher(cdt, Criteria(sine * sine, &f, scale));
         mesher.refine_mesh();
         seconds.push_back(std::chrono::duration<double>(std::chrono::steady_clock::now() - begin).count());
+        busy.push_back(processor() - before);
         nodes = cdt.number_of_vertices();
         if (r + 1 < runs) continue;
         size_t wide = 0, inside = 0;
@@ -152,9 +162,10 @@ int main(int argc, char** argv) {
         obtuse = 100.0 * double(wide) / double(inside);
     }
     std::sort(seconds.begin(), seconds.end());
+    std::sort(busy.begin(), busy.end());
     long peak = 0;
     std::ifstream status("/proc/self/status");
     for (std::string word; status >> word;)
         if (word == "VmHWM:") status >> peak;
-    std::printf("%zu %.4f %.2f %.3f %ld\n", nodes, seconds[seconds.size() / 2], least, obtuse, peak / 1024);
+    std::printf("%zu %.4f %.4f %.2f %.3f %ld\n", nodes, seconds[seconds.size() / 2], busy[busy.size() / 2], least, obtuse, peak / 1024);
 }
