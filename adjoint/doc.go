@@ -38,7 +38,7 @@
 // springs' effective conductances. Neither the logarithms at wells nor jumps of the gradient at rivers and zone borders need recovery.
 //
 // The finer model is never factored. Each field starts from P of the coarse one and is improved by cycles of Gauss-Seidel sweeps there and
-// solves with the coarse factor, until a thousandth of the first residual is left (two-grid method; Brandt 1977). All changes take two such solves
+// solves with the coarse factor, until a hundredth of the first residual is left, a thousandth where a row reads the level in a bore (two-grid method; Brandt 1977). All changes take two such solves
 // together, of the state without pumping and of the drawdown; all slopes one a distinct row, whatever the number of wells, since the row's influence on
 // both meshes holds the difference at every well.
 //

@@ -14,7 +14,7 @@ import (
 type cornerError struct {
 	aquifer.Corner
 	extra float64   // what is added to the terms' sum beyond 4/3 of it [-]
-	probe int32     // a node beside it: the field there less that at the corner tells the strength of r^a f(angle)
+	probe int32     // a node beside it, itself where every field is level: the field there less that at the corner tells the strength of r^a f(angle)
 	rows  []float64 // per row: extra x sum of the terms of its influence with itself, over the influence's strength
 }
 
@@ -31,7 +31,7 @@ func (c *comparison) findCorners() {
 		for _, t := range k.Triangles {
 			taken[t] = true
 		}
-		c.corners = append(c.corners, cornerError{Corner: k, probe: -1, extra: 1/(1-math.Pow(4, -k.Exponent)) - remaining, rows: make([]float64, len(c.f.watched))})
+		c.corners = append(c.corners, cornerError{Corner: k, probe: k.Node, extra: 1/(1-math.Pow(4, -k.Exponent)) - remaining, rows: make([]float64, len(c.f.watched))})
 	}
 }
 
@@ -51,11 +51,20 @@ func (c *comparison) cornerChange(terms aquifer.ErrorTerms) float64 {
 func (c *comparison) cornerRow(row int, z, dz []float64) {
 	for i := range c.corners {
 		k := &c.corners[i]
-		if k.probe < 0 {
-			k.probe = c.strongest(k.Corner, z)
-		}
 		if strength := z[k.probe] - z[k.Node]; strength != 0 {
 			k.rows[row] = k.extra * c.finer.Energy(k.Triangles, dz) / strength
+		}
+	}
+}
+
+// findProbes chooses a node beside each corner, by the first influence that is not level there.
+func (c *comparison) findProbes(fields [][]float64) {
+	for i := range c.corners {
+		k := &c.corners[i]
+		for _, z := range fields {
+			if k.probe == k.Node {
+				k.probe = c.strongest(k.Corner, z)
+			}
 		}
 	}
 }

@@ -24,8 +24,8 @@ type pairNorms struct {
 func (c *comparison) wellNorms(ctx context.Context) error {
 	n, nf := c.f.Model.Unknowns(), c.finer.Unknowns()
 	c.pairs = &pairNorms{}
-	for start := 0; start < len(c.f.node); start += blockWidth {
-		k := min(blockWidth, len(c.f.node)-start)
+	for start := 0; start < len(c.f.node); start += errorBatch {
+		k := min(errorBatch, len(c.f.node)-start)
 		block := make([]float64, n*k)
 		x, b, u := make([][]float64, k), make([][]float64, k), make([][]float64, k)
 		for i := range k {
@@ -44,14 +44,14 @@ func (c *comparison) wellNorms(ctx context.Context) error {
 		if err := c.system.Smooth(ctx, x, b, pairSweeps, c.o.Workers); err != nil {
 			return err
 		}
-		for i := range k {
-			c.pairs.cluster = append(c.pairs.cluster, c.norms(u[i], c.finer.Difference(u[i], c.finer.Spread(x[i])), nil))
-			at := make([]float64, len(c.f.Model.SpringNode))
-			for s, node := range c.f.Model.SpringNode {
-				at[s] = u[i][node]
+		cluster, spring := make([][]float64, k), make([][]float64, k)
+		inParallel(k, c.o.Workers, func(i int) {
+			cluster[i] = c.norms(u[i], c.finer.Difference(u[i], c.finer.Spread(x[i])), nil)
+			for _, node := range c.f.Model.SpringNode {
+				spring[i] = append(spring[i], u[i][node])
 			}
-			c.pairs.spring = append(c.pairs.spring, at)
-		}
+		})
+		c.pairs.cluster, c.pairs.spring = append(c.pairs.cluster, cluster...), append(c.pairs.spring, spring...)
 	}
 	return nil
 }

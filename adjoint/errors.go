@@ -77,7 +77,7 @@ func (f *Field) Errors(ctx context.Context, state *State, o ErrorOptions) (*Erro
 	if o.Accuracy == 0 {
 		o.Accuracy = DefaultAccuracy
 	}
-	finer, err := f.Model.Finer(ctx, o.Workers)
+	finer, err := f.Model.Finer(ctx, f.readBores(state), o.Workers)
 	if err != nil {
 		return nil, err
 	}
@@ -96,6 +96,22 @@ func (f *Field) Errors(ctx context.Context, state *State, o ErrorOptions) (*Erro
 		return c.out, nil
 	}
 	return c.out, c.influences(ctx)
+}
+
+// readBores lists the nodes of wells in whose own bore some row reads the level: their equivalent radii enter.
+func (f *Field) readBores(state *State) (nodes []int32) {
+	for i, x := range f.watched {
+		direct := x.functional.Direct
+		if x.worst != nil {
+			direct = f.casing(state.Rows[i].Place)
+		}
+		for w, d := range direct {
+			if d != 0 {
+				nodes = append(nodes, f.node[w])
+			}
+		}
+	}
+	return nodes
 }
 
 // finerField joins the finer model with the same wells and rows.
@@ -125,7 +141,7 @@ func (c *comparison) states(ctx context.Context) error {
 	start := c.finer.ProlongHeads(base.Heads)
 	off := c.finer.OffAt(start)
 	x := [][]float64{unknowns(c.finer.Model, start)}
-	if err := c.solve(ctx, c.finer.System(base, off), x, [][]float64{c.finer.Unpumped(off)}); err != nil {
+	if err := c.solve(ctx, c.finer.System(base, off), x, [][]float64{c.finer.Unpumped(off)}, aquifer.SolvedFinely); err != nil {
 		return err
 	}
 	c.fineBase = c.finer.State(c.finer.Whole(x[0]), off)
@@ -134,7 +150,7 @@ func (c *comparison) states(ctx context.Context) error {
 	c.system = c.finer.System(state, off)
 	c.coarseDrawdown = c.state.drawdown()
 	x[0] = unknowns(c.finer.Model, c.finer.Prolong(c.coarseDrawdown))
-	if err := c.solve(ctx, c.system, x, [][]float64{c.finer.Pumped(c.f.Sinks(c.state.Rates), c.fineBase, c.fineState)}); err != nil {
+	if err := c.solve(ctx, c.system, x, [][]float64{c.finer.Pumped(c.f.Sinks(c.state.Rates), c.fineBase, c.fineState)}, aquifer.SolvedFinely); err != nil {
 		return err
 	}
 	c.fineDrawdown = c.finer.Spread(x[0])
@@ -147,8 +163,8 @@ func (c *comparison) states(ctx context.Context) error {
 }
 
 // solve improves fields and keeps the count.
-func (c *comparison) solve(ctx context.Context, sys *aquifer.FineSystem, x, b [][]float64) error {
-	left, cycles, err := sys.Improve(ctx, x, b, c.o.Workers)
+func (c *comparison) solve(ctx context.Context, sys *aquifer.FineSystem, x, b [][]float64, share float64) error {
+	left, cycles, err := sys.Improve(ctx, x, b, share, c.o.Workers)
 	c.out.Left, c.out.Cycles = math.Max(c.out.Left, left), max(c.out.Cycles, cycles)
 	return err
 }

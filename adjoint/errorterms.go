@@ -23,23 +23,12 @@ func (c *comparison) influences(ctx context.Context) error {
 			return err
 		}
 	}
-	first := map[string]int{}
-	same := make([]int, len(coarse))
-	var distinct []int
-	for i := range coarse {
-		k := signature(c.f.Model, coarse[i].Quantity)
-		d, ok := first[k]
-		if !ok {
-			d = len(distinct)
-			first[k], distinct = d, append(distinct, i)
-		}
-		same[i] = d
-	}
+	distinct, same := c.distinct(coarse)
 	c.findCorners()
 	c.out.Indicator = make([]float64, len(c.f.Model.Mesh.X))
 	n, nf := c.f.Model.Unknowns(), c.finer.Unknowns()
-	for start := 0; start < len(distinct); start += blockWidth {
-		k := min(blockWidth, len(distinct)-start)
+	for start := 0; start < len(distinct); start += errorBatch {
+		k := min(errorBatch, len(distinct)-start)
 		block := make([]float64, n*k)
 		x, b := make([][]float64, k), make([][]float64, k)
 		for i := range k {
@@ -55,12 +44,31 @@ func (c *comparison) influences(ctx context.Context) error {
 			z[i] = c.f.Model.Spread(block[i*n : (i+1)*n])
 			x[i] = unknowns(c.finer.Model, c.finer.Prolong(z[i]))
 		}
-		if err := c.solve(ctx, c.system, x, b); err != nil {
+		share := aquifer.SolvedShare
+		for i := range k {
+			if coarse[distinct[start+i]].Direct != nil {
+				share = aquifer.SolvedFinely
+			}
+		}
+		if err := c.solve(ctx, c.system, x, b, share); err != nil {
 			return err
 		}
+		var rows []int
 		for row := range coarse {
 			if i := same[row] - start; i >= 0 && i < k {
-				c.row(row, z[i], c.finer.Spread(x[i]), coarse[row], fine[row])
+				rows = append(rows, row)
+			}
+		}
+		c.findProbes(z)
+		parts := make([][]float64, len(rows))
+		inParallel(len(rows), c.o.Workers, func(j int) {
+			row := rows[j]
+			i := same[row] - start
+			parts[j] = c.row(row, z[i], c.finer.Spread(x[i]), coarse[row], fine[row])
+		})
+		for _, part := range parts { // in the rows' order
+			for node, v := range part {
+				c.out.Indicator[node] += v
 			}
 		}
 		if c.o.Progress != nil {
@@ -68,6 +76,24 @@ func (c *comparison) influences(ctx context.Context) error {
 		}
 	}
 	return c.cornerSlopes(ctx)
+}
+
+// errorBatch is how many influences are compared at once: each takes six fields over the finer nodes.
+const errorBatch = 16
+
+// distinct lists rows with different influences, and for each row which of them is its own.
+func (c *comparison) distinct(fs []Functional) (distinct, same []int) {
+	first := map[string]int{}
+	for i := range fs {
+		k := signature(c.f.Model, fs[i].Quantity)
+		d, ok := first[k]
+		if !ok {
+			d = len(distinct)
+			first[k], distinct = d, append(distinct, i)
+		}
+		same = append(same, d)
+	}
+	return distinct, same
 }
 
 // functionals are those of the rows in the state on both meshes, a worst place at the place on the coarse one.
@@ -96,8 +122,8 @@ func scatter(b []float64, m *aquifer.Model, q aquifer.Quantity) {
 	}
 }
 
-// row turns the influences of a row on both meshes into its errors.
-func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) {
+// row turns the influences of a row on both meshes into its errors and returns its part of the indicator.
+func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) []float64 {
 	e := &c.out.Rows[row]
 	e.SlopeError = make([]float64, len(c.f.node))
 	e.Size = 0
@@ -124,12 +150,13 @@ func (c *comparison) row(row int, zc, zf []float64, coarse, fine Functional) {
 		c.slopeBounds(e, zc, dz, slopes, patch, rest, coarse)
 	}
 	if wanted := c.o.Accuracy * e.Size; wanted > 0 {
-		c.indicate(terms, remaining/wanted*math.Max(math.Abs(e.ChangeError)/wanted, leastWeight))
+		return c.indicate(terms, remaining/wanted*math.Max(math.Abs(e.ChangeError)/wanted, leastWeight))
 	}
+	return nil
 }
 
-// indicate adds a row's terms to the indicator.
-func (c *comparison) indicate(terms aquifer.ErrorTerms, weight float64) {
+// indicate sums a row's terms about each node.
+func (c *comparison) indicate(terms aquifer.ErrorTerms, weight float64) []float64 {
 	m := c.f.Model.Mesh
 	sum := append([]float64(nil), terms.Node...)
 	for t, v := range terms.Triangle {
@@ -138,8 +165,9 @@ func (c *comparison) indicate(terms aquifer.ErrorTerms, weight float64) {
 		}
 	}
 	for n, v := range sum {
-		c.out.Indicator[n] += weight * math.Abs(v)
+		sum[n] = weight * math.Abs(v)
 	}
+	return sum
 }
 
 // leastWeight is what a row counts in the indicator that is far better than wanted, so that refinement for others does not spoil it.

@@ -3,6 +3,7 @@ package aquifer
 import (
 	"context"
 	"fmt"
+	"slices"
 )
 
 // Finer is the same site on the mesh with every triangle cut into four. It is assembled and never factored: its systems are solved by
@@ -17,8 +18,9 @@ type Finer struct {
 	value []float64
 }
 
-// Finer assembles the finer model. Conductances of springs that were found from a measured flow are taken over.
-func (m *Model) Finer(ctx context.Context, workers int) (*Finer, error) {
+// Finer assembles the finer model. Conductances of springs that were found from a measured flow are taken over. Equivalent radii are found
+// at springs and at the nodes listed only.
+func (m *Model) Finer(ctx context.Context, radiiAt []int32, workers int) (*Finer, error) {
 	bad := &problems{}
 	fine, err := assembleOn(m.Site, m.plan, m.Mesh.Bisect(), bad)
 	if err != nil {
@@ -30,7 +32,7 @@ func (m *Model) Finer(ctx context.Context, workers int) (*Finer, error) {
 	}
 	fine.patchNodes = 4 * m.patchNodes
 	fine.number()
-	if err := fine.findRadii(ctx, Options{Workers: workers}); err != nil {
+	if err := fine.findRadii(ctx, Options{Workers: workers}, func(node int32) bool { return slices.Contains(radiiAt, node) }); err != nil {
 		return nil, err
 	}
 	fine.matrix.Pattern = fine.pattern

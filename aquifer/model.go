@@ -258,7 +258,7 @@ func (m *Model) finish(ctx context.Context, o Options) error {
 	if err := o.fits(len(m.Mesh.X), known); err != nil {
 		return err
 	}
-	if err := m.findRadii(ctx, o); err != nil {
+	if err := m.findRadii(ctx, o, func(int32) bool { return true }); err != nil {
 		return err
 	}
 	m.matrix = sparse.Matrix{Pattern: m.pattern, Values: make([]float64, len(m.pattern.Index))}
@@ -357,8 +357,8 @@ func (m *Model) assembleBase() {
 	}
 }
 
-// findRadii solves the local problems of wells, receptors with a bore and springs.
-func (m *Model) findRadii(ctx context.Context, o Options) error {
+// findRadii solves the local problems of springs, and of wells and receptors with a bore where they are wanted.
+func (m *Model) findRadii(ctx context.Context, o Options, wanted func(node int32) bool) error {
 	m.Radii = make([]Radius, len(m.Site.Nodes))
 	m.SpringRadii = make([]Radius, len(m.Site.Springs))
 	type job struct {
@@ -367,7 +367,7 @@ func (m *Model) findRadii(ctx context.Context, o Options) error {
 	}
 	var jobs []job
 	for i, r := range m.Site.Nodes {
-		if r.Radius > 0 {
+		if r.Radius > 0 && wanted(m.RequestNode[i]) {
 			jobs = append(jobs, job{m.RequestNode[i], &m.Radii[i]})
 		}
 	}

@@ -33,17 +33,19 @@ func (f *Finer) System(coarse *Settled, off []SwitchedOff) *FineSystem {
 }
 
 const (
-	// algebraicShare: cycles end when the residual of every field, in the norm of the diagonal's inverse, is down to this share of what it
-	// was after the first sweep: differences between the meshes then carry less than a few thousandths of an algebraic remainder.
-	algebraicShare = 0.001
+	// SolvedShare of the first residual, in the norm of the diagonal's inverse, may be left: differences between the meshes then carry an
+	// algebraic remainder of about a hundredth.
+	SolvedShare = 0.01
+	// SolvedFinely is the same where the difference at the very node of a source counts, which settles last.
+	SolvedFinely = 0.001
 	// mostCycles bounds them: a cycle takes the residual down by ten on good triangles, by three on bad ones.
 	mostCycles = 30
 )
 
 // Improve takes the fields x to the solutions of A x = b, both over the unknowns, by cycles of smoothing forward, correction on the
-// coarse mesh and smoothing backward (two-grid method with Gauss-Seidel sweeps; Brandt 1977, Math. Comput. 31), and returns what is left of the
-// first residuals at worst and the cycles made. Start from the coarse solutions, interpolated.
-func (s *FineSystem) Improve(ctx context.Context, x, b [][]float64, workers int) (left float64, cycles int, err error) {
+// coarse mesh and smoothing backward (two-grid method with Gauss-Seidel sweeps; Brandt 1977, Math. Comput. 31), until a share of the first residual of
+// each is left, and returns what is left at worst and the cycles made. Start from the coarse solutions, interpolated.
+func (s *FineSystem) Improve(ctx context.Context, x, b [][]float64, share float64, workers int) (left float64, cycles int, err error) {
 	nc := s.finer.Coarse.Unknowns()
 	groups := (len(x) + lane - 1) / lane
 	xs, bs := make([][]float64, groups), make([][]float64, groups)
@@ -78,14 +80,14 @@ func (s *FineSystem) Improve(ctx context.Context, x, b [][]float64, workers int)
 			return 0, cycles, err
 		}
 		cycles++
-		if left = worstShare(norms, first); left <= algebraicShare {
+		if left = worstShare(norms, first); left <= share {
 			break
 		}
 	}
-	for g := range groups {
+	return left, cycles, inParallel(ctx, groups, workers, func(_ context.Context, g int) error {
 		s.unweave(x, xs[g], g)
-	}
-	return left, cycles, nil
+		return nil
+	})
 }
 
 // Smooth makes double sweeps only: what they leave is what the coarse mesh shows too.
@@ -103,9 +105,15 @@ func (s *FineSystem) Smooth(ctx context.Context, x, b [][]float64, sweeps, worke
 
 // unweave takes group g apart again.
 func (s *FineSystem) unweave(x [][]float64, y []float64, g int) {
-	for c, f := range x[g*lane : min(len(x), (g+1)*lane)] {
-		for k := range f {
-			f[k] = y[k*lane+c]
+	fields := x[g*lane : min(len(x), (g+1)*lane)]
+	if len(fields) == 1 {
+		copy(fields[0], y)
+		return
+	}
+	for k := range s.diagonal {
+		o := y[k*lane : k*lane+lane]
+		for c, f := range fields {
+			f[k] = o[c]
 		}
 	}
 }
@@ -123,19 +131,32 @@ func worstShare(norms, first [][lane]float64) float64 {
 	return worst
 }
 
-// weave interleaves the fields of group g.
+// weave interleaves the fields of group g; one alone stays as it is.
 func (s *FineSystem) weave(x [][]float64, g int) []float64 {
+	fields := x[g*lane : min(len(x), (g+1)*lane)]
+	if len(fields) == 1 {
+		return append([]float64(nil), fields[0]...)
+	}
 	out := make([]float64, len(s.diagonal)*lane)
-	for c, f := range x[g*lane : min(len(x), (g+1)*lane)] {
-		for k, v := range f {
-			out[k*lane+c] = v
+	for k := range s.diagonal {
+		o := out[k*lane : k*lane+lane]
+		for c, f := range fields {
+			o[c] = f[k]
 		}
 	}
 	return out
 }
 
-// residual computes b - (off-diagonal part) x in row i for a lane of fields.
+// residual computes b - (off-diagonal part) x in row i for a lane of fields, or for one.
 func (f *Finer) residual(i int, x, b []float64) (r [lane]float64) {
+	if len(x) == f.pattern.N {
+		v := b[i]
+		for p := f.start[i]; p < f.start[i+1]; p++ {
+			v -= float64(f.value[p] * x[f.index[p]])
+		}
+		r[0] = v
+		return r
+	}
 	copy(r[:], b[i*lane:i*lane+lane])
 	for p := f.start[i]; p < f.start[i+1]; p++ {
 		v := f.value[p]
@@ -151,6 +172,7 @@ func (f *Finer) residual(i int, x, b []float64) (r [lane]float64) {
 // sweep is one Gauss-Seidel sweep.
 func (s *FineSystem) sweep(x, b []float64, backward bool) {
 	n := len(s.diagonal)
+	width := len(x) / n
 	for k := range n {
 		i := k
 		if backward {
@@ -158,8 +180,8 @@ func (s *FineSystem) sweep(x, b []float64, backward bool) {
 		}
 		r := s.finer.residual(i, x, b)
 		d := 1 / s.diagonal[i]
-		y := x[i*lane : i*lane+lane]
-		for c := range lane {
+		y := x[i*width : i*width+width]
+		for c := range y {
 			y[c] = r[c] * d
 		}
 	}
@@ -180,10 +202,11 @@ func (s *FineSystem) restrict(x, b, out []float64) (norm [lane]float64) {
 		}
 	}
 	first := int32(len(f.Coarse.Mesh.X))
+	width := len(x) / len(s.diagonal)
 	for i, node := range f.nodeOf {
 		r := f.residual(i, x, b)
-		for c := range lane {
-			r[c] -= s.diagonal[i] * x[i*lane+c]
+		for c := range width {
+			r[c] -= s.diagonal[i] * x[i*width+c]
 			norm[c] += r[c] * r[c] / s.diagonal[i]
 		}
 		if node < first {
@@ -201,11 +224,11 @@ func (s *FineSystem) restrict(x, b, out []float64) (norm [lane]float64) {
 func (s *FineSystem) correct(x, coarse []float64) {
 	f := s.finer
 	nc := f.Coarse.Unknowns()
-	fields := len(coarse) / nc
+	fields, width := len(coarse)/nc, len(x)/len(s.diagonal)
 	add := func(i int, node int32, weight float64) {
 		if u := f.Coarse.free[node]; u >= 0 {
 			for c := range fields {
-				x[i*lane+c] += weight * coarse[c*nc+int(u)]
+				x[i*width+c] += weight * coarse[c*nc+int(u)]
 			}
 		}
 	}
@@ -219,18 +242,4 @@ func (s *FineSystem) correct(x, coarse []float64) {
 		add(i, e[0], 0.5)
 		add(i, e[1], 0.5)
 	}
-}
-
-// Residual computes b - A x over the unknowns.
-func (s *FineSystem) Residual(x, b []float64) []float64 {
-	f := s.finer
-	r := make([]float64, len(x))
-	for i := range r {
-		v := b[i] - s.diagonal[i]*x[i]
-		for p := f.start[i]; p < f.start[i+1]; p++ {
-			v -= f.value[p] * x[f.index[p]]
-		}
-		r[i] = v
-	}
-	return r
 }
