@@ -62,7 +62,8 @@
 // weighted by its own error over what is wanted. Accuracy is relative to the sum of the wells' absolute contributions, which is the change itself
 // where no contribution has the other sign.
 //
-// Not in it: rounding; what snapping, smoothing of input and straight segments of the site's own lines leave out; a spring's
+// Not in it: the row of a spring that has stopped, whose value goes on below zero by a formula with the mesh's own C_eff and so has no
+// limit (where it is shown as zero its error is that of the flow without pumping, BaseError); rounding; what snapping, smoothing of input and straight segments of the site's own lines leave out; a spring's
 // conductance that was found from a measured flow is taken as found on the coarse mesh.
 //
 // Sources: Bank RE, Weiser A (1985) Math. Comput. 44(170); Becker R, Rannacher R (2001) Acta Numerica 10; Brandt A (1977) Math. Comput. 31(138);

@@ -5,6 +5,7 @@ import (
 	"encoding/csv"
 	"encoding/json"
 	"errors"
+	"fmt"
 	"math"
 	"os"
 	"path/filepath"
@@ -256,6 +257,52 @@ func TestErrorsOfReferenceSites(t *testing.T) {
 	}
 	chs.check(t, "reference sites, changes", true, shareWithin)
 	all.check(t, "reference sites", true, shareWithin)
+}
+
+// The same where a spring has stopped on the way from no pumping to the rates.
+func TestErrorsWhereASpringHasStopped(t *testing.T) {
+	ctx := context.Background()
+	b, m := benchmarks()[3], motions(2)[1]
+	site, ws := b.site(m), b.wells(m)
+	site.Background.Recharge = constant(1e-3) // 1.1 m above the canals at the spring; W1 takes half of it
+	site.Springs = []aquifer.Spring{{Name: "holm", At: m.at(800, 600), OutletLevel: 1, Conductance: constant(100), EffectiveRadius: 0.2}}
+	rs := []wells.Receptor{{ID: "holm", Kind: wells.SpringFlow, Feature: "holm"}, {ID: "west", Kind: wells.EdgeFlow, Feature: "west"}}
+	for i, p := range [][2]float64{{1200, 1000}, {1900, 1300}, {500, 900}, {2500, 400}, {900, 800}} {
+		rs = append(rs, wells.Receptor{ID: fmt.Sprintf("P%d", i+1), Kind: wells.PointLevel, At: m.at(p[0], p[1])})
+	}
+	site.Nodes, site.Outlines = adjoint.Requests(ws, rs)
+	rates := ratesOf(ws)
+	var ss [3]*adjoint.State
+	var e *adjoint.Errors
+	for times := range ss {
+		m, err := aquifer.BuildBisected(ctx, site, aquifer.Options{Nodes: 1000, Growth: 0.3}, times)
+		if err != nil {
+			t.Fatal(err)
+		}
+		f, err := adjoint.NewField(m, ws, rs)
+		if err != nil {
+			t.Fatal(err)
+		}
+		f.Switching = true
+		if ss[times], err = f.Changes(ctx, rates); err != nil {
+			t.Fatal(err)
+		}
+		if times == 0 {
+			if e, err = f.Errors(ctx, ss[0], adjoint.ErrorOptions{SlopeBounds: true}); err != nil {
+				t.Fatal(err)
+			}
+		}
+	}
+	if len(ss[0].BaseState.Off) != 0 || len(ss[0].State.Off) == 0 {
+		t.Fatalf("off without pumping %v, at the rates %v: the test wants one to stop", ss[0].BaseState.Off, ss[0].State.Off)
+	}
+	var all effectivity
+	for i, r := range e.Rows[1:] { // the stopped spring's own row goes on below nothing by a formula whose C_eff is the mesh's
+		i++
+		exact := ss[2].Rows[i].Change + (ss[2].Rows[i].Change-ss[1].Rows[i].Change)/3
+		all.add(r.ChangeError, r.ChangeBound, ss[0].Rows[i].Change-exact, 1e-8*r.Size)
+	}
+	all.check(t, "a stopped spring", true, shareWithin)
 }
 
 // sharedData finds the data folder beside the project; the test is skipped where it is absent.

@@ -175,8 +175,8 @@ func (p problem) curves(t testing.TB) []curve {
 			return aquifer.Build(ctx, site, aquifer.Options{Growth: 1, Finest: size, Coarsest: size})
 		}, 4),
 		p.family(t, "default mesh", func(level int, site *aquifer.Site) (*aquifer.Model, error) {
-			return aquifer.Build(ctx, site, aquifer.Options{Nodes: 2500 << (2 * level)})
-		}, 3),
+			return aquifer.Build(ctx, site, aquifer.Options{Nodes: 15000 << (2 * level)})
+		}, 2),
 	}
 }
 
