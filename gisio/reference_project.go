@@ -78,7 +78,7 @@ var meshSection = Section{Name: "mesh", Title: "[mesh]", About: "All may be left
 	{Name: "nodes", Class: Whole, Bound: "> 0", Meaning: "how many nodes to aim at", Example: `nodes = 20000`},
 	{Name: "finest", Class: Number, Kind: Length, Bound: "> 0", Meaning: "smallest spacing of nodes, at wells", Example: `finest = "1 m"`},
 	{Name: "growth", Class: Number, Kind: Plain, Bound: "> 0", Meaning: "growth of the spacing per distance", Example: `growth = 0.15`},
-	{Name: "accuracy", Class: Number, Kind: Share, Bound: "> 0", Meaning: "relative error that the mesh aims at", Example: `accuracy = "1 %"`},
+	{Name: "accuracy", Class: Number, Kind: Share, Bound: "> 0", Meaning: "estimated relative error of every receptor's change down to which the mesh is refined; left out: 0.5 %, and a mesh fixed by nodes or finest is left as it is", Example: `accuracy = "1 %"`},
 }}
 
 var briefSection = Section{Name: "brief", Title: "[brief]", About: "What the plan is asked for.", Fields: []Field{

@@ -37,27 +37,28 @@ type Report struct {
 	PumpingEnergy *EnergyTotal  `json:"pumping_energy"` // null where a well up for decision lacks a figure
 	Requests      *RequestTotal `json:"requests"`       // null but for closest-to-requests
 
-	Wells         []WellResult     `json:"wells"`
-	Receptors     []ReceptorResult `json:"receptors"`
-	Sensitivities Table            `json:"sensitivities"` // receptor unit per m³/d: rows receptors, columns wells
-	Contributions Table            `json:"contributions"` // at the plan, in receptor unit
-	Quotas        []QuotaResult    `json:"quotas"`
-	Capture       []Capture        `json:"capture"`
-	CaptureWells  []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
-	Balances      []Balance        `json:"balances"`      // without pumping, and at the plan
-	NoFlow        []NoFlowStretch  `json:"no_flow_outline"`
-	Switching     *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
-	Firm          *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
-	States        []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
-	YearQuotas    []YearQuota      `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
-	Conflict      *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
-	Audit         Audit            `json:"audit"`
-	Checks        []Check          `json:"checks"`
-	HandFormula   *HandFormula     `json:"hand_formula"`
-	Assumptions   []Assumption     `json:"assumptions"`
-	Observations  []ObservationFit `json:"observations"`
-	Mesh          MeshInfo         `json:"mesh"`
-	Inputs        []InputFile      `json:"inputs"`
+	Wells             []WellResult     `json:"wells"`
+	Receptors         []ReceptorResult `json:"receptors"`
+	Sensitivities     Table            `json:"sensitivities"`      // receptor unit per m³/d: rows receptors, columns wells
+	SensitivityErrors Table            `json:"sensitivity_errors"` // estimated error of each sensitivity that the mesh alone makes, computed less exact; no rows when not estimated
+	Contributions     Table            `json:"contributions"`      // at the plan, in receptor unit
+	Quotas            []QuotaResult    `json:"quotas"`
+	Capture           []Capture        `json:"capture"`
+	CaptureWells      []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
+	Balances          []Balance        `json:"balances"`      // without pumping, and at the plan
+	NoFlow            []NoFlowStretch  `json:"no_flow_outline"`
+	Switching         *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
+	Firm              *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
+	States            []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
+	YearQuotas        []YearQuota      `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
+	Conflict          *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
+	Audit             Audit            `json:"audit"`
+	Checks            []Check          `json:"checks"`
+	HandFormula       *HandFormula     `json:"hand_formula"`
+	Assumptions       []Assumption     `json:"assumptions"`
+	Observations      []ObservationFit `json:"observations"`
+	Mesh              MeshInfo         `json:"mesh"`
+	Inputs            []InputFile      `json:"inputs"`
 }
 
 // WellResult is a well's line in the plan.
@@ -105,35 +106,47 @@ type WellResult struct {
 
 	RateRange  *PriceRange `json:"rate_price_range"` // of the bound that holds the rate; null where none does
 	LevelRange *PriceRange `json:"level_price_range"`
+
+	Discretisation *Discretisation `json:"discretisation"` // of the drawdown in the bore; null when not estimated
+}
+
+// Discretisation is how far the mesh alone makes a change wrong, for the site as entered: it says nothing of how well the site is known.
+type Discretisation struct {
+	Error    float64  `json:"estimated_error"` // computed less exact, in the unit of the change
+	Bound    *float64 `json:"error_bound"`     // no cancelling: from the sum of the absolute values of the terms, in the unit of the change; null when not estimated
+	Share    *float64 `json:"error_share"`     // of the sum of the absolute contributions, of the change where the bound is not estimated; null when nothing contributes
+	Accuracy float64  `json:"accuracy_share"`  // asked for
+	Met      bool     `json:"accuracy_met"`
 }
 
 // ReceptorResult is a receptor's line.
 type ReceptorResult struct {
-	ID             string        `json:"id"`
-	Name           string        `json:"name"`
-	Kind           string        `json:"kind"`
-	Feature        string        `json:"feature"`     // spring, river or edge that it is about; for a pumping level the id of the well
-	Unit           string        `json:"unit"`        // m, m3/d or 1
-	ValueWord      string        `json:"value_word"`  // what the value is: 'level', 'spring flow', ...
-	ChangeWord     string        `json:"change_word"` // what the change is: 'drawdown', 'loss of spring flow', ...
-	Owner          string        `json:"owner"`
-	Use            string        `json:"use"`
-	Source         string        `json:"source"`
-	Date           string        `json:"date"`
-	FieldChecked   bool          `json:"field_checked"`
-	Outside        bool          `json:"outside_model"`
-	X              float64       `json:"x_m"`
-	Y              float64       `json:"y_m"`
-	Place          string        `json:"place"` // worst place, where it applies
-	NoPumping      float64       `json:"value_no_pumping"`
-	OthersRecent   *float64      `json:"value_others_recent"`   // own wells off, existing users at recent rates
-	OthersLicensed *float64      `json:"value_others_licensed"` // own wells off, existing users at licensed rates
-	Value          float64       `json:"value"`                 // at the plan
-	Change         float64       `json:"change"`                // no pumping minus plan
-	ChangeOwn      float64       `json:"change_own"`            // part of own wells
-	ChangeOthers   float64       `json:"change_others"`         // part of existing users
-	ChangeResolved float64       `json:"change_resolved"`       // from a full solve at the plan
-	Limits         []LimitResult `json:"limits"`
+	ID             string          `json:"id"`
+	Name           string          `json:"name"`
+	Kind           string          `json:"kind"`
+	Feature        string          `json:"feature"`     // spring, river or edge that it is about; for a pumping level the id of the well
+	Unit           string          `json:"unit"`        // m, m3/d or 1
+	ValueWord      string          `json:"value_word"`  // what the value is: 'level', 'spring flow', ...
+	ChangeWord     string          `json:"change_word"` // what the change is: 'drawdown', 'loss of spring flow', ...
+	Owner          string          `json:"owner"`
+	Use            string          `json:"use"`
+	Source         string          `json:"source"`
+	Date           string          `json:"date"`
+	FieldChecked   bool            `json:"field_checked"`
+	Outside        bool            `json:"outside_model"`
+	X              float64         `json:"x_m"`
+	Y              float64         `json:"y_m"`
+	Place          string          `json:"place"` // worst place, where it applies
+	NoPumping      float64         `json:"value_no_pumping"`
+	OthersRecent   *float64        `json:"value_others_recent"`   // own wells off, existing users at recent rates
+	OthersLicensed *float64        `json:"value_others_licensed"` // own wells off, existing users at licensed rates
+	Value          float64         `json:"value"`                 // at the plan
+	Change         float64         `json:"change"`                // no pumping minus plan
+	ChangeOwn      float64         `json:"change_own"`            // part of own wells
+	ChangeOthers   float64         `json:"change_others"`         // part of existing users
+	ChangeResolved float64         `json:"change_resolved"`       // from a full solve at the plan
+	Discretisation *Discretisation `json:"discretisation"`        // of the change; null when not estimated
+	Limits         []LimitResult   `json:"limits"`
 }
 
 // LimitResult is a limit's line.
@@ -344,15 +357,25 @@ type ObservationFit struct {
 
 // MeshInfo describes the mesh.
 type MeshInfo struct {
-	Nodes      int      `json:"nodes"`
-	Triangles  int      `json:"triangles"`
-	MinAngle   float64  `json:"min_angle_deg"`
-	SharpInput int      `json:"triangles_at_sharp_input"`
-	FinestM    float64  `json:"finest_m"`
-	CoarsestM  float64  `json:"coarsest_m"`
-	Growth     float64  `json:"growth"`
-	BudgetHit  bool     `json:"node_budget_hit"`
-	Notes      []string `json:"notes"`
+	Nodes       int         `json:"nodes"`
+	Triangles   int         `json:"triangles"`
+	MinAngle    float64     `json:"min_angle_deg"`
+	SharpInput  int         `json:"triangles_at_sharp_input"`
+	FinestM     float64     `json:"finest_m"`
+	CoarsestM   float64     `json:"coarsest_m"`
+	Growth      float64     `json:"growth"`
+	BudgetHit   bool        `json:"node_budget_hit"`
+	Accuracy    float64     `json:"accuracy_share"` // asked of every receptor's change; 0: not estimated
+	AccuracyMet bool        `json:"accuracy_met"`
+	Rounds      []MeshRound `json:"refinement_rounds"`
+	Notes       []string    `json:"notes"`
+}
+
+// MeshRound is one mesh on the way to the accuracy asked for.
+type MeshRound struct {
+	Nodes int     `json:"nodes"`
+	Worst float64 `json:"worst_error_share"` // largest estimated error of a receptor's change
+	Where string  `json:"where"`
 }
 
 // InputFile is a file that the plan was made from.

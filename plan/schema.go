@@ -54,6 +54,8 @@ var unitByContext = map[string]string{
 	"headroom":              "in unit",
 	"by":                    "in unit",
 	"alone":                 "in unit",
+	"estimated_error":       "in unit, of a level in m",
+	"error_bound":           "in unit, of a level in m",
 	"observed":              "in unit",
 	"modelled":              "in unit",
 	"values":                "in the row's unit, per m³/d for sensitivities",

@@ -138,13 +138,8 @@ func statedWords(stated bool) string {
 	return ", not stated in [mesh], so the default"
 }
 
-// accuracy is the relative error asked of the mesh, by default half a per cent: far below what transmissivity and recharge are known to.
-func (a *audit) accuracy() float64 {
-	if v := a.j.project.Mesh.Accuracy; v > 0 {
-		return v
-	}
-	return adjoint.DefaultAccuracy
-}
+// accuracy is the relative error asked of the mesh.
+func (a *audit) accuracy() float64 { return a.j.accuracy() }
 
 // add appends a line that compares a figure with what is allowed.
 func (a *audit) add(l plan.EvidenceLine, figure, allowed float64) {

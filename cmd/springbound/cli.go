@@ -42,6 +42,7 @@ type solving struct {
 // planning are the flags of the main job.
 type planning struct {
 	solving
+	Errors  bool   `help:"Estimate the mesh's error of every sensitivity, with a bound for every change, however long it takes."`
 	Problem string `type:"path" placeholder:"FILE" help:"Also write the plan's programme to this file, in the free MPS format, so that another solver can be handed it."`
 }
 

@@ -21,11 +21,20 @@ type job struct {
 	field    *adjoint.Field
 	linear   *adjoint.Linear // sensitivities and capture, solved once
 	progress *progress
+	workers  int // processors to use, 0: all
 	onField  func(row int, influence []float64) error
 
 	states           []*stateJob // where several operating states are planned together: one each, nil for the default one
 	relativeRecharge float64     // of the one state that the job is about, against the default one; 0: it is that
 	stateNote        string      // says what a job about one state of several leaves out
+
+	allErrors   bool             // the mesh's errors are estimated for all sensitivities, whatever it costs
+	errors      *adjoint.Errors  // of the mesh ...
+	errorsAt    []float64        // ... at these rates ...
+	errorsOn    *adjoint.Field   // ... on this field's mesh
+	errorsOfAll bool             // of the sensitivities and with bounds
+	rounds      []plan.MeshRound // the meshes that were planned on
+	refinedOut  bool             // the budget of nodes stands in the way of the accuracy asked for
 
 	alter       func(aquifer.Terms) // plants a fault in the flow model, to prove that the audit sees it; tests only
 	withoutFirm bool                // the firm capacity is not asked for
@@ -112,6 +121,7 @@ func newJobAbout(ctx context.Context, c solving, s streams, change func(*job) er
 
 // build meshes, assembles, factors and settles the state without pumping.
 func (j *job) build(ctx context.Context, workers int) error {
+	j.workers = workers
 	model, err := aquifer.Build(ctx, &j.project.Site, j.modelOptions(workers))
 	if err != nil {
 		return err

@@ -6,6 +6,7 @@ import (
 	"runtime"
 
 	"springbound/adjoint"
+	"springbound/aquifer"
 	"springbound/gisio"
 )
 
@@ -17,6 +18,7 @@ const contourCount = 10
 type maps struct {
 	job   *job
 	idle  chan *gisio.ContourMesh // one mesh for each worker that may contour at the same time
+	of    *aquifer.Model          // whose mesh they are
 	slots []*mapFile
 }
 
@@ -43,12 +45,13 @@ func (m *maps) wait() ([]outputFile, error) {
 	return files, first
 }
 
-// prepare finds the edges of the mesh once and makes a contour mesh for each worker.
+// prepare finds the edges of the job's mesh once and makes a contour mesh for each worker.
 func (m *maps) prepare() error {
-	if m.idle != nil {
+	if m.of == m.job.field.Model {
 		return nil
 	}
-	msh := m.job.field.Model.Mesh
+	m.of = m.job.field.Model
+	msh := m.of.Mesh
 	mesh, err := gisio.NewContourMesh(msh.X, msh.Y, msh.Triangles)
 	if err != nil {
 		return err
@@ -78,10 +81,11 @@ func (m *maps) addLevels(name, unitKey string, field, levels []float64, label fu
 	}
 	s := &mapFile{outputFile: outputFile{name: name}, done: make(chan struct{})}
 	m.put(s)
-	mesh := <-m.idle
+	idle := m.idle
+	mesh := <-idle
 	go func() {
 		defer func() {
-			m.idle <- mesh
+			idle <- mesh
 			close(s.done)
 		}()
 		contours, err := mesh.Contours(field, levels)

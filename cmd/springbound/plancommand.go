@@ -29,10 +29,11 @@ func runPlan(ctx context.Context, c planning, s streams) error {
 	if err := c.checkProblemPlace(j); err != nil {
 		return err
 	}
+	j.allErrors = c.Errors
 	j.keepProblem = c.Problem != ""
 	maps := newMaps(j)
 	j.onField = maps.influence
-	r, err := j.makePlan(ctx)
+	r, err := j.planAccurately(ctx)
 	if err != nil {
 		return err
 	}

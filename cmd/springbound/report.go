@@ -56,6 +56,9 @@ func (j *job) complete(ctx context.Context, r *plan.Report) (*adjoint.State, err
 	if err := j.hand(ctx, r, rates); err != nil {
 		return nil, err
 	}
+	if err := j.discretisation(ctx, r, state); err != nil {
+		return nil, err
+	}
 	if err := j.completeStates(ctx, r); err != nil {
 		return nil, err
 	}
@@ -475,7 +478,6 @@ func (j *job) notDone(r *plan.Report) {
 	}
 	r.NotAssessed = append(r.NotAssessed,
 		fmt.Sprintf("parameter uncertainty: not assessed (%d inputs state a range; only the best values are used)", ranged),
-		"discretisation error: not estimated for each number; the mesh is described on the checks sheet",
 		"what a confined, steady, single-layer model leaves out: change with time and season, storage, other layers, unconfined flow, water quality, density, subsidence")
 	notDone(r, "Boundaries replaced by no-flow, one at a time", "springbound audit does it")
 }

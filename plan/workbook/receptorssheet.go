@@ -1,6 +1,7 @@
 package workbook
 
 import (
+	"fmt"
 	"math"
 	"strings"
 
@@ -169,7 +170,27 @@ func receptorNote(r plan.ReceptorResult) string {
 	case kindPumpingLevel:
 		note = joinFilled("; ", note, "without the turbulent loss, which its limits include")
 	}
-	return note
+	return joinFilled("; ", note, meshErrorWords(r))
+}
+
+// meshErrorWords says by how much the mesh alone makes a receptor's change wrong.
+func meshErrorWords(r plan.ReceptorResult) string {
+	d := r.Discretisation
+	if d == nil {
+		return ""
+	}
+	unit := unitWords(r.Unit)
+	if unit != "" {
+		unit = " " + unit
+	}
+	words := fmt.Sprintf("the mesh makes the change wrong by about %+.2g%s", d.Error, unit)
+	if d.Share != nil {
+		words += fmt.Sprintf(" (%.2g %%)", 100*math.Abs(*d.Share))
+	}
+	if d.Bound != nil {
+		words += fmt.Sprintf(", at most %.2g%s", *d.Bound, unit)
+	}
+	return words
 }
 
 // brokenSprings counts the springs that would stop.
