@@ -31,6 +31,7 @@ func (m *Model) Finer(ctx context.Context, radiiAt []int32, workers int) (*Finer
 		panic(fmt.Sprintf("aquifer: the finer mesh has %d nodes, not %d and %d", len(fine.Mesh.X), len(m.Mesh.X), len(f.ends)))
 	}
 	fine.patchNodes = 4 * m.patchNodes
+	fine.order = fine.alongTriangles()
 	fine.number()
 	if err := fine.findRadii(ctx, Options{Workers: workers}, func(node int32) bool { return slices.Contains(radiiAt, node) }); err != nil {
 		return nil, err
@@ -47,6 +48,20 @@ func (m *Model) Finer(ctx context.Context, radiiAt []int32, workers int) (*Finer
 	}
 	f.rows()
 	return f, nil
+}
+
+// alongTriangles lists the nodes in the order in which the triangles, which follow each other along the mesher's curve, touch them: added nodes
+// then lie beside the coarse ones between them, and sweeps stay in the caches.
+func (m *Model) alongTriangles() []int32 {
+	seen := make([]bool, len(m.Mesh.X))
+	order := make([]int32, 0, len(m.Mesh.X))
+	for _, n := range m.Mesh.Triangles {
+		if !seen[n] {
+			seen[n] = true
+			order = append(order, n)
+		}
+	}
+	return order
 }
 
 // rows turns the lower triangle into whole rows.

@@ -40,6 +40,7 @@ type Model struct {
 	onOutline    []bool
 	outlineEdge  []int // per outline edge: 0 no-flow, else 1 + edge
 	isPrescribed []bool
+	order        []int32   // nodes in the order in which unknowns are numbered; nil is that of their numbers
 	patchNodes   int       // in the local problem of an equivalent radius
 	prescribed   []float64 // head at prescribed nodes [m]
 	free         []int32   // node to unknown; -1 prescribed
@@ -295,9 +296,15 @@ func (m *Model) number() {
 	m.free = make([]int32, len(m.Mesh.X))
 	for n := range m.free {
 		m.free[n] = -1
+	}
+	for k := range m.free {
+		n := int32(k)
+		if m.order != nil {
+			n = m.order[k]
+		}
 		if !m.isPrescribed[n] {
 			m.free[n] = int32(len(m.nodeOf))
-			m.nodeOf = append(m.nodeOf, int32(n))
+			m.nodeOf = append(m.nodeOf, n)
 		}
 	}
 	pi := make([]int32, 0, 3*len(m.nodeOf))
