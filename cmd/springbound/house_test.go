@@ -18,7 +18,7 @@ var mayImport = map[string][]string{
 	"aquifer/sparse":        {},
 	"aquifer":               {"aquifer/mesh", "aquifer/sparse"},
 	"wells":                 {},
-	"adjoint":               {"aquifer", "wells"},
+	"adjoint":               {"aquifer", "aquifer/mesh", "wells"}, // the mesh: errors and refinement work on its triangles
 	"plan/convex":           {},
 	"plan":                  {"wells", "plan/convex"},
 	"plan/workbook":         {"plan"},
