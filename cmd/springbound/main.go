@@ -10,7 +10,6 @@ import (
 )
 
 func main() {
-	tameGarbage()
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	code := run(ctx, os.Args[1:], streams{out: os.Stdout, err: os.Stderr, terminal: isTerminal(os.Stderr)})
 	stop()
