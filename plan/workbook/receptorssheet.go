@@ -1,8 +1,8 @@
 package workbook
 
 import (
-	"fmt"
 	"math"
+	"strconv"
 	"strings"
 
 	"springbound/plan"
@@ -179,16 +179,19 @@ func meshErrorWords(r plan.ReceptorResult) string {
 	if d == nil {
 		return ""
 	}
-	unit := unitWords(r.Unit)
-	if unit != "" {
-		unit = " " + unit
+	unit, factor := "", 1.0
+	switch r.Unit {
+	case "m":
+		unit, factor = " mm", 1000
+	case unitFlow:
+		unit = " m³/d"
 	}
-	words := fmt.Sprintf("the mesh makes the change wrong by about %+.2g%s", d.Error, unit)
+	words := "the mesh makes the change wrong by about " + twoFigures(factor*d.Error) + unit
 	if d.Share != nil {
-		words += fmt.Sprintf(" (%.2g %%)", 100*math.Abs(*d.Share))
+		words += " (" + twoFigures(100*math.Abs(*d.Share)) + " %)"
 	}
 	if d.Bound != nil {
-		words += fmt.Sprintf(", at most %.2g%s", *d.Bound, unit)
+		words += ", at most " + twoFigures(factor**d.Bound) + unit
 	}
 	return words
 }
@@ -337,4 +340,13 @@ func enteredWords(l plan.LimitResult) string {
 		return ""
 	}
 	return "entered as " + l.Entered
+}
+
+// twoFigures writes a number with two figures and no power of ten.
+func twoFigures(v float64) string {
+	if v == 0 {
+		return "0"
+	}
+	decimals := max(0, 1-int(math.Floor(math.Log10(math.Abs(v)))))
+	return strconv.FormatFloat(v, 'f', decimals, 64)
 }
