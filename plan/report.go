@@ -37,28 +37,29 @@ type Report struct {
 	PumpingEnergy *EnergyTotal  `json:"pumping_energy"` // null where a well up for decision lacks a figure
 	Requests      *RequestTotal `json:"requests"`       // null but for closest-to-requests
 
-	Wells             []WellResult     `json:"wells"`
-	Receptors         []ReceptorResult `json:"receptors"`
-	Sensitivities     Table            `json:"sensitivities"`      // receptor unit per m³/d: rows receptors, columns wells
-	SensitivityErrors Table            `json:"sensitivity_errors"` // estimated error of each sensitivity that the mesh alone makes, computed less exact; no rows when not estimated
-	Contributions     Table            `json:"contributions"`      // at the plan, in receptor unit
-	Quotas            []QuotaResult    `json:"quotas"`
-	Capture           []Capture        `json:"capture"`
-	CaptureWells      []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
-	Balances          []Balance        `json:"balances"`      // without pumping, and at the plan
-	NoFlow            []NoFlowStretch  `json:"no_flow_outline"`
-	Switching         *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
-	Firm              *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
-	States            []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
-	YearQuotas        []YearQuota      `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
-	Conflict          *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
-	Audit             Audit            `json:"audit"`
-	Checks            []Check          `json:"checks"`
-	HandFormula       *HandFormula     `json:"hand_formula"`
-	Assumptions       []Assumption     `json:"assumptions"`
-	Observations      []ObservationFit `json:"observations"`
-	Mesh              MeshInfo         `json:"mesh"`
-	Inputs            []InputFile      `json:"inputs"`
+	Wells                  []WellResult     `json:"wells"`
+	Receptors              []ReceptorResult `json:"receptors"`
+	Sensitivities          Table            `json:"sensitivities"`            // receptor unit per m³/d: rows receptors, columns wells
+	SensitivityErrors      Table            `json:"sensitivity_errors"`       // estimated error of each sensitivity that the mesh alone makes, computed less exact; no rows when not estimated
+	SensitivityErrorBounds Table            `json:"sensitivity_error_bounds"` // of the same, from terms that cannot cancel; no rows when not estimated
+	Contributions          Table            `json:"contributions"`            // at the plan, in receptor unit
+	Quotas                 []QuotaResult    `json:"quotas"`
+	Capture                []Capture        `json:"capture"`
+	CaptureWells           []string         `json:"capture_wells"` // column order of Capture[].ShareByWell
+	Balances               []Balance        `json:"balances"`      // without pumping, and at the plan
+	NoFlow                 []NoFlowStretch  `json:"no_flow_outline"`
+	Switching              *Switching       `json:"switching"`          // which wells run; null when there was nothing to choose
+	Firm                   *FirmCapacity    `json:"firm_capacity"`      // null when it was not asked for
+	States                 []StateResult    `json:"states"`             // where several operating states are planned together; the sections above are then the default state's
+	YearQuotas             []YearQuota      `json:"quotas_over_states"` // yearly quotas over several operating states: sums of days times rates
+	Conflict               *Conflict        `json:"conflict"`           // why no plan exists; null when there is one
+	Audit                  Audit            `json:"audit"`
+	Checks                 []Check          `json:"checks"`
+	HandFormula            *HandFormula     `json:"hand_formula"`
+	Assumptions            []Assumption     `json:"assumptions"`
+	Observations           []ObservationFit `json:"observations"`
+	Mesh                   MeshInfo         `json:"mesh"`
+	Inputs                 []InputFile      `json:"inputs"`
 }
 
 // WellResult is a well's line in the plan.

@@ -11,8 +11,8 @@ import (
 )
 
 const (
-	// mostErrorWork is up to how many nodes times functionals the errors of all sensitivities and the bounds are estimated unasked: about two
-	// seconds on two processors.
+	// mostErrorWork is up to how many nodes times functionals and wells the errors of all sensitivities and the bounds are estimated unasked:
+	// about two seconds on two processors.
 	mostErrorWork = 2_000_000
 	// mostErrorNodes is up to how many nodes of a mesh that the project fixes the errors of changes are estimated unasked: the estimate works
 	// on four times as many.
@@ -86,8 +86,8 @@ func (j *job) findErrors(ctx context.Context, state *adjoint.State) error {
 	if j.errors != nil && slices.Equal(j.errorsAt, state.Rates) && j.errorsOn == j.field {
 		return nil
 	}
-	all := j.allErrors || j.linear != nil && len(j.field.Model.Mesh.X)*j.linear.Distinct <= mostErrorWork
-	e, err := j.field.Errors(ctx, state, adjoint.ErrorOptions{Accuracy: j.accuracy(), Workers: j.workers, ChangesOnly: !all,
+	all := j.allErrors || j.linear != nil && len(j.field.Model.Mesh.X)*(j.linear.Distinct+len(j.field.Wells)) <= mostErrorWork
+	e, err := j.field.Errors(ctx, state, adjoint.ErrorOptions{Accuracy: j.accuracy(), Workers: j.workers, ChangesOnly: !all, SlopeBounds: all,
 		Progress: func(done, total int) { j.progress.report("errors of the mesh", done, total) }})
 	if err != nil {
 		return err
@@ -141,9 +141,11 @@ func (j *job) discretisation(ctx context.Context, r *plan.Report, state *adjoint
 	}
 	s := &r.Sensitivities
 	r.SensitivityErrors = plan.Table{Receptors: s.Receptors, Units: s.Units, Wells: s.Wells, Values: [][]float64{}}
+	r.SensitivityErrorBounds = r.SensitivityErrors
 	if j.errorsOfAll {
 		for _, id := range s.Receptors {
 			r.SensitivityErrors.Values = append(r.SensitivityErrors.Values, receptors[id].SlopeError)
+			r.SensitivityErrorBounds.Values = append(r.SensitivityErrorBounds.Values, receptors[id].SlopeBound)
 		}
 	} else {
 		r.NotAssessed = append(r.NotAssessed, "the mesh's error of each sensitivity, and the bound of each change's: with so many nodes and receptors only where plan --errors asks for them; the error of each change is estimated")

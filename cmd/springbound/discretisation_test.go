@@ -49,6 +49,16 @@ func TestErrorsOfAFixedMeshAreStated(t *testing.T) {
 			t.Errorf("%s: bound %.3g, made %.3g", r.ID, *d.Bound, made)
 		}
 	}
+	for i, row := range coarse.SensitivityErrorBounds.Values {
+		for w, bound := range row {
+			if e := coarse.SensitivityErrors.Values[i][w]; !(bound >= math.Abs(e)) {
+				t.Errorf("%s, %s: bound %.3g of an error of %.3g", coarse.Receptors[i].ID, coarse.Wells[w].ID, bound, e)
+			}
+		}
+	}
+	if got := len(coarse.SensitivityErrorBounds.Values); got != len(coarse.Receptors) {
+		t.Errorf("bounds of the sensitivities of %d receptors, of %d", got, len(coarse.Receptors))
+	}
 	if got := len(coarse.SensitivityErrors.Values); got != len(coarse.Receptors) {
 		t.Errorf("errors of the sensitivities of %d receptors, of %d", got, len(coarse.Receptors))
 	}
