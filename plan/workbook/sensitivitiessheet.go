@@ -1,5 +1,7 @@
 package workbook
 
+import "springbound/plan"
+
 // sensLayout says where things stand on Sensitivities: wells down, receptors across, and below, wells down and wells' nodes across.
 type sensLayout struct {
 	first, last         int         // rows of the wells in the first table
@@ -63,7 +65,44 @@ func (b *book) fillSensitivities() {
 		s.page.titleRows = [2]int{sensHeadRow, sensHeadRow + 2}
 		s.page.lastRow, s.page.lastColumn = l.last+2, sensLeading+max(1, len(b.facts.assessed))
 	}
-	b.fillWellMatrix(l.last + 2)
+	row := b.fillWellMatrix(l.last + 2)
+	row = b.fillErrorMatrix(row+1, "Receptors: what the mesh makes of the change per rate (estimate, computed less exact)", r.SensitivityErrors)
+	b.fillErrorMatrix(row+1, "Receptors: the same, from terms that cannot cancel (bound)", r.SensitivityErrorBounds)
+}
+
+// fillErrorMatrix writes the mesh's errors of the sensitivities, as the first table stands, and returns the row below; nothing where they were not
+// estimated.
+func (b *book) fillErrorMatrix(row int, title string, errors plan.Table) int {
+	if len(errors.Values) == 0 {
+		return row
+	}
+	s, l := b.sensitivities, &b.sens
+	row = s.sectionHead(row+1, sensLeading+max(1, len(b.facts.assessed)), title)
+	s.heads(row, 1, "Well", "Name")
+	for c := 3; c <= sensLeading; c++ {
+		s.blank(row, c, head)
+	}
+	of := map[string][]float64{}
+	for k, id := range errors.Receptors {
+		of[id] = errors.Values[k]
+	}
+	for _, i := range b.facts.assessed {
+		s.text(row, l.column[i], b.report.Receptors[i].ID, headRight)
+	}
+	for j, w := range b.report.Wells {
+		row++
+		s.text(row, 1, w.ID, strong)
+		s.text(row, 2, w.Name, line)
+		for c := 3; c <= sensLeading; c++ {
+			s.blank(row, c, line)
+		}
+		for _, i := range b.facts.assessed {
+			if values := of[b.report.Receptors[i].ID]; values != nil {
+				s.value(row, l.column[i], values[j], figures(scienceFormat))
+			}
+		}
+	}
+	return row + 1
 }
 
 func changeUnitPerRate(unit string) string {
@@ -116,14 +155,14 @@ func value(x *float64) float64 {
 // on the screen.
 const longTable = 25
 
-// fillWellMatrix writes the drawdown per rate at the wells' nodes.
-func (b *book) fillWellMatrix(row int) {
+// fillWellMatrix writes the drawdown per rate at the wells' nodes and returns the row below.
+func (b *book) fillWellMatrix(row int) int {
 	s, l := b.sensitivities, &b.sens
 	nodes := b.facts.wellDrop
 	row = s.sectionHead(row+1, sensLeading+max(1, len(nodes)), "Wells: drawdown in the aquifer at each well per rate (head of a column: the well where the level falls)")
 	if len(nodes) == 0 {
 		s.nothing(row, sensLeading, "Not known: levels in wells do not follow the rates in this workbook.")
-		return
+		return row + 1
 	}
 	s.heads(row, 1, "Pumping well", "Name")
 	if s.page.lastRow > 0 {
@@ -153,6 +192,7 @@ func (b *book) fillWellMatrix(row int) {
 			s.value(l.wellFirst+j, l.wellColumn[i], b.report.Wells[i].DrawdownByWell[j], figures(scienceFormat))
 		}
 	}
+	return l.wellLast + 1
 }
 
 // slopes is a receptor's column of sensitivities, as the sheet from refers to it.
