@@ -252,11 +252,13 @@ func draw(curves []curve) string {
 	fmt.Fprintf(&b, `<text x="%d" y="%d" text-anchor="middle">nodes</text><text x="%d" y="%d">largest error of a receptor's change, site S2</text>`+"\n", (width-120)/2, height-22, left, top-6)
 	for i, c := range curves {
 		colour := []string{"#0b6e4f", "#b3541e", "#6b4c9a", "#555"}[i]
-		fmt.Fprintf(&b, `<polyline fill="none" stroke="%s" stroke-width="2" points="`, colour)
+		dash := []string{"none", "8 4", "2 3", "10 3 2 3"}[i] // told apart in grey print too
+		fmt.Fprintf(&b, `<polyline fill="none" stroke="%s" stroke-dasharray="%s" stroke-width="2" points="`, colour, dash)
 		for k := range c.nodes {
 			fmt.Fprintf(&b, "%.1f,%.1f ", x(c.nodes[k]), y(c.errors[k]))
 		}
-		fmt.Fprintf(&b, `"/><text x="%d" y="%d" fill="%s">%s</text>`+"\n", width-180, top+20+20*i, colour, c.way)
+		fmt.Fprintf(&b, `"/><path d="M%d %dh28" stroke="%s" stroke-dasharray="%s" stroke-width="2"/><text x="%d" y="%d" fill="%s">%s</text>`+"\n",
+			width-184, top+16+20*i, colour, dash, width-150, top+20+20*i, colour, c.way)
 	}
 	return b.String() + "</svg>\n"
 }
