@@ -183,7 +183,7 @@ func (p *planner) checkQuotas(r *Report, verdict func(string, []string, string))
 	var passed []string
 	for k, q := range r.Quotas {
 		if !(q.Headroom >= -limitTolerance*s.quotas[k].scale(s)) {
-			passed = append(passed, fmt.Sprintf("%s %s is passed by %s", q.Name, q.Basis, flowText(-q.Headroom)))
+			passed = append(passed, fmt.Sprintf("%s %s is passed by %s", q.Name, q.Basis, passedText(q)))
 		}
 	}
 	verdict("Licences and quotas are kept", passed, fmt.Sprintf("%d sums", len(r.Quotas)))
@@ -246,4 +246,12 @@ func joinSentences(faults []string) string {
 		text += f
 	}
 	return text
+}
+
+// passedText is by how much a quota is passed, in the volume and time that it was entered in.
+func passedText(q QuotaResult) string {
+	if !(q.Limit > 0) {
+		return flowText(-q.Headroom)
+	}
+	return fmt.Sprintf("%.0f m³ %s", -q.Headroom/q.Limit*q.Entered, q.Basis)
 }

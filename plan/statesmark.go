@@ -78,13 +78,13 @@ func (e *expansion) foldNotes(list []string) []string {
 		if states[plain] == nil {
 			states[plain] = map[int]bool{}
 		}
-		for _, k := range marksIn(text) {
-			states[plain][k] = true
+		if marks := marksIn(text); len(marks) == 1 {
+			states[plain][marks[0]] = true
 		}
 	}
 	var out notes
 	for _, text := range list {
-		if plain := unmarked(text); len(states[plain]) == len(e.parts) {
+		if plain := unmarked(text); len(states[plain]) == len(e.parts) && len(marksIn(text)) == 1 {
 			out.addf("%s", plain)
 		} else {
 			out.addf("%s", e.words(text, -1))

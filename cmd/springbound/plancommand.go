@@ -196,7 +196,11 @@ func printPlan(w io.Writer, r *plan.Report, dir, name string) {
 		for _, m := range r.Conflict.Members {
 			alone := "giving way alone would not do"
 			if m.Alone != nil {
-				alone = fmt.Sprintf("giving way alone by %.4g %s would do", *m.Alone, m.Unit)
+				unit := " " + m.Unit
+				if m.Unit == "1" { // a share or a gradient
+					unit = ""
+				}
+				alone = fmt.Sprintf("giving way alone by %.4g%s would do", *m.Alone, unit)
 			}
 			fmt.Fprintf(w, "  in conflict: %s; %s\n", m.Limit, alone)
 		}

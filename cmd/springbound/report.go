@@ -451,18 +451,12 @@ func (j *job) timeScale(r *plan.Report) {
 }
 
 func (j *job) notDone(r *plan.Report) {
-	resting, running, recharged := []string{}, []string{}, 0.0
+	resting, recharged := []string{}, 0.0
 	for i, w := range j.project.Wells {
 		if w.DutyHours < 24 && r.Wells[i].Rate != 0 {
 			resting = append(resting, w.ID)
 		}
-		if w.Mode == wells.Decided && w.Min > 0 && r.Aim != string(plan.MostYield) && r.Aim != string(plan.MostHeadroom) {
-			running = append(running, w.ID)
-		}
 		recharged -= math.Min(0, r.Wells[i].Rate)
-	}
-	if len(running) > 0 {
-		r.NotAssessed = append(r.NotAssessed, "whether a well would better stand still: wells with a least rate ("+strings.Join(running, ", ")+") are planned as running at it at least with this aim; set mode to off to plan without one")
 	}
 	if len(resting) > 0 {
 		r.NotAssessed = append(r.NotAssessed, "levels while the pump runs: the aquifer's part is that of the daily mean, only the well loss is that of the running rate; while pumps run fewer than 24 hours ("+strings.Join(resting, ", ")+") levels near them are lower than shown")

@@ -68,7 +68,10 @@ func (e *engine) rounds(ctx context.Context, most int) (Status, int) {
 func (e *engine) sharpen(ctx context.Context) {
 	place := append([]Place(nil), e.place...)
 	e.feasible, e.optimal = sharpTolerance, sharpTolerance
-	status, _ := e.rounds(ctx, sharpRounds)
+	status := Optimal // polished values often are that sharp already
+	if !e.allWithin() || !e.pricesRight() {
+		status, _ = e.rounds(ctx, sharpRounds)
+	}
 	e.feasible, e.optimal = feasibilityTolerance, optimalityTolerance
 	if status == Optimal {
 		return
