@@ -190,8 +190,11 @@ func (e *expansion) binds(part *Report, r *StateResult) {
 			name = rec.ID
 		}
 		for _, l := range rec.Limits {
-			if l.Binds {
-				r.Binds = append(r.Binds, "limit "+l.ID+" at "+name)
+			switch words := "limit " + l.ID + " at " + name; {
+			case l.Passed:
+				r.Binds = append(r.Binds, words+" (passed)")
+			case l.Binds:
+				r.Binds = append(r.Binds, words)
 			}
 			if l.RoomShare != nil && l.ResultState == "yes" {
 				worst(*l.RoomShare, "limit "+l.ID+" at "+name)
@@ -214,6 +217,9 @@ func (e *expansion) binds(part *Report, r *StateResult) {
 		if q.Binds {
 			r.Binds = append(r.Binds, q.Name+" "+q.Basis)
 		}
+	}
+	if d := r.Demand; d != nil && *d > 0 && math.Abs(r.Total-*d) <= limitTolerance**d {
+		r.Binds = append(r.Binds, "its demand")
 	}
 }
 

@@ -8,6 +8,9 @@ import (
 	"springbound/plan"
 )
 
+// overdrawnShare is the share of a yearly quantity by which more is pumped before the line says 'passed': what the planner's own tolerance leaves.
+const overdrawnShare = 1e-6
+
 // printStates prints one line an operating state, with its total and what binds, and the yearly quotas that bind.
 func printStates(w io.Writer, r *plan.Report) {
 	if len(r.States) == 0 {
@@ -31,7 +34,10 @@ func printStates(w io.Writer, r *plan.Report) {
 	}
 	for _, y := range r.YearQuotas {
 		q, binds := y.Quota, ""
-		if q.Binds {
+		switch {
+		case q.Binds && q.Headroom < -overdrawnShare*q.Limit:
+			binds = "; passed"
+		case q.Binds:
 			binds = "; binds"
 		}
 		fmt.Fprintf(w, "%s, per year: %.0f m³ of %.0f m³%s.\n", q.Name, q.Sum*365.25, q.Entered, binds)

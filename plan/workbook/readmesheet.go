@@ -269,6 +269,35 @@ func (b *book) bindingPart(row int) int {
 				joinFilled(". ", wellList(q.Wells), holdsWords(q.Range, q.Limit, entered(q), "m³ "+q.Basis)), q.Source)
 		}
 	}
+	for _, y := range r.YearQuotas {
+		if q := y.Quota; q.Binds {
+			put(joinFilled(" · ", q.Name, q.Holder), fmt.Sprintf("%s m³ %s", figureText(q.Entered), q.Basis), q.Range, q.ShadowPrice, "m³/d of the year's mean",
+				joinFilled(". ", wellList(q.Wells), "over "+strings.Join(y.States, ", ")), q.Source)
+		}
+	}
+	for _, st := range r.States {
+		if st.Default {
+			continue // stands above
+		}
+		for _, rec := range st.Receptors {
+			for _, l := range rec.Limits {
+				if l.Binds || l.Passed {
+					put(st.Name+": "+joinFilled(": ", joinFilled(" ", rec.ID, rec.Name), limitWords(rec, l)), limitText(l),
+						l.Range, l.ShadowPrice, priceUnit(l.Unit, l.Quantity), l.Sentence, l.Source)
+				}
+			}
+		}
+		for _, q := range st.Quotas {
+			if q.Binds {
+				put(st.Name+": "+joinFilled(" · ", q.Name, q.Holder), fmt.Sprintf("%s m³ %s", figureText(q.Entered), q.Basis), q.Range, q.ShadowPrice, "m³/d",
+					joinFilled(". ", wellList(q.Wells), holdsWords(q.Range, q.Limit, entered(q), "m³ "+q.Basis)), q.Source)
+			}
+		}
+		if d := st.DemandPrice; d != nil && *d != 0 {
+			put(st.Name+": demand", figureText(value(st.Demand))+" m³/d", nil, *d, "m³/d",
+				joinFilled(". ", demandWords(r.Aim), holdsWords(st.DemandRange, value(st.Demand), 1, "m³/d")), "entered")
+		}
+	}
 	if d := r.DemandPrice; d != nil && *d != 0 {
 		put("Demand", figureText(value(r.Demand))+" m³/d", nil, *d, "m³/d",
 			joinFilled(". ", demandWords(r.Aim), holdsWords(r.DemandRange, value(r.Demand), 1, "m³/d")), "entered")
