@@ -125,6 +125,9 @@ func (b *book) comparePart(row int) int {
 		{"Limits in their reserve", wordReserve, "the limit itself holds; what was kept back does not"},
 		{"Limits that bind", wordBinds, "reached exactly, with what is kept back"},
 	} {
+		if len(b.report.States) > 1 {
+			c.remark += "; of the operating state " + b.report.State + ", the others stand below"
+		}
 		compare(c.words, nil, countWord(c.status, statuses...), countFormat, c.remark)
 		if c.status == wordPassed {
 			s.warnCount(row, 3)
@@ -272,7 +275,7 @@ func (b *book) bindingPart(row int) int {
 	for _, y := range r.YearQuotas {
 		if q := y.Quota; q.Binds {
 			put(joinFilled(" · ", q.Name, q.Holder), fmt.Sprintf("%s m³ %s", figureText(q.Entered), q.Basis), q.Range, q.ShadowPrice, "m³/d of the year's mean",
-				joinFilled(". ", wellList(q.Wells), "over "+strings.Join(y.States, ", ")), q.Source)
+				joinFilled(". ", wellList(q.Wells), "Over "+strings.Join(y.States, ", ")), q.Source)
 		}
 	}
 	for _, st := range r.States {
