@@ -41,6 +41,7 @@ type expansion struct {
 	demands  []demand
 
 	findings, notAssessed notes
+	unlicensed            notes // wells that stand still for want of a licence for a state's months
 }
 
 // statePart is what one operating state takes of a brief.

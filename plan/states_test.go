@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"strings"
 	"testing"
 
@@ -356,13 +357,18 @@ func TestMonthsOfUse(t *testing.T) {
 	if r.Wells[0].Mode != "off" || len(r.YearQuotas) != 1 || !r.YearQuotas[0].Quota.Binds || len(r.YearQuotas[0].Quota.Wells) != 2 {
 		t.Errorf("A is %s; %+v", r.Wells[0].Mode, r.YearQuotas)
 	}
-	said := strings.Join(append(append([]string(nil), r.Findings...), r.NotAssessed...), "\n")
+	said := strings.Join(slices.Concat(r.Findings, r.NotAssessed, r.Cautions), "\n")
 	for _, want := range []string{"average: A stands still, as no licence of it is for all of its months", "licence summer: its year begins on 06-01",
 		"licence early is for some of the months of average only; it is held for the whole of it"} {
 		if !strings.Contains(said, want) {
 			t.Errorf("no %q in\n%s", want, said)
 		}
 	}
+	s.brief.States[0].Demand = number(1000)
+	if c := s.plan(t).Conflict; c == nil || !strings.Contains(c.Sentence, "A stands still, as no licence of it is for all of its months") {
+		t.Errorf("a demand that the licences' months forbid: %+v", c)
+	}
+	s.brief.States[0].Demand = nil
 	s.brief.States[0].Months = nil
 	r = s.plan(t)
 	if !(rateIn(t, r, "average", "A") > 0) && !(rateIn(t, r, "average", "B") > 0) || !strings.Contains(strings.Join(r.NotAssessed, "\n"), "licence summer: its months, in average, whose months are not stated") {

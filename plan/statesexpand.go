@@ -267,7 +267,7 @@ func (e *expansion) takeApart(faults *problemList) {
 		}
 		e.parts = append(e.parts, p)
 		if len(p.standing) > 0 {
-			e.findings.addf("%s: %s %s still, as no licence of %s is for all of its months", s.Name, list(p.standing), plural(len(p.standing), "stands", "stand"), plural(len(p.standing), "it", "them"))
+			e.unlicensed.addf("%s: %s %s still, as no licence of %s is for all of its months", s.Name, list(p.standing), plural(len(p.standing), "stands", "stand"), plural(len(p.standing), "it", "them"))
 		}
 		if s.Default && s.Demand != nil && b.Demand != nil && *s.Demand != *b.Demand {
 			e.findings.addf("the demand of %s of operating state %q is used, not the %s of the brief", flowText(*s.Demand), s.Name, flowText(*b.Demand))

@@ -39,11 +39,16 @@ func (e *expansion) fold(in *Report) *Report {
 	out.WorstLimit = e.words(in.WorstLimit, -1)
 	out.Findings = append(append([]string(nil), e.findings...), e.foldNotes(in.Findings)...)
 	out.NotAssessed = append(append([]string(nil), e.notAssessed...), e.foldNotes(in.NotAssessed)...)
-	out.Cautions, out.Invalid = e.foldNotes(in.Cautions), e.foldNotes(in.Invalid)
+	out.Cautions, out.Invalid = append(e.foldNotes(in.Cautions), e.unlicensed...), e.foldNotes(in.Invalid)
 	out.Audit.NegativeSensitivities = e.foldNotes(in.Audit.NegativeSensitivities)
 	out.Checks = e.foldChecks(in.Checks)
 	e.reword(reflect.ValueOf(&out.Switching), -1)
 	e.reword(reflect.ValueOf(&out.Conflict), -1)
+	if out.Conflict != nil {
+		for _, text := range e.unlicensed { // else a demand seems to fail for no reason
+			out.Conflict.Sentence += " " + text + "."
+		}
+	}
 	return &out
 }
 
