@@ -72,7 +72,7 @@ type filterMember struct {
 type filter struct {
 	ctx       context.Context
 	p         *Problem
-	t         *session
+	t         *undertaking
 	members   []filterMember // in the order in which they are tried
 	low, high []float64      // by column: the bounds that always hold
 	solves    int
@@ -187,7 +187,7 @@ func (p *Problem) takeRow(of *Problem, i int) {
 
 // start goes on with p.
 func (f *filter) start(p *Problem) {
-	f.p, f.t = p, newSession(p)
+	f.p, f.t = p, newUndertaking(p)
 	f.t.e.startFromRows()
 }
 

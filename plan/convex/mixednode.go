@@ -26,14 +26,14 @@ const beatenEvery = 8
 
 // nodeLP is the linear programme of the tree: one engine whose bounds move from node to node.
 type nodeLP struct {
-	t     *session
+	t     *undertaking
 	e     *engine
 	stale bool // the weights do not belong to the basis
 	kept  []float64
 }
 
 func newNodeLP(p *Problem) *nodeLP {
-	l := &nodeLP{t: newSession(p)}
+	l := &nodeLP{t: newUndertaking(p)}
 	l.e = l.t.e
 	l.e.startFromRows()
 	return l

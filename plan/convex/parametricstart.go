@@ -110,19 +110,19 @@ func (l *boundLine) at(theta float64) (*Problem, bool) {
 }
 
 // solve solves at theta.
-func (l *boundLine) solve(ctx context.Context, theta float64, start *Basis) (*session, Status) {
+func (l *boundLine) solve(ctx context.Context, theta float64, start *Basis) (*undertaking, Status) {
 	q, ok := l.at(theta)
 	if !ok {
 		return nil, Infeasible
 	}
-	t := newSession(q)
+	t := newUndertaking(q)
 	t.e.start(start)
 	return t, t.solve(ctx, Options{}.iterationLimit(t.e.rows, t.e.n))
 }
 
-// firstFeasible returns the least theta in [0, span] at which anything is feasible and a solved session there; no session when
+// firstFeasible returns the least theta in [0, span] at which anything is feasible and a solved undertaking there; no undertaking when
 // there is none.
-func (l *boundLine) firstFeasible(ctx context.Context, s *Solution, span float64) (float64, *session, error) {
+func (l *boundLine) firstFeasible(ctx context.Context, s *Solution, span float64) (float64, *undertaking, error) {
 	var start *Basis
 	if s != nil {
 		start = s.Basis

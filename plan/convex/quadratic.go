@@ -78,7 +78,7 @@ func simplexRest(ctx context.Context, p *Problem, o Options) *Solution {
 		point.columns[j].Cost = 0
 	}
 	solve := func(q *Problem) *Solution {
-		t := newSession(q)
+		t := newUndertaking(q)
 		t.e.startFromRows()
 		return report(t, t.solve(ctx, o.iterationLimit(t.e.rows, t.e.n)))
 	}

@@ -199,11 +199,11 @@ func boundAt(p *Problem, s SideOf) float64 {
 }
 
 // restart solves p again from the basis of s, which costs a factorisation and no pivots when s is its optimum.
-func restart(ctx context.Context, p *Problem, s *Solution) (*session, error) {
+func restart(ctx context.Context, p *Problem, s *Solution) (*undertaking, error) {
 	if s.Status != Optimal {
 		return nil, ErrNotOptimal
 	}
-	t := newSession(p)
+	t := newUndertaking(p)
 	t.e.start(s.Basis)
 	switch status := t.solve(ctx, Options{}.iterationLimit(t.e.rows, t.e.n)); status {
 	case Optimal:

@@ -25,7 +25,7 @@ const (
 
 // walk follows the optimum while bounds move: lower + theta lowerRate, upper + theta upperRate in the scaled problem.
 type walk struct {
-	t         *session
+	t         *undertaking
 	base      *engine // at the optimum of theta = 0; never changed
 	e         *engine // where the walk is
 	rates     *engine // the programme of rates
@@ -42,8 +42,8 @@ type walk struct {
 	hit       bool      // it was reached by a value, not by another bound
 }
 
-// newWalk starts from a solved session.
-func newWalk(t *session) *walk {
+// newWalk starts from a solved undertaking.
+func newWalk(t *undertaking) *walk {
 	v := t.e.n + t.e.rows
 	return &walk{
 		t: t, base: t.e, placed: make([]Place, v), lowerRate: make([]float64, v), upperRate: make([]float64, v),

@@ -11,10 +11,10 @@ type Relaxer struct {
 	original  *Problem
 	relaxable []Relaxable
 	e         *elastic
-	t         *session
-	pivots    int // of sessions before the present one
+	t         *undertaking
+	pivots    int // of undertakings before the present one
 
-	cost       []float64 // by helper, in the scale of the session
+	cost       []float64 // by helper, in the scale of the undertaking
 	costFactor float64
 }
 
@@ -30,7 +30,7 @@ func NewRelaxer(p *Problem, relaxable []Relaxable) (*Relaxer, error) {
 
 func (r *Relaxer) build() {
 	r.e = newElastic(r.original, r.relaxable, false)
-	r.t = newSession(r.e.p)
+	r.t = newUndertaking(r.e.p)
 	r.t.e.startFromRows()
 	r.cost, r.costFactor = make([]float64, len(r.e.helpers)), r.t.s.costFactor
 	for k, h := range r.e.helpers {

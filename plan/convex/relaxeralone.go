@@ -31,7 +31,7 @@ func (r *Relaxer) Alone(ctx context.Context, which []int) (weighted, amount []fl
 type aloneSearch struct {
 	r                *Relaxer
 	e                *elastic
-	t                *session
+	t                *undertaking
 	which            []int
 	weighted, amount []float64
 	done             []bool // by place in which
@@ -49,7 +49,7 @@ const (
 
 func (a *aloneSearch) run(ctx context.Context) Status {
 	a.e = newElastic(a.r.original, a.r.relaxable, true)
-	a.t = newSession(a.e.p)
+	a.t = newUndertaking(a.e.p)
 	a.t.e.startFromRows()
 	defer func() { a.r.pivots += a.t.e.iterations }()
 	switch status := a.solve(ctx, noHelper); status {
@@ -141,7 +141,7 @@ func (h *elasticHelper) way() float64 {
 	return 1
 }
 
-// excess returns by how much the bound is passed, in the scale of the session.
+// excess returns by how much the bound is passed, in the scale of the undertaking.
 func (a *aloneSearch) excess(h *elasticHelper) float64 {
 	return h.way() * (a.t.e.x[h.column] - a.tight(h)/a.t.s.col[h.column])
 }

@@ -39,14 +39,14 @@ func Solve(ctx context.Context, p *Problem, o Options) (*Solution, error) {
 
 // solveLinear solves a linear programme in the given scales.
 func solveLinear(ctx context.Context, p *Problem, s *scaled, o Options) *Solution {
-	t := newSessionOf(p, s)
+	t := newUndertakingOf(p, s)
 	t.e.progress = o.Progress
 	t.e.start(o.Start)
 	return t.answer(ctx, o)
 }
 
 // answer solves and reports. A proof of infeasibility that the data do not support is none.
-func (t *session) answer(ctx context.Context, o Options) *Solution {
+func (t *undertaking) answer(ctx context.Context, o Options) *Solution {
 	limit := o.iterationLimit(t.e.rows, t.e.n)
 	out := report(t, t.zoom(ctx, limit, t.solve(ctx, limit)))
 	if out.Status == Infeasible && !Certify(t.p, out).Accepted {
@@ -80,7 +80,7 @@ func (e *engine) basis() *Basis {
 }
 
 // report takes the state back to the units of the problem; the factors are powers of two, so that nothing is rounded.
-func report(t *session, status Status) *Solution {
+func report(t *undertaking, status Status) *Solution {
 	p, s, e := t.p, t.s, t.e
 	n, m := e.n, e.rows
 	sol := &Solution{

@@ -6,7 +6,7 @@ import "context"
 // lost or a limit moved, pays for the setup once and each starts where the last one ended.
 type Solver struct {
 	p *Problem
-	t *session
+	t *undertaking
 }
 
 // NewSolver copies p. It panics when p has a Hessian, for which Solve with Options.Start is the way.
@@ -15,7 +15,7 @@ func NewSolver(p *Problem) *Solver {
 		panic("convex: NewSolver: the problem has a Hessian")
 	}
 	s := &Solver{p: p.Clone()}
-	s.t = newSession(s.p)
+	s.t = newUndertaking(s.p)
 	s.t.e.startFromRows()
 	return s
 }

@@ -7,12 +7,12 @@ import (
 
 // face is the set of all optima: the feasible points that keep every bound with a price.
 type face struct {
-	t    *session
+	t    *undertaking
 	kept []bool // by variable: held at its value by a price, or because it is fixed
 }
 
-// newFace reads the face from a solved session.
-func newFace(t *session) *face {
+// newFace reads the face from a solved undertaking.
+func newFace(t *undertaking) *face {
 	e := t.e
 	f := &face{t: t, kept: make([]bool, len(e.place))}
 	for v, p := range e.place {
