@@ -78,7 +78,7 @@ func (j *job) evidence(ctx context.Context, o auditOptions) (*plan.Evidence, err
 	a := &audit{auditOptions: o, j: j}
 	j.withoutFirm, j.keepProblem = true, true
 	var err error
-	if a.report, err = j.makePlan(ctx); err != nil {
+	if a.report, err = j.planAccurately(ctx); err != nil {
 		return nil, err
 	}
 	if a.state, err = j.complete(ctx, a.report); err != nil {

@@ -34,7 +34,7 @@ type job struct {
 	errorsOn    *adjoint.Field   // ... on this field's mesh
 	errorsOfAll bool             // of the sensitivities and with bounds
 	rounds      []plan.MeshRound // the meshes that were planned on
-	refinedOut  bool             // the budget of nodes stands in the way of the accuracy asked for
+	refinedOut  bool             // refining leads no further: the budget of nodes, or wells and springs resolved down to their bores
 
 	alter       func(aquifer.Terms) // plants a fault in the flow model, to prove that the audit sees it; tests only
 	withoutFirm bool                // the firm capacity is not asked for
